@@ -1,0 +1,27 @@
+//! Mass, balance point and inertia of mesh exports, with every mesh proved closed or refused.
+//!
+//! Data flows one way:
+//!
+//! ```text
+//! bytes → format → soup of named triangles → mesh (welded) → shells → bodies
+//!       → moments → masses → assembly → verdicts → report
+//! ```
+
+#![deny(unsafe_code)]
+#![warn(missing_docs)]
+
+pub mod assembly;
+#[cfg(feature = "cli")]
+pub mod command;
+pub mod error;
+pub mod format;
+pub mod limits;
+pub mod material;
+pub mod mesh;
+pub mod moments;
+pub mod quantity;
+pub mod report;
+pub mod soundness;
+pub mod text;
+
+pub use error::{Error, Kind, Result, Warning};

@@ -1,0 +1,2 @@
+//! The `bismar` command.
+fn main() {}
