@@ -15,6 +15,7 @@ pub mod assembly;
 pub mod command;
 pub mod error;
 pub mod format;
+pub mod geometry;
 pub mod limits;
 pub mod material;
 pub mod mesh;

@@ -1,5 +1,6 @@
 //! What a reader hands over: triangles as the file has them, and what the file calls them.
 
+use crate::geometry::{Corners, RecordFacets};
 use crate::quantity::LengthUnit;
 
 /// Triangles with their names, in file order, before anything is welded or judged.
@@ -46,6 +47,49 @@ impl Default for Triangles {
     }
 }
 
+impl Triangles {
+    /// How many triangles there are.
+    pub fn count(&self) -> usize {
+        match self {
+            Self::Records(r) => r.count,
+            Self::Loose(list) => list.len(),
+            Self::Indexed { corners, .. } => corners.len(),
+        }
+    }
+
+    /// Coordinates of the vertex that welding numbers `id` (file unit).
+    pub(crate) fn vertex(&self, id: u32) -> [f64; 3] {
+        let (t, k) = (id as usize / 3, id as usize % 3);
+        match self {
+            Self::Records(r) => r.facets().triangle(t)[k],
+            Self::Loose(list) => list[t][k],
+            Self::Indexed { vertices, .. } => vertices[id as usize],
+        }
+    }
+}
+
+/// Runs the same generic code over whichever way the corners are stored: `each!(triangles, f =>
+/// expression with f)`.
+macro_rules! each {
+    ($triangles:expr, $f:ident => $body:expr) => {
+        match $triangles {
+            $crate::mesh::Triangles::Records(r) => {
+                let $f = &r.facets();
+                $body
+            }
+            $crate::mesh::Triangles::Loose(list) => {
+                let $f = &$crate::geometry::LooseFacets(list);
+                $body
+            }
+            $crate::mesh::Triangles::Indexed { vertices, corners } => {
+                let $f = &$crate::geometry::IndexedFacets { vertices, corners };
+                $body
+            }
+        }
+    };
+}
+pub(crate) use each;
+
 /// The 50-byte records of a binary STL, inside the bytes of the whole file.
 #[derive(Debug)]
 pub struct Records {
@@ -53,6 +97,15 @@ pub struct Records {
     pub bytes: crate::format::Bytes,
     /// Number of records; `84 + 50 * count` bytes are present.
     pub count: usize,
+}
+
+impl Records {
+    /// The records as triangles.
+    pub fn facets(&self) -> RecordFacets<'_> {
+        // Fewer bytes than the count needs would be a reader's fault; then fewer records are seen.
+        let end = self.bytes.len().min(84 + 50 * self.count);
+        RecordFacets::new(self.bytes.get(84..end).unwrap_or_default())
+    }
 }
 
 /// `count` triangles from `first` on that share a name and a material.

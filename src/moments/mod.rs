@@ -1,5 +1,9 @@
 //! The one idea: everything that has mass becomes [`Moments`].
 
 mod algebra;
+mod principal;
+mod solid;
 
 pub use algebra::{Moments, Placement};
+pub use principal::{Principal, principal};
+pub use solid::{CHUNK, ChunkSums, SolidIntegrals, chunk_sums, integrate};

@@ -1,1 +1,7 @@
-//! Placeholder module docs; see lib.rs.
+//! What is wrong with a mesh, where, how often, and what it can do to the volume.
+
+mod audit;
+mod finding;
+
+pub use audit::{Audit, audit};
+pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED};

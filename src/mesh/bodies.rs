@@ -1,0 +1,436 @@
+//! Bodies: an outer shell with its voids, named, and either weighable or refused.
+
+use std::collections::{BTreeMap, HashSet};
+
+use super::nesting::{containers, winding_number};
+use super::shells::{Members, Shell, Shells, middle};
+use super::{Soup, each};
+use rayon::prelude::*;
+
+use crate::error::Result;
+use crate::geometry::{Corners, is_flat};
+use crate::moments::{SolidIntegrals, integrate};
+
+/// A welded mesh with its bodies, in file order.
+#[derive(Debug)]
+pub struct Mesh {
+    /// What the file holds.
+    pub soup: Soup,
+    pub(crate) found: Shells,
+    bodies: Vec<Body>,
+}
+
+/// An outer shell and what lies directly inside it.
+#[derive(Clone, Debug)]
+pub struct Body {
+    /// Unique and deterministic: the name, then `name/2`, `name/3`; unnamed: the file's stem.
+    pub id: String,
+    /// The file's own name.
+    pub name: Option<String>,
+    /// Materials that the file gives its triangles (`usemtl`), in order of appearance.
+    pub materials: Vec<String>,
+    /// Number of triangles.
+    pub triangles: usize,
+    /// Lower and upper corner (file unit).
+    pub bounds: [[f64; 3]; 2],
+    /// Whether the directed edges of every shell cancel.
+    pub closed: bool,
+    /// Whether the file has it inside out and it was turned.
+    pub turned: bool,
+    /// Names that were joined to close it, where more than one.
+    pub joined: Vec<String>,
+    /// Outer shell first, then voids, then solids nested in it, then open shells in it.
+    pub(crate) shells: Vec<Role>,
+    pub(crate) members: Members,
+    pub(crate) first: u32,
+    solid: Option<SolidIntegrals>,
+}
+
+/// A shell's part in a body.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(crate) struct Role {
+    /// Index into the shells.
+    pub(crate) shell: usize,
+    pub(crate) part: Part,
+    /// Whether its triangles count the other way round than the file has them.
+    pub(crate) turned: bool,
+}
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(crate) enum Part {
+    Outer,
+    Void,
+    /// Outward at odd depth: solid within solid.
+    Nested,
+    /// Open, inside the outer shell or around it.
+    Stray,
+}
+
+/// How solid within solid is counted.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum NestedRule {
+    /// Both count: the overlap twice.
+    Sum,
+    /// The overlap once: the inner shell adds nothing.
+    Union,
+    /// The inner shell is a void.
+    Void,
+}
+
+/// Why a body cannot be weighed.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Refusal {
+    /// `not-closed`, `duplicate`, `nested-solid` or `degenerate`.
+    pub kind: &'static str,
+    /// Σ|imbalance| over undirected edges.
+    pub open_edges: u64,
+    /// Number of boundary loops.
+    pub loops: usize,
+    /// What to do about it.
+    pub advice: String,
+}
+
+impl Mesh {
+    /// Welds a soup and finds its bodies. `stem` names bodies that the file leaves unnamed.
+    ///
+    /// # Errors
+    /// `too-large` past [`MOST_TRIANGLES`](super::MOST_TRIANGLES).
+    pub fn new(soup: Soup, stem: &str) -> Result<Self> {
+        let found = Shells::of(&soup)?;
+        let mut drafts = families(&soup, &found.shells);
+        drafts.sort_by_key(|d| d.iter().map(|r| found.shells[r.shell].first).min());
+        let mut ids = Ids::default();
+        let bodies = drafts.into_iter().map(|roles| body(&soup, &found, roles, stem, &mut ids));
+        let bodies = bodies.collect();
+        Ok(Self { soup, found, bodies })
+    }
+
+    /// The bodies, in file order.
+    pub fn bodies(&self) -> &[Body] {
+        &self.bodies
+    }
+
+    /// The box around all triangles (file unit); `None` for none.
+    pub fn bounds(&self) -> Option<[[f64; 3]; 2]> {
+        (self.soup.triangles.count() > 0)
+            .then(|| each!(&self.soup.triangles, f => super::shells::bounds(f, crate::geometry::Select::All)))
+    }
+
+    /// Volume integrals of a body by the rule for nested solids, in the file's unit, or why there
+    /// are none.
+    ///
+    /// # Errors
+    /// The refusal: open shells, facets doubled beyond mending, nested solids without a rule, or
+    /// a volume of exactly zero.
+    pub fn solid(&self, body: &Body, nested: Option<NestedRule>) -> Result<SolidIntegrals, Refusal> {
+        if let Some(refusal) = self.refusal(body, nested) {
+            return Err(refusal);
+        }
+        Ok(self.solid_by(body, nested.unwrap_or(NestedRule::Sum)))
+    }
+
+    fn refusal(&self, body: &Body, nested: Option<NestedRule>) -> Option<Refusal> {
+        let shells = || body.shells.iter().map(|r| &self.found.shells[r.shell]);
+        let open_edges: u64 = shells().map(Shell::open_edges).sum();
+        let loops: usize = shells().map(|s| s.loops.len()).sum();
+        let refuse = |kind, advice: String| Some(Refusal { kind, open_edges, loops, advice });
+        if open_edges > 0 {
+            return refuse(
+                "not-closed",
+                "close the surface in the program that made it and export again; `bismar check` lists the places".into(),
+            );
+        }
+        if shells().any(|s| !s.doubled.is_empty()) {
+            return refuse(
+                "duplicate",
+                "facets stand twice where dropping one would open the surface: remove the solid that is drawn over another, and export again".into(),
+            );
+        }
+        if nested.is_none() && body.shells.iter().any(|r| r.part == Part::Nested) {
+            return refuse(
+                "nested-solid",
+                "a solid lies inside another: say how to count it with --nested sum, union or void".into(),
+            );
+        }
+        if self.solid_by(body, nested.unwrap_or(NestedRule::Sum)).moments.zeroth == 0.0 {
+            return refuse("degenerate", "the surface is closed but holds no volume: export the solid, not a sheet".into());
+        }
+        None
+    }
+
+    /// The figures by a rule, of a body whose shells are all closed.
+    pub(crate) fn solid_by(&self, body: &Body, rule: NestedRule) -> SolidIntegrals {
+        if let Some(solid) = body.solid {
+            return solid;
+        }
+        let mut total: Option<SolidIntegrals> = None;
+        for role in &body.shells {
+            let sign = if role.turned { -1.0 } else { 1.0 };
+            let (weight, counted) = match (role.part, rule) {
+                (Part::Nested, NestedRule::Union) | (Part::Stray, _) => continue,
+                (Part::Nested, NestedRule::Void) => (-sign, 1.0),
+                _ => (sign, 1.0),
+            };
+            let s = &self.found.shells[role.shell].solid;
+            let moments = s.moments.weighted(weight);
+            total = Some(match total {
+                None => SolidIntegrals { moments, ..*s },
+                Some(t) => SolidIntegrals {
+                    moments: t.moments.plus(&moments),
+                    area: t.area + counted * s.area,
+                    absolute_volume: t.absolute_volume + s.absolute_volume,
+                },
+            });
+        }
+        total.unwrap_or(SolidIntegrals {
+            moments: crate::moments::Moments::zero(nalgebra::Vector3::zeros()),
+            area: 0.0,
+            absolute_volume: 0.0,
+        })
+    }
+
+    /// What welding and matching found.
+    pub(crate) fn found(&self) -> &Shells {
+        &self.found
+    }
+
+    /// The triangles of a body, ascending.
+    pub(crate) fn members<'a>(&self, body: &'a Body) -> impl Iterator<Item = u32> + 'a {
+        let select = body.members.select();
+        let n = select.len(self.soup.triangles.count());
+        (0..n).map(move |i| select.get(i) as u32)
+    }
+
+    /// Triangles whose corners lie exactly on one line, ascending.
+    pub(crate) fn flat_triangles(&self) -> Vec<u32> {
+        each!(&self.soup.triangles, f => {
+            (0..f.count() as u32)
+                .into_par_iter()
+                .filter(|&t| is_flat(&f.triangle(t as usize)))
+                .collect()
+        })
+    }
+
+    /// Surface area of a body, open or not (file unit²).
+    pub fn area(&self, body: &Body) -> f64 {
+        body.solid.map_or_else(
+            || body.shells.iter().map(|r| self.found.shells[r.shell].solid.area).sum(),
+            |s| s.area,
+        )
+    }
+
+    /// The box of `turn`·vertices of a body (file unit).
+    pub fn bounds_turned(&self, body: &Body, turn: &nalgebra::Matrix3<f64>) -> [[f64; 3]; 2] {
+        struct Turned<'a, C>(&'a C, &'a nalgebra::Matrix3<f64>);
+        impl<C: Corners> Corners for Turned<'_, C> {
+            fn count(&self) -> usize {
+                self.0.count()
+            }
+            fn triangle(&self, t: usize) -> [[f64; 3]; 3] {
+                self.0.triangle(t).map(|p| (self.1 * nalgebra::Vector3::from(p)).into())
+            }
+        }
+        each!(&self.soup.triangles, f => super::shells::bounds(&Turned(f, turn), body.members.select()))
+    }
+}
+
+impl Body {
+    /// Its shells with their parts.
+    pub(crate) fn roles(&self) -> &[Role] {
+        &self.shells
+    }
+
+    /// Number of shells.
+    pub fn shell_count(&self) -> usize {
+        self.shells.len()
+    }
+
+    /// Number of voids.
+    pub fn void_count(&self) -> usize {
+        self.shells.iter().filter(|r| r.part == Part::Void).count()
+    }
+
+    /// Whether a solid lies within its solid.
+    pub fn has_nested(&self) -> bool {
+        self.shells.iter().any(|r| r.part == Part::Nested)
+    }
+}
+
+/// Shells sorted into bodies: by name, then by depth.
+fn families(soup: &Soup, shells: &[Shell]) -> Vec<Vec<Role>> {
+    let mut by_name: BTreeMap<u32, Vec<usize>> = BTreeMap::new();
+    for (i, s) in shells.iter().enumerate() {
+        by_name.entry(s.name).or_default().push(i);
+    }
+    by_name.into_values().flat_map(|of_name| family_of_name(soup, shells, &of_name)).collect()
+}
+
+fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<Role>> {
+    let group: Vec<&Shell> = of_name.iter().map(|&i| &shells[i]).collect();
+    let inside = if group.len() > 1 {
+        containers(&soup.triangles, &group)
+    } else {
+        vec![Vec::new(); group.len()]
+    };
+    let depth: Vec<usize> = inside.iter().map(Vec::len).collect();
+    // A shell of odd depth belongs to the deepest even shell around it; one of even depth opens a
+    // body, unless it faces inward inside an open shell: then it is that one's void.
+    let mut home: Vec<usize> = (0..group.len()).collect();
+    for a in 0..group.len() {
+        if depth[a] % 2 == 1 {
+            let even = inside[a].iter().filter(|&&b| depth[b] % 2 == 0);
+            home[a] = even.copied().max_by_key(|&b| (depth[b], usize::MAX - b)).unwrap_or(a);
+        } else if group[a].facing < 0 {
+            let p = each!(&soup.triangles, f => f.triangle(group[a].first as usize)[0]);
+            let around = (0..group.len()).find(|&b| {
+                b != a
+                    && !group[b].closed()
+                    && (0..3).all(|k| {
+                        group[b].bounds[0][k] <= group[a].bounds[0][k]
+                            && group[a].bounds[1][k] <= group[b].bounds[1][k]
+                    })
+                    && winding_number(&soup.triangles, group[b], &p).abs() > 0.5
+            });
+            home[a] = around.unwrap_or(a);
+        }
+    }
+    let mut bodies: BTreeMap<usize, Vec<usize>> = BTreeMap::new();
+    for a in 0..group.len() {
+        // A home that has itself found a home would hide its guests.
+        let h = if home[home[a]] == home[a] { home[a] } else { a };
+        bodies.entry(h).or_default().push(a);
+    }
+    bodies
+        .into_iter()
+        .map(|(outer, members)| {
+            let guests: Vec<usize> = members.into_iter().filter(|&a| a != outer).collect();
+            let inverted = group[outer].facing < 0;
+            // Wholly inverted: turned as one. Else each shell is judged by itself.
+            let whole = inverted
+                && guests.iter().filter(|&&a| group[a].closed()).all(|&a| group[a].facing > 0);
+            let mut roles = vec![Role { shell: of_name[outer], part: Part::Outer, turned: inverted }];
+            roles.extend(guests.into_iter().map(|a| {
+                let part = match group[a] {
+                    s if !s.closed() => Part::Stray,
+                    s if (s.facing > 0) != whole => Part::Nested,
+                    _ => Part::Void,
+                };
+                Role { shell: of_name[a], part, turned: whole }
+            }));
+            roles.sort_by_key(|r| (r.part as u8, r.shell));
+            roles
+        })
+        .collect()
+}
+
+fn body(soup: &Soup, found: &Shells, roles: Vec<Role>, stem: &str, ids: &mut Ids) -> Body {
+    let shells = || roles.iter().map(|r| &found.shells[r.shell]);
+    let outer = &found.shells[roles[0].shell];
+    let name = soup.names.get(outer.name as usize).cloned().flatten();
+    let id = ids.next(name.as_deref().unwrap_or(stem));
+    let members = match &roles[..] {
+        [_] => outer.members.clone(),
+        _ => {
+            let mut all: Vec<u32> = shells()
+                .flat_map(|s| match &s.members {
+                    Members::Listed(list) => list.as_slice(),
+                    Members::All => &[],
+                })
+                .copied()
+                .collect();
+            all.sort_unstable();
+            let whole = all.len() + found.collapsed.len() == soup.triangles.count()
+                && found.collapsed.iter().all(|t| all.binary_search(t).is_err());
+            if whole { Members::All } else { Members::Listed(all) }
+        }
+    };
+    let triangles = shells().map(|s| s.count).sum();
+    let first = shells().map(|s| s.first).min().unwrap_or(0);
+    let bounds = [
+        [0, 1, 2].map(|k| shells().map(|s| s.bounds[0][k]).fold(f64::INFINITY, f64::min)),
+        [0, 1, 2].map(|k| shells().map(|s| s.bounds[1][k]).fold(f64::NEG_INFINITY, f64::max)),
+    ];
+    let closed = shells().all(Shell::closed);
+    let turned = roles[0].turned;
+    // One pass over all its triangles, unless shells count in different ways.
+    let uniform = closed
+        && roles.iter().all(|r| r.turned == turned && matches!(r.part, Part::Outer | Part::Void));
+    let solid = uniform.then(|| {
+        let whole = if roles.len() == 1 {
+            outer.solid
+        } else {
+            each!(&soup.triangles, f => {
+                let apex = f.triangle(first as usize)[0];
+                integrate(f, members.select(), apex, middle(&bounds))
+            })
+        };
+        let sign = if turned { -1.0 } else { 1.0 };
+        SolidIntegrals { moments: whole.moments.weighted(sign), ..whole }
+    });
+    let mut joined: Vec<String> = Vec::new();
+    for s in shells() {
+        for &n in &s.joined {
+            let name = soup.names[n as usize].clone().unwrap_or_default();
+            if !joined.contains(&name) {
+                joined.push(name);
+            }
+        }
+    }
+    let materials = materials_of(soup, &members);
+    Body {
+        id,
+        name,
+        materials,
+        triangles,
+        bounds,
+        closed,
+        turned,
+        joined,
+        shells: roles,
+        members,
+        first,
+        solid,
+    }
+}
+
+/// The file's own materials of the triangles, in order of appearance.
+fn materials_of(soup: &Soup, members: &Members) -> Vec<String> {
+    if soup.materials.is_empty() {
+        return Vec::new();
+    }
+    let mut seen: Vec<u32> = Vec::new();
+    for run in &soup.runs {
+        let Some(material) = run.material.filter(|m| !seen.contains(m)) else { continue };
+        let touches = match members {
+            Members::All => run.count > 0,
+            Members::Listed(list) => {
+                let at = list.partition_point(|&t| (t as usize) < run.first);
+                list.get(at).is_some_and(|&t| (t as usize) < run.first + run.count)
+            }
+        };
+        if touches {
+            seen.push(material);
+        }
+    }
+    seen.into_iter().filter_map(|m| soup.materials.get(m as usize).cloned()).collect()
+}
+
+/// Hands out ids: the name, then `name/2`, `name/3`; never one twice.
+#[derive(Default)]
+struct Ids {
+    taken: HashSet<String>,
+    used: BTreeMap<String, usize>,
+}
+
+impl Ids {
+    fn next(&mut self, name: &str) -> String {
+        let count = self.used.entry(name.to_owned()).or_insert(0);
+        loop {
+            *count += 1;
+            let id = if *count == 1 { name.to_owned() } else { format!("{name}/{count}") };
+            if self.taken.insert(id.clone()) {
+                return id;
+            }
+        }
+    }
+}

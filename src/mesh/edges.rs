@@ -1,0 +1,178 @@
+//! Matching of directed edges: which triangles meet where, and which edges are not plain.
+
+use rayon::prelude::*;
+
+use super::buckets::{Buckets, hash2, random_seed};
+use super::union::Sets;
+
+/// One triangle's passage along an edge.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub(crate) struct Half {
+    /// The vertex of lower number.
+    pub(crate) low: u32,
+    /// The vertex of higher number.
+    pub(crate) high: u32,
+    /// The triangle.
+    pub(crate) triangle: u32,
+    /// Whether it runs from low to high.
+    pub(crate) forward: bool,
+}
+
+/// Passages packed for sorting: low, high, 2·triangle + forward.
+type Packed = (u32, u32, u32);
+
+/// Of an edge of which only one passage is known yet.
+const NONE: u32 = u32::MAX;
+/// Of an edge that is not one passage each way by two triangles of one name.
+const IRREGULAR: u32 = u32::MAX - 1;
+
+/// Joins triangles across every plain edge (two triangles of one name, one passage each way) and
+/// returns all passages along the other edges, sorted by edge, then triangle.
+///
+/// Triangles in which two corners are one vertex have no say: their passages cancel by themselves.
+pub(crate) fn match_edges(
+    corners: &[[u32; 3]],
+    name_of: &(dyn Fn(u32) -> u32 + Sync),
+    sets: &Sets,
+) -> Vec<Half> {
+    let seed = random_seed();
+    let buckets = Buckets::<Packed>::fill(corners.len(), 3, |range, push| {
+        for t in range {
+            for (low, high, forward) in passages(corners[t]) {
+                let packed = (low, high, (t as u32) << 1 | u32::from(forward));
+                push(hash2(seed, u64::from(low), u64::from(high)), packed);
+            }
+        }
+    });
+    let mut odd: Vec<Half> = (0..buckets.count())
+        .into_par_iter()
+        .fold(
+            || (EdgeTable::default(), Vec::new()),
+            |(mut table, mut odd), b| {
+                table.clear(buckets.len(b));
+                for &(low, high, passage) in buckets.segments(b).flat_map(|s| s.1) {
+                    table.see(low, high, passage, name_of);
+                }
+                if table.settle(sets) {
+                    for &(low, high, passage) in buckets.segments(b).flat_map(|s| s.1) {
+                        if table.is_irregular(low, high) {
+                            let forward = passage & 1 == 1;
+                            odd.push(Half { low, high, triangle: passage >> 1, forward });
+                        }
+                    }
+                }
+                (table, odd)
+            },
+        )
+        .map(|(_, odd)| odd)
+        .reduce(Vec::new, |mut a, mut b| {
+            a.append(&mut b);
+            a
+        });
+    odd.par_sort_unstable();
+    odd
+}
+
+/// The passages of a triangle, none where it has collapsed.
+#[inline(always)]
+pub(crate) fn passages(c: [u32; 3]) -> impl Iterator<Item = (u32, u32, bool)> {
+    let whole = c[0] != c[1] && c[1] != c[2] && c[2] != c[0];
+    [(c[0], c[1]), (c[1], c[2]), (c[2], c[0])]
+        .into_iter()
+        .filter(move |_| whole)
+        .map(|(a, b)| if a < b { (a, b, true) } else { (b, a, false) })
+}
+
+struct Edge {
+    low: u32,
+    high: u32,
+    first: u32,
+    second: u32,
+}
+
+#[derive(Default)]
+struct EdgeTable {
+    slots: Vec<u32>,
+    edges: Vec<Edge>,
+}
+
+impl EdgeTable {
+    fn clear(&mut self, passages: usize) {
+        // Two passages to an edge in all but broken meshes; the table grows in those.
+        let size = passages.next_power_of_two().max(16);
+        self.slots.clear();
+        self.slots.resize(size, NONE);
+        self.edges.clear();
+    }
+
+    #[inline(always)]
+    fn place(&self, low: u32, high: u32) -> usize {
+        let mask = self.slots.len() - 1;
+        let h = (u64::from(low) << 32 | u64::from(high)).wrapping_mul(0x9e37_79b9_7f4a_7c15);
+        let mut at = (h >> 32) as usize & mask;
+        loop {
+            let slot = self.slots[at];
+            if slot == NONE {
+                return at;
+            }
+            let e = &self.edges[slot as usize];
+            if e.low == low && e.high == high {
+                return at;
+            }
+            at = (at + 1) & mask;
+        }
+    }
+
+    #[inline(always)]
+    fn see(&mut self, low: u32, high: u32, passage: u32, name_of: &(dyn Fn(u32) -> u32 + Sync)) {
+        let at = self.place(low, high);
+        let slot = self.slots[at];
+        if slot == NONE {
+            self.slots[at] = self.edges.len() as u32;
+            self.edges.push(Edge { low, high, first: passage, second: NONE });
+            if self.edges.len() * 4 > self.slots.len() * 3 {
+                self.grow();
+            }
+            return;
+        }
+        let e = &mut self.edges[slot as usize];
+        let opposed = (e.first ^ passage) & 1 == 1;
+        e.second = if e.second == NONE
+            && opposed
+            && name_of(e.first >> 1) == name_of(passage >> 1)
+        {
+            passage
+        } else {
+            IRREGULAR
+        };
+    }
+
+    #[cold]
+    fn grow(&mut self) {
+        self.slots.clear();
+        self.slots.resize((self.edges.len() * 2).next_power_of_two(), NONE);
+        for i in 0..self.edges.len() {
+            let at = self.place(self.edges[i].low, self.edges[i].high);
+            self.slots[at] = i as u32;
+        }
+    }
+
+    /// Joins across plain edges; says whether there are others.
+    fn settle(&mut self, sets: &Sets) -> bool {
+        let mut others = false;
+        for e in &mut self.edges {
+            if e.second < IRREGULAR {
+                sets.join(e.first >> 1, e.second >> 1);
+            } else {
+                e.second = IRREGULAR;
+                others = true;
+            }
+        }
+        others
+    }
+
+    fn is_irregular(&self, low: u32, high: u32) -> bool {
+        let slot = self.slots[self.place(low, high)];
+        slot != NONE && self.edges[slot as usize].second == IRREGULAR
+    }
+}
