@@ -1,6 +1,14 @@
 //! Units of length that a mesh can be in.
 
+use std::fmt;
+use std::str::FromStr;
+
+use num_rational::BigRational;
 use serde::{Deserialize, Serialize};
+
+use super::error::QuantityError;
+use super::exact;
+use crate::error::Kind;
 
 /// Unit of a mesh's coordinates and of bare lengths.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -20,6 +28,9 @@ pub enum LengthUnit {
 }
 
 impl LengthUnit {
+    /// Every unit, in the order in which they are offered.
+    pub const ALL: [Self; 5] = [Self::Mm, Self::Cm, Self::M, Self::In, Self::Ft];
+
     /// Metres in one of this unit.
     pub fn metres(self) -> f64 {
         match self {
@@ -40,5 +51,53 @@ impl LengthUnit {
             Self::In => "in",
             Self::Ft => "ft",
         }
+    }
+
+    /// Metres in one of this unit, exactly.
+    pub(super) fn factor(self) -> BigRational {
+        let (num, ten): (u32, i32) = match self {
+            Self::Mm => (1, -3),
+            Self::Cm => (1, -2),
+            Self::M => (1, 0),
+            Self::In => (254, -4),
+            Self::Ft => (3048, -4),
+        };
+        BigRational::from_integer(num.into()) * exact::ten(ten)
+    }
+}
+
+impl fmt::Display for LengthUnit {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.pad(self.symbol())
+    }
+}
+
+impl FromStr for LengthUnit {
+    type Err = QuantityError;
+
+    fn from_str(text: &str) -> Result<Self, QuantityError> {
+        let found = Self::ALL.into_iter().find(|u| u.symbol() == text.trim());
+        found.ok_or_else(|| QuantityError {
+            kind: Kind::Unit,
+            message: format!("`{text}` is not a unit of length that a mesh can be in"),
+            advice: "write one of mm, cm, m, in, ft".to_owned(),
+            at: 0..text.len(),
+        })
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn symbols_are_read_back_and_factors_agree() {
+        for unit in LengthUnit::ALL {
+            assert_eq!(unit.symbol().parse(), Ok(unit));
+            assert_eq!(exact::nearest(&unit.factor()), Some(unit.metres()));
+        }
+        let e = "furlong".parse::<LengthUnit>().unwrap_err();
+        assert_eq!(e.kind, Kind::Unit);
+        assert!("MM".parse::<LengthUnit>().is_err());
     }
 }
