@@ -17,6 +17,7 @@ mod dimension;
 mod error;
 mod exact;
 mod print;
+mod read;
 mod symbols;
 #[cfg(test)]
 mod tests;
