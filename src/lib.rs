@@ -17,6 +17,7 @@ pub mod error;
 pub mod format;
 pub mod geometry;
 pub mod limits;
+pub mod masses;
 pub mod material;
 pub mod mesh;
 pub mod moments;

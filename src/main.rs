@@ -1,2 +1,7 @@
 //! The `bismar` command.
-fn main() {}
+
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    ExitCode::from(bismar::command::main())
+}

@@ -1,5 +1,16 @@
-//! What people read: figures with as many digits as they are worth, and tables of them.
+//! What people and programs read. Renderers compute nothing: they print what results hold.
 
+pub mod check;
+pub mod check_text;
 pub mod digits;
+mod document;
+mod footer;
 mod look;
+pub mod materials;
 pub mod table;
+pub mod weigh;
+pub mod weigh_text;
+mod words;
+
+pub use document::{Document, Failure, InputFact, PROGRAM, Program, to_json};
+pub use footer::{CAUTION, footer};

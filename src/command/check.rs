@@ -1,0 +1,119 @@
+//! `bismar check`: can this be weighed? What is wrong, where, and what does it do to the volume?
+
+use clap::Args;
+
+use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::{Answer, Common, gather};
+use crate::error::{Error, Result};
+use crate::mesh::{Body, Mesh};
+use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
+use crate::report::{self, InputFact};
+use crate::soundness::{self, Finding, TESTED};
+
+/// Arguments of `check`.
+#[derive(Args, Clone, Debug)]
+pub struct CheckArgs {
+    #[command(flatten)]
+    meshes: MeshArgs,
+    /// List up to N places of each finding
+    #[arg(long, value_name = "N", default_value_t = 10)]
+    places: usize,
+}
+
+/// Runs the command.
+pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
+    let answers = gather(expand(&args.meshes), |input| check_file(input, args));
+    let mut files = Vec::new();
+    let mut exit = 0;
+    for one in &answers.each {
+        match &one.result {
+            Ok(file) => {
+                exit = exit.max(u8::from(file.sound != Some(true)));
+                files.push(file.clone());
+            }
+            Err(e) => {
+                exit = 2;
+                files.push(unread(&one.path, e));
+            }
+        }
+    }
+    let body = CheckBody { files };
+    answers.finish("bismar/check/1", exit, body, common, report::check_text::render, |b| {
+        report::check_text::csv(b)
+    })
+}
+
+fn unread(path: &std::path::Path, error: &Error) -> CheckedFile {
+    CheckedFile {
+        path: path.to_string_lossy().into_owned(),
+        format: None,
+        triangles: None,
+        unit: None,
+        unit_assumed: false,
+        bounds_m: None,
+        sound: None,
+        tested: TESTED,
+        findings: Vec::new(),
+        error: Some(error.clone()),
+        bodies: Vec::new(),
+    }
+}
+
+type Checked = (CheckedFile, Vec<crate::error::Warning>, InputFact);
+
+fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Checked>) {
+    let (bytes, fact) = match open(input, args.meshes.hash) {
+        Ok(opened) => opened,
+        Err(e) => return (None, Err(e)),
+    };
+    let result = read(bytes, input, &args.meshes).and_then(|m| answer(&m, input, args, &fact));
+    (Some(fact), result)
+}
+
+fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Result<Checked> {
+    let metres = m.unit.metres();
+    let mut audit = soundness::audit(&m.mesh, metres, args.places);
+    let chosen = picked(&m.mesh, input)?;
+    let bodies: Vec<CheckedBody> = chosen
+        .iter()
+        .map(|&(i, body)| checked(&m.mesh, body, std::mem::take(&mut audit.bodies[i]), metres))
+        .collect();
+    // Of a picked body the rest of the file is no fault.
+    let file_findings = if input.pick.is_some() { Vec::new() } else { audit.file };
+    let sound = !bodies.is_empty()
+        && bodies.iter().all(|b| b.sound)
+        && !file_findings.iter().any(Finding::is_unsound);
+    let file = CheckedFile {
+        path: input.path.to_string_lossy().into_owned(),
+        format: Some(m.format),
+        triangles: Some(m.mesh.soup.triangles.count() as u64),
+        unit: Some(m.unit.symbol()),
+        unit_assumed: m.unit_assumed,
+        bounds_m: m.mesh.bounds().map(|b| b.map(|p| p.map(|x| x * metres))),
+        sound: Some(sound),
+        tested: TESTED,
+        findings: file_findings,
+        error: None,
+        bodies,
+    };
+    Ok((file, m.warnings.clone(), fact.clone()))
+}
+
+fn checked(mesh: &Mesh, body: &Body, findings: Vec<Finding>, metres: f64) -> CheckedBody {
+    let volume = mesh.solid(body, None).ok().map(|s| s.moments.zeroth * metres.powi(3));
+    let sound = body.closed && volume.is_some() && !findings.iter().any(Finding::is_unsound);
+    CheckedBody {
+        id: body.id.clone(),
+        name: body.name.clone(),
+        triangles: body.triangles as u64,
+        shells: body.shell_count() as u64,
+        voids: body.void_count() as u64,
+        closed: body.closed,
+        sound,
+        turned: body.turned,
+        bounds_m: body.bounds.map(|p| p.map(|x| x * metres)),
+        volume_m3: volume.filter(|v| v.is_finite()),
+        area_m2: Some(mesh.area(body) * metres * metres).filter(|a| a.is_finite()),
+        findings,
+    }
+}

@@ -1,0 +1,228 @@
+//! Which meshes a command is about: files, folders, standard input, bodies picked with `#`.
+
+use std::io::Read;
+use std::path::{Path, PathBuf};
+
+use clap::Args;
+use sha2::{Digest, Sha256};
+
+use crate::error::{Error, Kind, Result, Warning};
+use crate::format::{self, Bytes, Family};
+use crate::mesh::{Body, Mesh};
+use crate::quantity::LengthUnit;
+use crate::report::InputFact;
+
+/// Options that say how meshes are read.
+#[derive(Args, Clone, Debug)]
+pub struct MeshArgs {
+    /// Mesh files, folders of them, or - for standard input; FILE#BODY picks a body
+    #[arg(required = true, value_name = "MESH")]
+    pub meshes: Vec<PathBuf>,
+    /// Length unit of the meshes: mm, cm, m, in, ft [default: the file's own, else mm, and said]
+    #[arg(long, value_name = "UNIT", value_parser = parse_unit)]
+    pub unit: Option<LengthUnit>,
+    /// Format, where the bytes do not tell: stl or obj
+    #[arg(long, value_name = "FORMAT", value_parser = parse_family)]
+    pub format: Option<Family>,
+    /// Look into sub-folders too
+    #[arg(long)]
+    pub deep: bool,
+    /// Give the SHA-256 of each input
+    #[arg(long)]
+    pub hash: bool,
+}
+
+fn parse_unit(text: &str) -> Result<LengthUnit, String> {
+    [LengthUnit::Mm, LengthUnit::Cm, LengthUnit::M, LengthUnit::In, LengthUnit::Ft]
+        .into_iter()
+        .find(|u| u.symbol() == text)
+        .ok_or_else(|| "the units are mm, cm, m, in, ft".to_owned())
+}
+
+fn parse_family(text: &str) -> Result<Family, String> {
+    Family::from_option(text).map_err(|e| format!("{}: {}", e.message, e.advice))
+}
+
+/// One thing to read.
+#[derive(Clone, Debug)]
+pub struct Input {
+    /// The file; `-` is standard input.
+    pub path: PathBuf,
+    /// The body that was picked with `#`.
+    pub pick: Option<String>,
+}
+
+/// A mesh that was read.
+pub struct ReadMesh {
+    /// Welded, with its bodies.
+    pub mesh: Mesh,
+    /// Name of the format in JSON.
+    pub format: &'static str,
+    /// The unit of its coordinates.
+    pub unit: LengthUnit,
+    /// Whether that was assumed.
+    pub unit_assumed: bool,
+    /// What the reader passed over, and the assumed unit.
+    pub warnings: Vec<Warning>,
+}
+
+/// The inputs that the arguments name, folders opened and sorted. An input that cannot be is an
+/// error in its place; the others go on.
+pub fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
+    let mut out = Vec::new();
+    for name in &args.meshes {
+        if name.is_dir() {
+            match meshes_in(name, args.deep) {
+                Ok(files) if files.is_empty() => {
+                    let advice = if args.deep {
+                        "name a folder that holds .stl or .obj files"
+                    } else {
+                        "name a folder that holds .stl or .obj files, or add --deep for its sub-folders"
+                    };
+                    let e = Error::new(Kind::Empty, "no mesh file in this folder", advice);
+                    out.push((name.clone(), Err(e.in_file(name))));
+                }
+                Ok(files) => out.extend(
+                    files.into_iter().map(|f| (f.clone(), Ok(Input { path: f, pick: None }))),
+                ),
+                Err(e) => out.push((name.clone(), Err(e))),
+            }
+        } else {
+            let (path, pick) = split_pick(name);
+            out.push((path.clone(), Ok(Input { path, pick })));
+        }
+    }
+    out
+}
+
+/// Splits at the last `#`, unless a file of the whole name exists.
+pub fn split_pick(name: &Path) -> (PathBuf, Option<String>) {
+    if name.exists() {
+        return (name.to_path_buf(), None);
+    }
+    match name.to_str().and_then(|s| s.rsplit_once('#')) {
+        Some((path, pick)) if !path.is_empty() && !pick.is_empty() => {
+            (PathBuf::from(path), Some(pick.to_owned()))
+        }
+        _ => (name.to_path_buf(), None),
+    }
+}
+
+fn meshes_in(folder: &Path, deep: bool) -> Result<Vec<PathBuf>> {
+    let fail = |e: std::io::Error| {
+        Error::new(Kind::NotFound, format!("cannot read the folder: {e}"), "check its permissions")
+            .in_file(folder)
+    };
+    let mut entries: Vec<PathBuf> = std::fs::read_dir(folder)
+        .map_err(fail)?
+        .map(|entry| entry.map(|e| e.path()).map_err(fail))
+        .collect::<Result<_>>()?;
+    entries.sort();
+    let mut out = Vec::new();
+    for path in entries {
+        if path.is_dir() {
+            // A link may lead back up.
+            if deep && !path.is_symlink() {
+                out.extend(meshes_in(&path, deep)?);
+            }
+        } else if Family::from_path(&path).is_some() {
+            out.push(path);
+        }
+    }
+    Ok(out)
+}
+
+/// Opens an input and says what it is.
+pub fn open(input: &Input, hash: bool) -> Result<(Bytes, InputFact)> {
+    let bytes = if input.path.as_os_str() == "-" {
+        Bytes::from_stdin()?
+    } else {
+        Bytes::open(&input.path)?
+    };
+    let fact = InputFact::new(&input.path, Some(bytes.len() as u64), hash.then(|| digest(&bytes)));
+    Ok((bytes, fact))
+}
+
+/// SHA-256 as lower-case hexadecimal.
+pub fn digest(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|b| format!("{b:02x}")).collect()
+}
+
+/// SHA-256 of a file that is read in pieces.
+pub fn digest_file(path: &Path) -> std::io::Result<String> {
+    let mut file = std::fs::File::open(path)?;
+    let mut hasher = Sha256::new();
+    let mut block = vec![0u8; 1 << 16];
+    loop {
+        let n = file.read(&mut block)?;
+        if n == 0 {
+            return Ok(hasher.finalize().iter().map(|b| format!("{b:02x}")).collect());
+        }
+        hasher.update(&block[..n]);
+    }
+}
+
+/// Reads and welds one mesh.
+pub fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
+    let kind = format::detect(&bytes, &input.path, args.format)?;
+    let soup = format::read(bytes, &input.path, args.format)?;
+    let shown = input.path.to_string_lossy().into_owned();
+    let mut warnings: Vec<Warning> = soup
+        .notes
+        .iter()
+        .map(|n| Warning {
+            kind: n.kind.to_owned(),
+            message: n.message.clone(),
+            path: Some(shown.clone()),
+            line: n.line,
+            advice: n.advice.to_owned(),
+        })
+        .collect();
+    let stated = args.unit.or(soup.unit);
+    if stated.is_none() {
+        warnings.push(Warning {
+            kind: "unit-assumed".to_owned(),
+            message: "the file states no length unit; mm is assumed".to_owned(),
+            path: Some(shown),
+            line: None,
+            advice: "say --unit mm, cm, m, in or ft".to_owned(),
+        });
+    }
+    let stem = input.path.file_stem().map_or("body".into(), |s| s.to_string_lossy());
+    let stem = if stem == "-" { "body".into() } else { stem };
+    let mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
+    Ok(ReadMesh {
+        mesh,
+        format: kind.name(),
+        unit: stated.unwrap_or_default(),
+        unit_assumed: stated.is_none(),
+        warnings,
+    })
+}
+
+/// The bodies that a pick means: all of that name, or the one with that id.
+///
+/// # Errors
+/// `unknown-name` with the names that there are.
+pub fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'a Body)>> {
+    let all = mesh.bodies().iter().enumerate();
+    let Some(pick) = &input.pick else { return Ok(all.collect()) };
+    let mut chosen: Vec<_> =
+        all.clone().filter(|(_, b)| b.name.as_ref() == Some(pick)).collect();
+    if chosen.is_empty() {
+        chosen = all.filter(|(_, b)| b.id == *pick).collect();
+    }
+    if chosen.is_empty() {
+        let mut names: Vec<&str> = mesh.bodies().iter().map(|b| b.id.as_str()).collect();
+        let more = names.len().saturating_sub(20);
+        names.truncate(20);
+        let more = if more > 0 { format!(" and {more} more") } else { String::new() };
+        return Err(Error::new(
+            Kind::UnknownName,
+            format!("no body is called \"{pick}\""),
+            format!("the bodies are: {}{more}", names.join(", ")),
+        )
+        .in_file(&input.path));
+    }
+    Ok(chosen)
+}

@@ -1,0 +1,278 @@
+//! `bismar weigh`: volume, area, centroid, mass and inertia of each body.
+
+use clap::{Args, ValueEnum};
+
+use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::{Answer, Common, gather};
+use crate::error::{Error, Kind, Result, Warning};
+use crate::masses::{Figures, Substance, box_union};
+use crate::material::Table;
+use crate::mesh::{Body, Mesh, NestedRule};
+use crate::moments::Moments;
+use crate::quantity::{Dimension, LengthUnit, Quantity};
+use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile};
+use crate::report::{self, InputFact};
+use crate::soundness;
+
+/// Arguments of `weigh`.
+#[derive(Args, Clone, Debug)]
+pub struct WeighArgs {
+    #[command(flatten)]
+    meshes: MeshArgs,
+    /// Density of the solid, such as "7850 kg/m3 ± 1 %" or "2.70 g/cm3"
+    #[arg(long, value_name = "Q", conflicts_with = "material")]
+    density: Option<String>,
+    /// Material by name, from the table that `bismar materials` prints
+    #[arg(long, value_name = "NAME")]
+    material: Option<String>,
+    /// How to count a solid that lies within a solid
+    #[arg(long, value_name = "RULE")]
+    nested: Option<Nested>,
+    /// Give the inertia tensor about this point too (bare numbers in the mesh's unit)
+    #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
+    about: Option<String>,
+}
+
+/// Choices of `--nested`.
+#[derive(Clone, Copy, Debug, ValueEnum)]
+enum Nested {
+    /// Both solids, the overlap twice
+    Sum,
+    /// The overlap once
+    Union,
+    /// The inner one as a void
+    Void,
+}
+
+impl From<Nested> for NestedRule {
+    fn from(n: Nested) -> Self {
+        match n {
+            Nested::Sum => Self::Sum,
+            Nested::Union => Self::Union,
+            Nested::Void => Self::Void,
+        }
+    }
+}
+
+/// Runs the command.
+///
+/// # Errors
+/// Of the options; faults of inputs stand in the answer.
+pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
+    let substance = substance(args)?;
+    // Read once with any unit, so that a fault in it is told before anything is read.
+    about_point(args.about.as_deref(), LengthUnit::Mm)?;
+    let mut answers = gather(expand(&args.meshes), |input| {
+        let (bytes, fact) = match open(input, args.meshes.hash) {
+            Ok(opened) => opened,
+            Err(e) => return (None, Err(e)),
+        };
+        let result = read(bytes, input, &args.meshes)
+            .and_then(|m| answer(&m, input, args, substance.as_ref(), &fact));
+        (Some(fact), result)
+    });
+    let mut files = Vec::new();
+    let mut exit = 0;
+    for one in &answers.each {
+        match &one.result {
+            Ok(file) => {
+                let all = !file.bodies.as_deref().unwrap_or_default().is_empty()
+                    && file.whole_missing.is_empty();
+                exit = exit.max(u8::from(!all));
+                files.push(file.clone());
+            }
+            Err(e) => {
+                exit = 2;
+                files.push(unread(&one.path, e));
+            }
+        }
+    }
+    if let Some(s) = &substance
+        && s.density.tolerance.is_some()
+    {
+        answers.warnings.push(Warning {
+            kind: "tolerances-ignored".to_owned(),
+            message: "the density has a tolerance; the figures are for its nominal value and say nothing of how far they may be off".to_owned(),
+            path: None,
+            line: None,
+            advice: "take the density's tolerance as the mass's own, in per cent, at least".to_owned(),
+        });
+    }
+    let body = WeighBody { files };
+    answers.finish("bismar/weigh/1", exit, body, common, report::weigh_text::render, |b| {
+        report::weigh_text::csv(b)
+    })
+}
+
+fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
+    if let Some(text) = &args.density {
+        let density = Quantity::parse(text, Dimension::Density, None)
+            .map_err(|e| Error::new(e.kind, format!("--density: {}", e.message), e.advice))?;
+        if density.value <= 0.0 {
+            return Err(Error::new(
+                Kind::BadNumber,
+                format!("--density: \"{text}\" is not above zero"),
+                "state the density of the solid material",
+            ));
+        }
+        return Ok(Some(Substance { name: None, density }));
+    }
+    let Some(word) = &args.material else { return Ok(None) };
+    let material = Table::standard().get(word)?;
+    Ok(Some(Substance { name: Some(material.name.clone()), density: material.density }))
+}
+
+/// The point of `--about`, m.
+fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>> {
+    let Some(text) = text else { return Ok(None) };
+    let parts: Vec<&str> = text.split(',').collect();
+    let [x, y, z] = parts[..] else {
+        return Err(Error::new(
+            Kind::Usage,
+            format!("--about: \"{text}\" is not three lengths"),
+            "write three lengths parted by commas, such as 0,0,120",
+        ));
+    };
+    let length = |part: &str| {
+        Quantity::parse(part.trim(), Dimension::Length, Some(unit))
+            .map(|q| q.value)
+            .map_err(|e| Error::new(e.kind, format!("--about: {}", e.message), e.advice))
+    };
+    Ok(Some([length(x)?, length(y)?, length(z)?]))
+}
+
+fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
+    WeighedFile {
+        path: path.to_string_lossy().into_owned(),
+        format: None,
+        triangles: None,
+        unit: None,
+        unit_assumed: false,
+        error: Some(error.clone()),
+        findings: Vec::new(),
+        overlap: "untested",
+        bodies: Some(Vec::new()),
+        whole: None,
+        whole_missing: Vec::new(),
+    }
+}
+
+fn answer(
+    m: &ReadMesh,
+    input: &Input,
+    args: &WeighArgs,
+    substance: Option<&Substance>,
+    fact: &InputFact,
+) -> Result<(WeighedFile, Vec<Warning>, InputFact)> {
+    let metres = m.unit.metres();
+    let about = about_point(args.about.as_deref(), m.unit)?;
+    let rule = args.nested.map(NestedRule::from);
+    let mut audit = soundness::audit(&m.mesh, metres, 3);
+    let chosen = picked(&m.mesh, input)?;
+    let bodies: Vec<WeighedBody> = chosen
+        .iter()
+        .map(|&(i, body)| WeighedBody {
+            findings: std::mem::take(&mut audit.bodies[i]),
+            ..weighed(&m.mesh, body, metres, rule, substance, about)
+        })
+        .collect();
+    let missing: Vec<String> =
+        bodies.iter().filter(|b| b.refused.is_some()).map(|b| b.id.clone()).collect();
+    let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
+        [one] => one.figures.clone(),
+        _ => whole(&m.mesh, &chosen, metres, rule, substance, about),
+    });
+    let file = WeighedFile {
+        path: input.path.to_string_lossy().into_owned(),
+        format: Some(m.format),
+        triangles: Some(m.mesh.soup.triangles.count() as u64),
+        unit: Some(m.unit.symbol()),
+        unit_assumed: m.unit_assumed,
+        error: None,
+        findings: if input.pick.is_some() { Vec::new() } else { audit.file },
+        overlap: "untested",
+        bodies: Some(bodies),
+        whole,
+        whole_missing: missing,
+    };
+    Ok((file, m.warnings.clone(), fact.clone()))
+}
+
+fn weighed(
+    mesh: &Mesh,
+    body: &Body,
+    metres: f64,
+    rule: Option<NestedRule>,
+    substance: Option<&Substance>,
+    about: Option<[f64; 3]>,
+) -> WeighedBody {
+    let nested = (body.has_nested() && body.closed).then(|| {
+        let volume = |rule| {
+            mesh.solid(body, Some(rule)).map_or(0.0, |s| s.moments.zeroth) * metres.powi(3)
+        };
+        NestedFigures {
+            sum_m3: volume(NestedRule::Sum),
+            union_m3: volume(NestedRule::Union),
+            void_m3: volume(NestedRule::Void),
+        }
+    });
+    let (figures, refused) = match mesh.solid(body, rule) {
+        Ok(solid) => (Figures::of(&solid, &body.bounds, metres, substance, about), None),
+        Err(r) => {
+            let bounds = body.bounds.map(|p| p.map(|x| x * metres));
+            let figures = Figures {
+                area_m2: Some(mesh.area(body) * metres * metres).filter(|a| a.is_finite()),
+                material: substance.and_then(|s| s.name.clone()),
+                density_kg_m3: substance.map(|s| s.density.value),
+                ..Figures::unknown(Some(bounds))
+            };
+            let refused = Refused {
+                kind: r.kind,
+                open_edges: r.open_edges,
+                loops: r.loops,
+                advice: r.advice,
+            };
+            (figures, Some(refused))
+        }
+    };
+    WeighedBody {
+        id: body.id.clone(),
+        name: body.name.clone(),
+        triangles: body.triangles as u64,
+        closed: body.closed,
+        turned: body.turned,
+        shells: body.shell_count() as u64,
+        voids: body.void_count() as u64,
+        figures,
+        nested,
+        findings: Vec::new(),
+        refused,
+        estimate: None,
+        facets: None,
+        uncertainty: None,
+    }
+}
+
+/// All bodies together: their moments added about the first one's point, in file order.
+fn whole(
+    mesh: &Mesh,
+    bodies: &[(usize, &Body)],
+    metres: f64,
+    rule: Option<NestedRule>,
+    substance: Option<&Substance>,
+    about: Option<[f64; 3]>,
+) -> Figures {
+    let mut total: Option<Moments> = None;
+    let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
+    for (_, body) in bodies {
+        let Ok(solid) = mesh.solid(body, rule) else { continue };
+        let moments = solid.moments.scaled(metres);
+        total = Some(total.map_or(moments, |t| t.plus(&moments)));
+        area += solid.area * metres * metres;
+        absolute += solid.absolute_volume * metres.powi(3);
+        bounds = box_union(bounds, Some(body.bounds.map(|p| p.map(|x| x * metres))));
+    }
+    let total = total.unwrap_or_else(|| Moments::zero(nalgebra::Vector3::zeros()));
+    let condition = Some(absolute / total.zeroth.abs()).filter(|c| c.is_finite());
+    Figures::from_volume(&total, area, condition, bounds, substance, about)
+}

@@ -1,0 +1,99 @@
+//! The `weigh` document.
+
+use serde::Serialize;
+
+use crate::error::Error;
+use crate::masses::Figures;
+use crate::soundness::Finding;
+
+/// The command's part of the document.
+#[derive(Clone, Debug, Serialize)]
+pub struct WeighBody {
+    /// One answer an input, in order.
+    pub files: Vec<WeighedFile>,
+}
+
+/// What is said of one file.
+#[derive(Clone, Debug, Serialize)]
+pub struct WeighedFile {
+    /// As given.
+    pub path: String,
+    /// Name of the format; null where it could not be read.
+    pub format: Option<&'static str>,
+    /// Triangles, after polygons have been cut.
+    pub triangles: Option<u64>,
+    /// Symbol of the length unit.
+    pub unit: Option<&'static str>,
+    /// Whether the unit was assumed.
+    pub unit_assumed: bool,
+    /// Why it could not be read.
+    pub error: Option<Error>,
+    /// Findings that belong to no single body.
+    pub findings: Vec<Finding>,
+    /// Whether surfaces that cut each other were looked for.
+    pub overlap: &'static str,
+    /// Its bodies; null where only the whole was asked for.
+    pub bodies: Option<Vec<WeighedBody>>,
+    /// All bodies together; null where one of them cannot be weighed.
+    pub whole: Option<Figures>,
+    /// The bodies for want of which there is no whole.
+    pub whole_missing: Vec<String>,
+}
+
+/// What is said of one body.
+#[derive(Clone, Debug, Serialize)]
+pub struct WeighedBody {
+    /// Unique in the file.
+    pub id: String,
+    /// The file's own name.
+    pub name: Option<String>,
+    /// Its triangles.
+    pub triangles: u64,
+    /// Whether the directed edges cancel.
+    pub closed: bool,
+    /// Whether it was inside out and turned.
+    pub turned: bool,
+    /// Its shells.
+    pub shells: u64,
+    /// Those of them that are voids.
+    pub voids: u64,
+    /// Volume, mass, centres, inertia.
+    #[serde(flatten)]
+    pub figures: Figures,
+    /// The three readings, where a solid lies within a solid.
+    pub nested: Option<NestedFigures>,
+    /// What was found on it.
+    pub findings: Vec<Finding>,
+    /// Why it was not weighed.
+    pub refused: Option<Refused>,
+    /// How the figures of an open body were come by.
+    pub estimate: Option<()>,
+    /// What the facets do to the figures of a curved body.
+    pub facets: Option<()>,
+    /// How far the figures may be off; null where it was not computed.
+    pub uncertainty: Option<()>,
+}
+
+/// Volumes of a body that holds a solid within its solid.
+#[derive(Clone, Copy, Debug, Serialize)]
+pub struct NestedFigures {
+    /// Both counted, m³.
+    pub sum_m3: f64,
+    /// The overlap counted once, m³.
+    pub union_m3: f64,
+    /// The inner one taken as a void, m³.
+    pub void_m3: f64,
+}
+
+/// Why a body was not weighed.
+#[derive(Clone, Debug, Serialize)]
+pub struct Refused {
+    /// `not-closed`, `duplicate`, `nested-solid` or `degenerate`.
+    pub kind: &'static str,
+    /// Σ|imbalance| over undirected edges.
+    pub open_edges: u64,
+    /// Boundary loops.
+    pub loops: usize,
+    /// What to do.
+    pub advice: String,
+}

@@ -1,0 +1,272 @@
+//! What `weigh` prints for people.
+
+use super::Document;
+use super::digits::{Scale, significant, tensor};
+use super::footer::{CAUTION, footer};
+use super::table::{Cell, Column, Look, Mark, Table};
+use super::weigh::{WeighBody, WeighedBody, WeighedFile};
+use super::words::{box_size, file_heading, kind_word, point, unit_of};
+use crate::error::Result;
+use crate::masses::Figures;
+use crate::quantity::LengthUnit;
+use crate::soundness::Severity;
+
+/// Bodies of one file that are shown with their tensors; more are shown as a table alone.
+const IN_FULL: usize = 8;
+
+/// As text.
+pub fn render(document: &Document<WeighBody>, look: Look) -> String {
+    let mut out = String::new();
+    for file in &document.body.files {
+        out.push_str(&of_file(file, look));
+        out.push('\n');
+    }
+    let weighed = document.body.files.iter().any(|f| {
+        f.bodies.iter().flatten().any(|b| b.figures.mass_kg.is_some())
+    });
+    if weighed {
+        out.push_str(&format!("{CAUTION}\n"));
+    }
+    out.push_str(&footer(document, look));
+    out
+}
+
+fn of_file(file: &WeighedFile, look: Look) -> String {
+    let mut out =
+        file_heading(&file.path, file.format, file.triangles, file.unit, file.unit_assumed, look);
+    if file.error.is_some() {
+        out.push_str(&look.marked("not read: see the error\n", Mark::Fail));
+        return out;
+    }
+    let unit = unit_of(file.unit);
+    let bodies = file.bodies.as_deref().unwrap_or_default();
+    let first = bodies.first().map(|b| &b.figures);
+    if let Some(density) = first.and_then(|f| f.density_kg_m3) {
+        let name = first.and_then(|f| f.material.as_deref()).map_or(String::new(), |m| format!("{m}, "));
+        out.push_str(&format!("material: {name}{} kg/m3, solid\n", significant(density, 6)));
+    } else {
+        out.push_str("no density given: volume figures only (--density or --material gives masses)\n");
+    }
+    out.push('\n');
+    out.push_str(&table(file, unit).render(look));
+    for b in bodies.iter().filter(|b| b.refused.is_some()) {
+        out.push_str(&refusal(b, look));
+    }
+    for b in bodies {
+        out.push_str(&remarks(b, look));
+    }
+    for f in file.findings.iter().filter(|f| f.severity < Severity::Notes) {
+        out.push_str(&format!("{} {}: {}\n", f.count, kind_word(f.kind, f.count), f.advice));
+    }
+    let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
+    if readable.len() <= IN_FULL {
+        for b in &readable {
+            out.push_str(&in_full(&b.id, &b.figures, unit, look));
+        }
+    } else {
+        out.push_str(&format!(
+            "\n{} bodies: tensors of each with --json, or name one as FILE#BODY\n",
+            readable.len()
+        ));
+    }
+    if readable.len() > 1 && let Some(whole) = &file.whole {
+        out.push_str(&in_full("all bodies together", whole, unit, look));
+    }
+    out.push_str("\nself-overlap: not tested; surfaces that cut each other would count some space twice\n");
+    out
+}
+
+fn refusal(b: &WeighedBody, look: Look) -> String {
+    let Some(r) = &b.refused else { return String::new() };
+    let why = match r.kind {
+        "not-closed" => format!(
+            "not closed: {} open edges in {} boundary loop{}",
+            r.open_edges,
+            r.loops,
+            if r.loops == 1 { "" } else { "s" }
+        ),
+        "duplicate" => "facets stand twice".to_owned(),
+        "nested-solid" => "a solid lies within the solid".to_owned(),
+        other => other.to_owned(),
+    };
+    format!(
+        "{} {}: {why}; {}\n",
+        look.marked("REFUSED", Mark::Fail),
+        crate::text::shown(&b.id),
+        crate::text::shown(&r.advice)
+    )
+}
+
+fn remarks(b: &WeighedBody, look: Look) -> String {
+    let mut out = String::new();
+    for f in b.findings.iter().filter(|f| f.severity == Severity::Doubts || b.turned) {
+        out.push_str(&format!(
+            "{} {}: {} {}; {}\n",
+            look.marked("note", Mark::Fail),
+            crate::text::shown(&b.id),
+            f.count,
+            kind_word(f.kind, f.count),
+            crate::text::shown(&f.advice)
+        ));
+    }
+    if let Some(n) = &b.nested {
+        out.push_str(&format!(
+            "   sum {} cm3 · union {} cm3 · void {} cm3\n",
+            significant(n.sum_m3 * 1e6, 6),
+            significant(n.union_m3 * 1e6, 6),
+            significant(n.void_m3 * 1e6, 6)
+        ));
+    }
+    out
+}
+
+/// Centre, tensor, principal moments and axes of one thing.
+fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
+    let mut out = format!("\n{}\n", look.marked(&crate::text::shown(title), Mark::Heading));
+    let (Some(centre), Some(volume_inertia)) = (&f.centroid_m, &f.volume_inertia_m5) else {
+        return out;
+    };
+    let u = unit.symbol();
+    // kg·mm² and the like read better than kg·m² on parts of a hand's size.
+    let k = 1.0 / (unit.metres() * unit.metres());
+    let word = if f.mass_kg.is_some() { "centre of mass" } else { "centroid" };
+    out.push_str(&format!("{word}  {}   frame: the file's own axes and origin\n", point(centre, unit)));
+    let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
+        Some(i) => (i, format!("kg {u}2"), k),
+        None => (volume_inertia, format!("{u}5"), 1.0 / unit.metres().powi(5)),
+    };
+    out.push_str(&matrix(
+        &format!("inertia about the {word}, {name}; off-diagonals are the tensor's own, −∫xy"),
+        &tensor_si.map(|r| r.map(|x| x * scale)),
+    ));
+    let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
+    if let (Some(moments), Some(axes), Some(radii)) = (moments, &f.principal_axes, &f.radii_of_gyration_m) {
+        let mut t = Table::new(vec![
+            Column::text("n", "principal"),
+            Column::figures("moment", "moment", &name),
+            Column::figures("radius", "radius of gyration", u),
+            Column::text("axis", "axis"),
+        ]);
+        let free = f.axes_free.as_deref().unwrap_or_default();
+        for i in 0..3 {
+            let axis = axes[i].map(|x| format!("{:+.5}", x + 0.0)).join(" ");
+            let axis = if free.contains(&i) { format!("{axis} (free)") } else { axis };
+            t.row(vec![
+                Cell::text(&(i + 1).to_string()),
+                Cell::figure(significant(moments[i] * scale, 6), moments[i]),
+                Cell::figure(significant(radii[i] / unit.metres(), 6), radii[i]),
+                Cell::text(&axis),
+            ]);
+        }
+        out.push_str(&t.render(look));
+    }
+    if let Some(about) = &f.about {
+        let (tensor_si, name, scale) = match &about.inertia_kg_m2 {
+            Some(i) => (i, format!("kg {u}2"), k),
+            None => (&about.volume_inertia_m5, format!("{u}5"), 1.0 / unit.metres().powi(5)),
+        };
+        out.push_str(&matrix(
+            &format!("inertia about {}, {name}", point(&about.point_m, unit)),
+            &tensor_si.map(|r| r.map(|x| x * scale)),
+        ));
+    }
+    out
+}
+
+/// A tensor as three aligned rows under its title.
+pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3]) -> String {
+    let (cells, exponent) = tensor(m, 6);
+    let times = if exponent == 0 { String::new() } else { format!(" × 10^{exponent}") };
+    let width = cells.iter().flatten().map(String::len).max().unwrap_or(0);
+    let mut out = format!("{title}{times}\n");
+    for row in &cells {
+        let row = row.each_ref().map(|c| format!("{c:>width$}"));
+        out.push_str(&format!("  [ {} ]\n", row.join("  ")));
+    }
+    out
+}
+
+fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
+    let bodies = file.bodies.as_deref().unwrap_or_default();
+    let heaviest =
+        bodies.iter().filter_map(|b| b.figures.mass_kg).fold(0.0f64, |m, x| m.max(x.abs()));
+    let scale = Scale::for_mass(heaviest);
+    let u = unit.symbol();
+    let mut table = Table::new(vec![
+        Column::text("id", "body"),
+        Column::figures("volume_cm3", "volume", "cm3"),
+        Column::figures("area_cm2", "area", "cm2"),
+        Column::figures("mass", "mass", scale.symbol),
+        Column::figures("x", "centre x", u),
+        Column::figures("y", "y", u),
+        Column::figures("z", "z", u),
+        Column::text("size", &format!("box, {u}")),
+    ]);
+    for b in bodies {
+        let name = if b.refused.is_some() { format!("{} (refused)", b.id) } else { b.id.clone() };
+        table.row(cells(&name, &b.figures, unit, scale));
+    }
+    if bodies.len() > 1 {
+        match &file.whole {
+            Some(whole) => table.total(cells("total", whole, unit, scale)),
+            None => table.total(vec![Cell::text("total: none, a body is missing").marked(Mark::Fail)]),
+        }
+    }
+    table
+}
+
+fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
+    let figure = |x: Option<f64>, k: f64| {
+        x.map_or_else(Cell::empty, |x| Cell::figure(significant(x * k, 6), x * k))
+    };
+    let mut row = vec![
+        Cell::text(name),
+        figure(f.volume_m3, 1e6),
+        figure(f.area_m2, 1e4),
+        f.mass_kg.map_or_else(Cell::empty, |m| {
+            Cell::figure(significant(scale.of(m), 6), scale.of(m))
+        }),
+    ];
+    for k in 0..3 {
+        row.push(figure(f.centroid_m.map(|c| c[k] / unit.metres()), 1.0));
+    }
+    row.push(f.bounds_m.as_ref().map_or_else(Cell::empty, |b| Cell::text(&box_size(b, unit))));
+    row
+}
+
+/// As CSV: one row a body, SI units.
+///
+/// # Errors
+/// As [`Table::csv`].
+pub fn csv(body: &WeighBody) -> Result<String> {
+    let keys = [
+        "volume_m3", "area_m2", "density_kg_m3", "mass_kg", "centre_x_m", "centre_y_m",
+        "centre_z_m", "inertia_xx_kg_m2", "inertia_yy_kg_m2", "inertia_zz_kg_m2",
+        "inertia_xy_kg_m2", "inertia_xz_kg_m2", "inertia_yz_kg_m2", "size_x_m", "size_y_m",
+        "size_z_m",
+    ];
+    let mut columns =
+        vec![Column::text("path", ""), Column::text("id", ""), Column::text("refused", "")];
+    columns.extend(keys.iter().map(|k| Column::figures(k, k, "")));
+    let mut table = Table::new(columns);
+    for file in &body.files {
+        for b in file.bodies.iter().flatten() {
+            let f = &b.figures;
+            let i = |a: usize, b: usize| f.inertia_kg_m2.map(|t| t[a][b]);
+            let c = |k: usize| f.centroid_m.map(|c| c[k]);
+            let size = |k: usize| f.bounds_m.map(|b| b[1][k] - b[0][k]);
+            let figures = [
+                f.volume_m3, f.area_m2, f.density_kg_m3, f.mass_kg, c(0), c(1), c(2), i(0, 0),
+                i(1, 1), i(2, 2), i(0, 1), i(0, 2), i(1, 2), size(0), size(1), size(2),
+            ];
+            let mut row = vec![
+                Cell::text(&file.path),
+                Cell::text(&b.id),
+                Cell::text(b.refused.as_ref().map_or("", |r| r.kind)),
+            ];
+            row.extend(figures.map(|x| x.map_or_else(Cell::empty, |x| Cell::figure("", x))));
+            table.row(row);
+        }
+    }
+    table.csv()
+}
