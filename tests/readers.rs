@@ -278,6 +278,7 @@ mod obj {
             ("v 0 0 1e99\n", Kind::NotFinite, 1),
             ("v 0 0 0\nf 1 1 0\n", Kind::BadIndex, 2),
             ("v 0 0 0\nf 1 1 \\\n 2\n", Kind::BadIndex, 3),
+            ("v 0 0 0\nf 1 1\nfo 1 \\\n2 1\nf 1 1\n", Kind::BadIndex, 4),
             ("v 0 0 0\n\nf 1 -2 1\n", Kind::BadIndex, 3),
             (
                 "v 0 0 0\nf 1 1 99999999999999999999999\n",

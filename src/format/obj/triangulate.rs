@@ -329,7 +329,11 @@ mod tests {
             [(t + r) * t.cos(), (t + r) * t.sin()]
         };
         let outer = (0..2000).map(|k| arm(k, 3.0));
-        check(&outer.chain((0..2000).rev().map(|k| arm(k, 1.0))).collect::<Vec<_>>());
+        check(
+            &outer
+                .chain((0..2000).rev().map(|k| arm(k, 1.0)))
+                .collect::<Vec<_>>(),
+        );
     }
 
     #[test]
