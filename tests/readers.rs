@@ -278,6 +278,7 @@ mod obj {
             ("v 0 0 1e99\n", Kind::NotFinite, 1),
             ("v 0 0 0\nf 1 1 0\n", Kind::BadIndex, 2),
             ("v 0 0 0\nf 1 1 \\\n 2\n", Kind::BadIndex, 3),
+            ("v 0 0 0\nf 1 1\nfo 1 \\\n2 1\nf 1 1\n", Kind::BadIndex, 4),
             ("v 0 0 0\n\nf 1 -2 1\n", Kind::BadIndex, 3),
             (
                 "v 0 0 0\nf 1 1 99999999999999999999999\n",
@@ -348,6 +349,32 @@ mod obj {
     fn a_very_large_polygon_is_refused() {
         let face = |n: usize| format!("{V}f{}\n", " 1 2 3".repeat(n));
         fails(face(30_000), Kind::TooLarge, 5);
+    }
+}
+
+/// The same soup to the last bit on any number of threads: pieces have a fixed size.
+#[test]
+fn threads_do_not_matter() {
+    let mut obj = String::new();
+    let mut stl = String::new();
+    for i in 0..40_000 {
+        let x = f64::from(i).sin();
+        obj += &format!(
+            "v {x} 0 {i}\nv 1 {x} 0.5\nv {i} 1 {x}\nv 0 1 {x:.3}\no part {}\nf -4 -3 -2 -1\n",
+            i / 7000
+        );
+        stl += &FACET.replace("1 0 0", &format!("{x} {i} 0.25"));
+    }
+    let read_with = |threads: usize| {
+        let pool = rayon::ThreadPoolBuilder::new()
+            .num_threads(threads)
+            .build()
+            .unwrap();
+        pool.install(|| format!("{:?} {:?}", soup(&obj).unwrap(), soup(&stl).unwrap()))
+    };
+    let one = read_with(1);
+    for threads in [2, 3, 7] {
+        assert!(read_with(threads) == one, "{threads} threads");
     }
 }
 

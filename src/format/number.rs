@@ -76,21 +76,47 @@ pub(crate) fn word_end(text: &[u8], mut at: usize) -> usize {
     at
 }
 
-/// Eight ASCII digits as a number, or `None` if one of them is no digit. The arithmetic works on
-/// all eight bytes of a word at once: pairs, then fours, then eight.
+/// Powers of ten for up to eight digits.
+const TENS: [u64; 9] = [
+    1,
+    10,
+    100,
+    1_000,
+    10_000,
+    100_000,
+    1_000_000,
+    10_000_000,
+    100_000_000,
+];
+
+/// Reads up to eight digits at `at` and appends them to `mantissa`; returns how many there were.
+///
+/// The arithmetic works on all eight bytes of a word at once: the first byte that is no digit is
+/// found by carries into the top bits, the digits before it are moved to the end of the word, and
+/// pairs, fours and eights of them are combined.
 #[inline(always)]
-fn eight_digits(text: &[u8], at: usize) -> Option<u64> {
-    let bytes: [u8; 8] = text.get(at..at + 8)?.try_into().ok()?;
-    let word = u64::from_le_bytes(bytes);
-    let low = word.wrapping_sub(0x3030_3030_3030_3030);
-    let high = word.wrapping_add(0x4646_4646_4646_4646);
-    if (low | high) & 0x8080_8080_8080_8080 != 0 {
-        return None;
+fn digits(text: &[u8], at: usize, mantissa: &mut u64) -> usize {
+    let Some(bytes) = text.get(at..).and_then(|rest| rest.first_chunk::<8>()) else {
+        let rest = text.get(at..).unwrap_or(&[]);
+        let some = rest.iter().take_while(|b| b.is_ascii_digit());
+        return some
+            .map(|b| *mantissa = mantissa.wrapping_mul(10).wrapping_add(u64::from(b - b'0')))
+            .count();
+    };
+    let word = u64::from_le_bytes(*bytes);
+    let values = word.wrapping_sub(0x3030_3030_3030_3030);
+    let others = (values | word.wrapping_add(0x4646_4646_4646_4646)) & 0x8080_8080_8080_8080;
+    let count = (others.trailing_zeros() / 8) as usize;
+    if count == 0 {
+        return 0;
     }
-    let pairs = (low * 10) + (low >> 8);
+    let values = values << (8 * (8 - count));
+    let pairs = (values.wrapping_mul(10)).wrapping_add(values >> 8);
     let a = (pairs & 0x0000_00ff_0000_00ff).wrapping_mul(0x000f_4240_0000_0064);
     let b = ((pairs >> 16) & 0x0000_00ff_0000_00ff).wrapping_mul(0x0000_2710_0000_0001);
-    Some(a.wrapping_add(b) >> 32)
+    let value = a.wrapping_add(b) >> 32;
+    *mantissa = mantissa.wrapping_mul(TENS[count]).wrapping_add(value);
+    count
 }
 
 /// Reads one number at `at` and returns its value, correctly rounded, and where it ends; the
@@ -116,15 +142,12 @@ pub(crate) fn real(text: &[u8], at: usize, written: &mut Written) -> Option<(f64
     if text.get(p) == Some(&b'.') {
         p += 1;
         let fraction = p;
-        if let Some(eight) = eight_digits(text, p) {
-            mantissa = mantissa.wrapping_mul(100_000_000).wrapping_add(eight);
-            p += 8;
-        }
-        while let Some(d) = text.get(p).map(|b| b.wrapping_sub(b'0'))
-            && d < 10
-        {
-            mantissa = mantissa.wrapping_mul(10).wrapping_add(u64::from(d));
-            p += 1;
+        loop {
+            let some = digits(text, p, &mut mantissa);
+            p += some;
+            if some < 8 {
+                break;
+            }
         }
         count += p - fraction;
         if count > 19 {
@@ -141,7 +164,7 @@ pub(crate) fn real(text: &[u8], at: usize, written: &mut Written) -> Option<(f64
         if let Some(b'-' | b'+') = text.get(q) {
             q += 1;
         }
-        let digits = q;
+        let first = q;
         let mut power = 0i32;
         while let Some(d) = text.get(q).map(|b| b.wrapping_sub(b'0'))
             && d < 10
@@ -149,7 +172,7 @@ pub(crate) fn real(text: &[u8], at: usize, written: &mut Written) -> Option<(f64
             power = power.saturating_mul(10).saturating_add(i32::from(d));
             q += 1;
         }
-        if q == digits {
+        if q == first {
             return None;
         }
         p = q;
@@ -180,15 +203,15 @@ pub(crate) fn real(text: &[u8], at: usize, written: &mut Written) -> Option<(f64
 fn slow(text: &[u8], at: usize, written: &mut Written) -> Option<(f64, usize)> {
     let (value, used) = fast_float2::parse_partial::<f64, _>(&text[at..]).ok()?;
     let token = &text[at..at + used];
-    let digits = |part: &[u8]| part.iter().filter(|b| b.is_ascii_digit()).count();
+    let digit_count = |part: &[u8]| part.iter().filter(|b| b.is_ascii_digit()).count();
     let significand = token.split(|b| matches!(b, b'e' | b'E')).next()?;
-    if digits(significand) > 19 {
+    if digit_count(significand) > 19 {
         let point = memchr::memchr(b'.', significand).unwrap_or(significand.len());
         let power: i32 = std::str::from_utf8(token.get(significand.len() + 1..).unwrap_or(b""))
             .ok()
             .and_then(|t| t.parse().ok())
             .unwrap_or(0);
-        let decimals = i32::try_from(digits(&significand[point..])).unwrap_or(i32::MAX);
+        let decimals = i32::try_from(digit_count(&significand[point..])).unwrap_or(i32::MAX);
         written.decimals = written.decimals.max(decimals.saturating_sub(power));
         written.digits = u64::MAX;
     }

@@ -185,13 +185,25 @@ pub(super) fn scan(
             continue;
         }
         let blank_follows = text.get(at + 1).is_none_or(|&b| b <= b' ' || b == b'\\');
+        // `fo` is the older spelling of `f`.
+        let old = byte == b'f'
+            && text.get(at + 1) == Some(&b'o')
+            && text.get(at + 2).is_none_or(|&b| b <= b' ' || b == b'\\');
         at = match byte {
             b'v' if blank_follows => vertex(text, at + 1, ending, &mut piece)?,
-            b'f' if blank_follows => {
+            b'f' if blank_follows || old => {
                 let first = piece.corners.len();
-                let next = face(text, at, at + 1, base, ending, &mut piece)?;
+                let next = face(
+                    text,
+                    at,
+                    at + 1 + usize::from(old),
+                    base,
+                    ending,
+                    &mut piece,
+                )?;
                 if piece.corners.len() > stop_at {
-                    let found = corner_at(text, at, stop_at - first, ending);
+                    let k = stop_at.saturating_sub(first);
+                    let found = corner_at(text, at, k, ending);
                     return Ok(Scanned {
                         piece,
                         found: Some(found),
@@ -200,7 +212,7 @@ pub(super) fn scan(
                 next
             }
             b'#' => chunk::line_end(text, at, ending),
-            _ => other(text, at, base, ending, &mut piece)?,
+            _ => other(text, at, ending, &mut piece),
         };
     }
     Ok(Scanned { piece, found: None })
@@ -354,13 +366,7 @@ fn count(of: &mut Option<(usize, usize)>, at: usize) {
 
 /// Every statement that is neither `v` nor `f`.
 #[inline(never)]
-fn other<'a>(
-    text: &'a [u8],
-    at: usize,
-    base: usize,
-    ending: u8,
-    piece: &mut Piece<'a>,
-) -> Result<usize, Fault> {
+fn other<'a>(text: &'a [u8], at: usize, ending: u8, piece: &mut Piece<'a>) -> usize {
     let mut end = at;
     while let Some(&b) = text.get(end)
         && b > b' '
@@ -369,8 +375,7 @@ fn other<'a>(
         end += 1;
     }
     let naming = match &text[at..end] {
-        b"vn" | b"vt" | b"s" => return Ok(skip_statement(text, end, ending)),
-        b"fo" => return face(text, at, end, base, ending, piece),
+        b"vn" | b"vt" | b"s" => return skip_statement(text, end, ending),
         b"o" => Naming::Object,
         b"g" => Naming::Group,
         b"usemtl" => Naming::Material,
@@ -386,7 +391,7 @@ fn other<'a>(
                     }
                 }
             }
-            return Ok(skip_statement(text, end, ending));
+            return skip_statement(text, end, ending);
         }
     };
     let next = skip_statement(text, end, ending);
@@ -401,7 +406,7 @@ fn other<'a>(
         naming,
         text: name,
     });
-    Ok(next)
+    next
 }
 
 /// A statement over several lines as one line.
@@ -431,11 +436,12 @@ fn not_an_index(text: &[u8], at: usize) -> Fault {
 fn corner_at(text: &[u8], mut at: usize, k: usize, ending: u8) -> usize {
     // The key word is word 0.
     for _ in 0..=k {
-        if let Next::Word(word) = within(text, at, ending) {
-            at = word;
-            while text.get(at).is_some_and(|&b| b > b' ' && b != b'\\') {
-                at += 1;
-            }
+        let Next::Word(word) = within(text, at, ending) else {
+            break;
+        };
+        at = word;
+        while text.get(at).is_some_and(|&b| b > b' ' && b != b'\\') {
+            at += 1;
         }
     }
     match within(text, at, ending) {

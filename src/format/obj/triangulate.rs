@@ -2,9 +2,10 @@
 
 use robust::{Coord, orient2d};
 
-/// Point-in-triangle tests spent on one polygon before the rest of it is cut as a fan. Only
-/// polygons of more than about ten thousand corners, or ones that cross themselves, come near.
-const TESTS: u64 = 200_000_000;
+/// Corners looked at for one polygon (a second or so) before the rest of it is cut as a fan. Only
+/// polygons of tens of thousands of corners with long thin arms, or ones that cross themselves,
+/// come near.
+const TESTS: u64 = 100_000_000;
 
 /// Memory that is used again from polygon to polygon.
 #[derive(Debug, Default)]
@@ -12,8 +13,10 @@ pub(crate) struct Scratch {
     flat: Vec<Coord<f64>>,
     previous: Vec<u32>,
     next: Vec<u32>,
-    /// Corners that are not strictly convex: only they can lie in an ear.
+    /// Corners that were not strictly convex in the beginning, by x: only they can lie in an ear.
     blunt: Vec<u32>,
+    /// Whether a corner is still there and not strictly convex.
+    is_blunt: Vec<bool>,
     triangles: Vec<[u32; 3]>,
 }
 
@@ -99,17 +102,27 @@ fn clip_ears(s: &mut Scratch) {
     s.previous.extend((0..n).map(|i| (i + n - 1) % n));
     s.next.clear();
     s.next.extend((0..n).map(|i| (i + 1) % n));
-    s.blunt.clear();
+    s.is_blunt.clear();
     for i in 0..n {
-        if turn(s, i) <= 0.0 {
-            s.blunt.push(i);
-        }
+        let blunt = turn(s, i) <= 0.0;
+        s.is_blunt.push(blunt);
     }
+    s.blunt.clear();
+    s.blunt.extend((0..n).filter(|&i| s.is_blunt[i as usize]));
+    s.blunt
+        .sort_unstable_by(|&i, &j| s.flat[i as usize].x.total_cmp(&s.flat[j as usize].x));
     let mut left = n;
     let mut at = 1 % n;
     let mut refused = 0;
     let mut tests = 0;
     while left > 3 {
+        // Those that are gone are dropped from the list now and then.
+        if left.is_power_of_two() {
+            let Scratch {
+                blunt, is_blunt, ..
+            } = &mut *s;
+            blunt.retain(|&k| is_blunt[k as usize]);
+        }
         if tests > TESTS || is_ear(s, at, Closed::Yes, &mut tests) {
             at = clip(s, at);
             (left, refused) = (left - 1, 0);
@@ -141,7 +154,7 @@ enum Closed {
     No,
 }
 
-fn is_ear(s: &mut Scratch, i: u32, closed: Closed, tests: &mut u64) -> bool {
+fn is_ear(s: &Scratch, i: u32, closed: Closed, tests: &mut u64) -> bool {
     if turn(s, i) <= 0.0 {
         return false;
     }
@@ -149,20 +162,24 @@ fn is_ear(s: &mut Scratch, i: u32, closed: Closed, tests: &mut u64) -> bool {
     let [a, b, c] = [p, i, q].map(|k| s.flat[k as usize]);
     let (x0, x1) = (a.x.min(b.x).min(c.x), a.x.max(b.x).max(c.x));
     let (y0, y1) = (a.y.min(b.y).min(c.y), a.y.max(b.y).max(c.y));
-    *tests += s.blunt.len() as u64;
-    s.blunt.iter().all(|&k| {
-        let r = s.flat[k as usize];
-        // Corners in the place of the triangle's own are the two sides of a bridge to a hole;
-        // their edges lie outside of the corner's angle.
-        if r.x < x0 || r.x > x1 || r.y < y0 || r.y > y1 || r == a || r == b || r == c {
-            return true;
-        }
-        let sides = [orient2d(a, b, r), orient2d(b, c, r), orient2d(c, a, r)];
-        match closed {
-            Closed::Yes => sides.iter().any(|&x| x < 0.0),
-            Closed::No => sides.iter().any(|&x| x <= 0.0),
-        }
-    })
+    let begin = s.blunt.partition_point(|&k| s.flat[k as usize].x < x0);
+    s.blunt[begin..]
+        .iter()
+        .map(|&k| (k, s.flat[k as usize]))
+        .take_while(|(_, r)| r.x <= x1)
+        .all(|(k, r)| {
+            *tests += 1;
+            // Corners in the place of the triangle's own are the two sides of a bridge to a hole;
+            // their edges lie outside of the corner's angle.
+            if !s.is_blunt[k as usize] || r.y < y0 || r.y > y1 || r == a || r == b || r == c {
+                return true;
+            }
+            let sides = [orient2d(a, b, r), orient2d(b, c, r), orient2d(c, a, r)];
+            match closed {
+                Closed::Yes => sides.iter().any(|&x| x < 0.0),
+                Closed::No => sides.iter().any(|&x| x <= 0.0),
+            }
+        })
 }
 
 /// Takes corner `i` off and returns the next one to look at.
@@ -171,17 +188,19 @@ fn clip(s: &mut Scratch, i: u32) -> u32 {
     s.triangles.push([p, i, q]);
     s.next[p as usize] = q;
     s.previous[q as usize] = p;
-    if !s.blunt.is_empty() {
-        let (turn_p, turn_q) = (turn(s, p), turn(s, q));
-        s.blunt
-            .retain(|&k| !(k == i || k == p && turn_p > 0.0 || k == q && turn_q > 0.0));
+    s.is_blunt[i as usize] = false;
+    for k in [p, q] {
+        // A convex corner stays convex when an ear beside it goes.
+        if s.is_blunt[k as usize] {
+            s.is_blunt[k as usize] = turn(s, k) <= 0.0;
+        }
     }
     q
 }
 
 /// The corner to clip from a polygon without ears: one without area, or one with nothing strictly
 /// inside, or the next.
-fn least_bad(s: &mut Scratch, at: u32, left: u32, tests: &mut u64) -> u32 {
+fn least_bad(s: &Scratch, at: u32, left: u32, tests: &mut u64) -> u32 {
     let mut k = at;
     let mut second = None;
     for _ in 0..left {
@@ -301,6 +320,20 @@ mod tests {
             [0., 1.],
             [1., 1.],
         ]);
+    }
+
+    #[test]
+    fn a_long_spiral() {
+        let arm = |k: i32, r: f64| {
+            let t = f64::from(k) * 0.05;
+            [(t + r) * t.cos(), (t + r) * t.sin()]
+        };
+        let outer = (0..2000).map(|k| arm(k, 3.0));
+        check(
+            &outer
+                .chain((0..2000).rev().map(|k| arm(k, 1.0)))
+                .collect::<Vec<_>>(),
+        );
     }
 
     #[test]

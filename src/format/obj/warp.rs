@@ -210,6 +210,11 @@ fn six(a: [f64; 3], b: [f64; 3], c: [f64; 3]) -> f64 {
 /// first corner.
 fn volumes(points: &[[f64; 3]], chosen: &[[u32; 3]]) -> (f64, f64) {
     let n = points.len();
+    if let [_, p, q, r] = *points {
+        // Against the diagonal 0-2 the diagonal 1-3 adds the tetrahedron of the four corners.
+        let other = six(p, q, r) / 6.0 * if chosen[0] == [0, 1, 2] { 1.0 } else { -1.0 };
+        return (other.min(0.0), other.max(0.0));
+    }
     let own: f64 = chosen
         .iter()
         .map(|t| {
