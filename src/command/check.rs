@@ -38,9 +38,14 @@ pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
         }
     }
     let body = CheckBody { files };
-    answers.finish("bismar/check/1", exit, body, common, report::check_text::render, |b| {
-        report::check_text::csv(b)
-    })
+    answers.finish(
+        "bismar/check/1",
+        exit,
+        body,
+        common,
+        report::check_text::render,
+        |b| report::check_text::csv(b),
+    )
 }
 
 fn unread(path: &std::path::Path, error: &Error) -> CheckedFile {
@@ -79,7 +84,11 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         .map(|&(i, body)| checked(&m.mesh, body, std::mem::take(&mut audit.bodies[i]), metres))
         .collect();
     // Of a picked body the rest of the file is no fault.
-    let file_findings = if input.pick.is_some() { Vec::new() } else { audit.file };
+    let file_findings = if input.pick.is_some() {
+        Vec::new()
+    } else {
+        audit.file
+    };
     let sound = !bodies.is_empty()
         && bodies.iter().all(|b| b.sound)
         && !file_findings.iter().any(Finding::is_unsound);
@@ -100,7 +109,10 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
 }
 
 fn checked(mesh: &Mesh, body: &Body, findings: Vec<Finding>, metres: f64) -> CheckedBody {
-    let volume = mesh.solid(body, None).ok().map(|s| s.moments.zeroth * metres.powi(3));
+    let volume = mesh
+        .solid(body, None)
+        .ok()
+        .map(|s| s.moments.zeroth * metres.powi(3));
     let sound = body.closed && volume.is_some() && !findings.iter().any(Finding::is_unsound);
     CheckedBody {
         id: body.id.clone(),

@@ -33,10 +33,16 @@ pub struct MeshArgs {
 }
 
 fn parse_unit(text: &str) -> Result<LengthUnit, String> {
-    [LengthUnit::Mm, LengthUnit::Cm, LengthUnit::M, LengthUnit::In, LengthUnit::Ft]
-        .into_iter()
-        .find(|u| u.symbol() == text)
-        .ok_or_else(|| "the units are mm, cm, m, in, ft".to_owned())
+    [
+        LengthUnit::Mm,
+        LengthUnit::Cm,
+        LengthUnit::M,
+        LengthUnit::In,
+        LengthUnit::Ft,
+    ]
+    .into_iter()
+    .find(|u| u.symbol() == text)
+    .ok_or_else(|| "the units are mm, cm, m, in, ft".to_owned())
 }
 
 fn parse_family(text: &str) -> Result<Family, String> {
@@ -82,9 +88,15 @@ pub fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
                     let e = Error::new(Kind::Empty, "no mesh file in this folder", advice);
                     out.push((name.clone(), Err(e.in_file(name))));
                 }
-                Ok(files) => out.extend(
-                    files.into_iter().map(|f| (f.clone(), Ok(Input { path: f, pick: None }))),
-                ),
+                Ok(files) => out.extend(files.into_iter().map(|f| {
+                    (
+                        f.clone(),
+                        Ok(Input {
+                            path: f,
+                            pick: None,
+                        }),
+                    )
+                })),
                 Err(e) => out.push((name.clone(), Err(e))),
             }
         } else {
@@ -110,8 +122,12 @@ pub fn split_pick(name: &Path) -> (PathBuf, Option<String>) {
 
 fn meshes_in(folder: &Path, deep: bool) -> Result<Vec<PathBuf>> {
     let fail = |e: std::io::Error| {
-        Error::new(Kind::NotFound, format!("cannot read the folder: {e}"), "check its permissions")
-            .in_file(folder)
+        Error::new(
+            Kind::NotFound,
+            format!("cannot read the folder: {e}"),
+            "check its permissions",
+        )
+        .in_file(folder)
     };
     let mut entries: Vec<PathBuf> = std::fs::read_dir(folder)
         .map_err(fail)?
@@ -139,13 +155,20 @@ pub fn open(input: &Input, hash: bool) -> Result<(Bytes, InputFact)> {
     } else {
         Bytes::open(&input.path)?
     };
-    let fact = InputFact::new(&input.path, Some(bytes.len() as u64), hash.then(|| digest(&bytes)));
+    let fact = InputFact::new(
+        &input.path,
+        Some(bytes.len() as u64),
+        hash.then(|| digest(&bytes)),
+    );
     Ok((bytes, fact))
 }
 
 /// SHA-256 as lower-case hexadecimal.
 pub fn digest(bytes: &[u8]) -> String {
-    Sha256::digest(bytes).iter().map(|b| format!("{b:02x}")).collect()
+    Sha256::digest(bytes)
+        .iter()
+        .map(|b| format!("{b:02x}"))
+        .collect()
 }
 
 /// SHA-256 of a file that is read in pieces.
@@ -156,7 +179,11 @@ pub fn digest_file(path: &Path) -> std::io::Result<String> {
     loop {
         let n = file.read(&mut block)?;
         if n == 0 {
-            return Ok(hasher.finalize().iter().map(|b| format!("{b:02x}")).collect());
+            return Ok(hasher
+                .finalize()
+                .iter()
+                .map(|b| format!("{b:02x}"))
+                .collect());
         }
         hasher.update(&block[..n]);
     }
@@ -188,7 +215,10 @@ pub fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
             advice: "say --unit mm, cm, m, in or ft".to_owned(),
         });
     }
-    let stem = input.path.file_stem().map_or("body".into(), |s| s.to_string_lossy());
+    let stem = input
+        .path
+        .file_stem()
+        .map_or("body".into(), |s| s.to_string_lossy());
     let stem = if stem == "-" { "body".into() } else { stem };
     let mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
     Ok(ReadMesh {
@@ -206,9 +236,13 @@ pub fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
 /// `unknown-name` with the names that there are.
 pub fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'a Body)>> {
     let all = mesh.bodies().iter().enumerate();
-    let Some(pick) = &input.pick else { return Ok(all.collect()) };
-    let mut chosen: Vec<_> =
-        all.clone().filter(|(_, b)| b.name.as_ref() == Some(pick)).collect();
+    let Some(pick) = &input.pick else {
+        return Ok(all.collect());
+    };
+    let mut chosen: Vec<_> = all
+        .clone()
+        .filter(|(_, b)| b.name.as_ref() == Some(pick))
+        .collect();
     if chosen.is_empty() {
         chosen = all.filter(|(_, b)| b.id == *pick).collect();
     }
@@ -216,7 +250,11 @@ pub fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'a Body)
         let mut names: Vec<&str> = mesh.bodies().iter().map(|b| b.id.as_str()).collect();
         let more = names.len().saturating_sub(20);
         names.truncate(20);
-        let more = if more > 0 { format!(" and {more} more") } else { String::new() };
+        let more = if more > 0 {
+            format!(" and {more} more")
+        } else {
+            String::new()
+        };
         return Err(Error::new(
             Kind::UnknownName,
             format!("no body is called \"{pick}\""),

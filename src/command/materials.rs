@@ -32,6 +32,17 @@ pub fn run(args: &MaterialsArgs, common: &Common) -> Result<Answer> {
         }
     };
     let materials = found.into_iter().map(MaterialRow::of).collect();
-    let none: Gathered<()> = Gathered { each: Vec::new(), warnings: Vec::new(), facts: Vec::new() };
-    none.finish("bismar/materials/1", 0, MaterialsBody { materials }, common, render, csv)
+    let none: Gathered<()> = Gathered {
+        each: Vec::new(),
+        warnings: Vec::new(),
+        facts: Vec::new(),
+    };
+    none.finish(
+        "bismar/materials/1",
+        0,
+        MaterialsBody { materials },
+        common,
+        render,
+        csv,
+    )
 }

@@ -19,7 +19,12 @@ use inputs::Input;
 
 /// Mass, balance point and inertia of mesh exports, with every mesh proved closed or refused
 #[derive(Parser, Debug)]
-#[command(name = "bismar", version, max_term_width = 100, disable_help_subcommand = true)]
+#[command(
+    name = "bismar",
+    version,
+    max_term_width = 100,
+    disable_help_subcommand = true
+)]
 struct Cli {
     #[command(flatten)]
     common: Common,
@@ -78,7 +83,9 @@ pub fn main() -> u8 {
     };
     if let Some(n) = cli.common.threads {
         // Fails only if a pool is running already, and none is.
-        let _ = rayon::ThreadPoolBuilder::new().num_threads(n.into()).build_global();
+        let _ = rayon::ThreadPoolBuilder::new()
+            .num_threads(n.into())
+            .build_global();
     }
     let result = match &cli.command {
         Command::Check(args) => check::run(args, &cli.common),
@@ -97,9 +104,15 @@ pub fn main() -> u8 {
 
 fn manual() -> Result<Answer> {
     let mut text = Vec::new();
-    clap_mangen::Man::new(Cli::command()).render(&mut text).map_err(|e| {
-        Error::new(Kind::CannotWrite, format!("cannot make the manual: {e}"), "try again")
-    })?;
+    clap_mangen::Man::new(Cli::command())
+        .render(&mut text)
+        .map_err(|e| {
+            Error::new(
+                Kind::CannotWrite,
+                format!("cannot make the manual: {e}"),
+                "try again",
+            )
+        })?;
     Ok(Answer::of_text(text))
 }
 
@@ -112,16 +125,31 @@ fn usage(e: &clap::Error, args: &[std::ffi::OsString]) -> u8 {
         return if e.exit_code() == 0 { 0 } else { 2 };
     }
     let text = e.to_string();
-    let message = text.lines().next().unwrap_or_default().trim_start_matches("error: ");
+    let message = text
+        .lines()
+        .next()
+        .unwrap_or_default()
+        .trim_start_matches("error: ");
     let error = Error::new(Kind::Usage, message, "see bismar --help");
-    failure(vec![error], &Common { json: true, ..Common::default() })
-        .say(&Common { json: true, ..Common::default() })
+    failure(
+        vec![error],
+        &Common {
+            json: true,
+            ..Common::default()
+        },
+    )
+    .say(&Common {
+        json: true,
+        ..Common::default()
+    })
 }
 
 /// Nothing could be answered.
 fn failure(mut errors: Vec<Error>, common: &Common) -> Answer {
     let more = errors.split_off(1.min(errors.len()));
-    let Some(error) = errors.pop() else { return Answer::of_text(Vec::new()) };
+    let Some(error) = errors.pop() else {
+        return Answer::of_text(Vec::new());
+    };
     let text = if common.json {
         to_json(&Document {
             schema: "bismar/error/1",
@@ -129,19 +157,32 @@ fn failure(mut errors: Vec<Error>, common: &Common) -> Answer {
             exit: 2,
             warnings: Vec::new(),
             inputs: Vec::new(),
-            body: Failure { error: error.clone(), more: more.clone() },
+            body: Failure {
+                error: error.clone(),
+                more: more.clone(),
+            },
         })
     } else {
         String::new()
     };
     let errors = std::iter::once(error).chain(more).collect();
-    Answer { exit: 2, text, warnings: Vec::new(), errors }
+    Answer {
+        exit: 2,
+        text,
+        warnings: Vec::new(),
+        errors,
+    }
 }
 
 impl Answer {
     fn of_text(text: Vec<u8>) -> Self {
         let text = String::from_utf8_lossy(&text).into_owned();
-        Self { exit: 0, text, warnings: Vec::new(), errors: Vec::new() }
+        Self {
+            exit: 0,
+            text,
+            warnings: Vec::new(),
+            errors: Vec::new(),
+        }
     }
 
     /// Prints the answer: results on standard output, the rest on standard error.
@@ -164,7 +205,10 @@ impl Answer {
             }
         }
         let mut out = std::io::stdout().lock();
-        match out.write_all(self.text.as_bytes()).and_then(|()| out.flush()) {
+        match out
+            .write_all(self.text.as_bytes())
+            .and_then(|()| out.flush())
+        {
             // Whoever reads has seen enough.
             Err(e) if e.kind() == std::io::ErrorKind::BrokenPipe => self.exit,
             Err(e) => {
@@ -198,7 +242,11 @@ fn gather<T: Send>(
     inputs: Vec<(PathBuf, Result<Input>)>,
     answer: impl Fn(&Input) -> (Option<InputFact>, Result<(T, Vec<Warning>, InputFact)>) + Sync,
 ) -> Gathered<T> {
-    type Told<T> = (PathBuf, Option<InputFact>, Result<(T, Vec<Warning>, InputFact)>);
+    type Told<T> = (
+        PathBuf,
+        Option<InputFact>,
+        Result<(T, Vec<Warning>, InputFact)>,
+    );
     let ask = |(path, input): (PathBuf, Result<Input>)| -> Told<T> {
         match input {
             Ok(input) => {
@@ -220,9 +268,14 @@ fn gather<T: Send>(
         }
     }
     told.par_extend(batch.into_par_iter().map(ask));
-    let mut out = Gathered { each: Vec::new(), warnings: Vec::new(), facts: Vec::new() };
+    let mut out = Gathered {
+        each: Vec::new(),
+        warnings: Vec::new(),
+        facts: Vec::new(),
+    };
     for (path, fact, result) in told {
-        out.facts.push(fact.unwrap_or_else(|| InputFact::new(&path, None, None)));
+        out.facts
+            .push(fact.unwrap_or_else(|| InputFact::new(&path, None, None)));
         let result = result.map(|(file, warnings, _)| {
             out.warnings.extend(warnings);
             file
@@ -252,8 +305,11 @@ impl<T> Gathered<T> {
         text: impl Fn(&Document<B>, Look) -> String,
         csv: impl Fn(&B) -> Result<String>,
     ) -> Result<Answer> {
-        let errors: Vec<Error> =
-            self.each.iter().filter_map(|o| o.result.as_ref().err().cloned()).collect();
+        let errors: Vec<Error> = self
+            .each
+            .iter()
+            .filter_map(|o| o.result.as_ref().err().cloned())
+            .collect();
         let nothing = !self.each.is_empty() && errors.len() == self.each.len();
         let warnings = self.warnings.clone();
         let document = Document {
@@ -274,7 +330,10 @@ impl<T> Gathered<T> {
                 warnings: document.warnings,
                 inputs: document.inputs,
                 body: FailureOf {
-                    failure: Failure { error: all.remove(0), more },
+                    failure: Failure {
+                        error: all.remove(0),
+                        more,
+                    },
                     body: document.body,
                 },
             })
@@ -285,6 +344,11 @@ impl<T> Gathered<T> {
         } else {
             text(&document, Look::of_standard_output())
         };
-        Ok(Answer { exit, text, warnings, errors })
+        Ok(Answer {
+            exit,
+            text,
+            warnings,
+            errors,
+        })
     }
 }

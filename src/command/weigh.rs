@@ -99,9 +99,14 @@ pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
         });
     }
     let body = WeighBody { files };
-    answers.finish("bismar/weigh/1", exit, body, common, report::weigh_text::render, |b| {
-        report::weigh_text::csv(b)
-    })
+    answers.finish(
+        "bismar/weigh/1",
+        exit,
+        body,
+        common,
+        report::weigh_text::render,
+        |b| report::weigh_text::csv(b),
+    )
 }
 
 fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
@@ -115,11 +120,19 @@ fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
                 "state the density of the solid material",
             ));
         }
-        return Ok(Some(Substance { name: None, density }));
+        return Ok(Some(Substance {
+            name: None,
+            density,
+        }));
     }
-    let Some(word) = &args.material else { return Ok(None) };
+    let Some(word) = &args.material else {
+        return Ok(None);
+    };
     let material = Table::standard().get(word)?;
-    Ok(Some(Substance { name: Some(material.name.clone()), density: material.density }))
+    Ok(Some(Substance {
+        name: Some(material.name.clone()),
+        density: material.density,
+    }))
 }
 
 /// The point of `--about`, m.
@@ -176,8 +189,11 @@ fn answer(
             ..weighed(&m.mesh, body, metres, rule, substance, about)
         })
         .collect();
-    let missing: Vec<String> =
-        bodies.iter().filter(|b| b.refused.is_some()).map(|b| b.id.clone()).collect();
+    let missing: Vec<String> = bodies
+        .iter()
+        .filter(|b| b.refused.is_some())
+        .map(|b| b.id.clone())
+        .collect();
     let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
         [one] => one.figures.clone(),
         _ => whole(&m.mesh, &chosen, metres, rule, substance, about),
@@ -189,7 +205,11 @@ fn answer(
         unit: Some(m.unit.symbol()),
         unit_assumed: m.unit_assumed,
         error: None,
-        findings: if input.pick.is_some() { Vec::new() } else { audit.file },
+        findings: if input.pick.is_some() {
+            Vec::new()
+        } else {
+            audit.file
+        },
         overlap: "untested",
         bodies: Some(bodies),
         whole,
@@ -208,7 +228,9 @@ fn weighed(
 ) -> WeighedBody {
     let nested = (body.has_nested() && body.closed).then(|| {
         let volume = |rule| {
-            mesh.solid(body, Some(rule)).map_or(0.0, |s| s.moments.zeroth) * metres.powi(3)
+            mesh.solid(body, Some(rule))
+                .map_or(0.0, |s| s.moments.zeroth)
+                * metres.powi(3)
         };
         NestedFigures {
             sum_m3: volume(NestedRule::Sum),
@@ -217,7 +239,10 @@ fn weighed(
         }
     });
     let (figures, refused) = match mesh.solid(body, rule) {
-        Ok(solid) => (Figures::of(&solid, &body.bounds, metres, substance, about), None),
+        Ok(solid) => (
+            Figures::of(&solid, &body.bounds, metres, substance, about),
+            None,
+        ),
         Err(r) => {
             let bounds = body.bounds.map(|p| p.map(|x| x * metres));
             let figures = Figures {
@@ -265,7 +290,9 @@ fn whole(
     let mut total: Option<Moments> = None;
     let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
     for (_, body) in bodies {
-        let Ok(solid) = mesh.solid(body, rule) else { continue };
+        let Ok(solid) = mesh.solid(body, rule) else {
+            continue;
+        };
         let moments = solid.moments.scaled(metres);
         total = Some(total.map_or(moments, |t| t.plus(&moments)));
         area += solid.area * metres * metres;

@@ -67,7 +67,10 @@ pub struct Sum {
 
 impl Sum {
     /// Nothing.
-    pub const ZERO: Self = Self { high: 0.0, low: 0.0 };
+    pub const ZERO: Self = Self {
+        high: 0.0,
+        low: 0.0,
+    };
 
     /// Adds one term.
     #[inline(always)]

@@ -28,7 +28,11 @@ pub fn exact_volume_sign(facets: &impl Corners, select: Select<'_>) -> i8 {
         .unwrap_or(0);
     let whole = |x: f64| -> BigInt {
         let (m, e) = mantissa(x);
-        if m == 0 { BigInt::zero() } else { BigInt::from(m) << (e - smallest) as usize }
+        if m == 0 {
+            BigInt::zero()
+        } else {
+            BigInt::from(m) << (e - smallest) as usize
+        }
     };
     let mut total = BigInt::zero();
     for i in 0..n {
@@ -124,7 +128,12 @@ mod tests {
     fn the_sign_of_a_sliver_of_volume_is_found() {
         let e = f64::MIN_POSITIVE;
         let t = [[0.0; 3], [1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, e]];
-        let facets = [[t[0], t[2], t[1]], [t[0], t[1], t[3]], [t[1], t[2], t[3]], [t[0], t[3], t[2]]];
+        let facets = [
+            [t[0], t[2], t[1]],
+            [t[0], t[1], t[3]],
+            [t[1], t[2], t[3]],
+            [t[0], t[3], t[2]],
+        ];
         assert_eq!(exact_volume_sign(&LooseFacets(&facets), Select::All), 1);
         let turned = facets.map(|[a, b, c]| [a, c, b]);
         assert_eq!(exact_volume_sign(&LooseFacets(&turned), Select::All), -1);

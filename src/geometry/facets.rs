@@ -24,7 +24,11 @@ impl<'a> RecordFacets<'a> {
     pub fn raw(&self, t: usize) -> [[f32; 3]; 3] {
         let r = &self.0[t];
         let f = |at: usize| f32::from_le_bytes([r[at], r[at + 1], r[at + 2], r[at + 3]]);
-        [[f(12), f(16), f(20)], [f(24), f(28), f(32)], [f(36), f(40), f(44)]]
+        [
+            [f(12), f(16), f(20)],
+            [f(24), f(28), f(32)],
+            [f(36), f(40), f(44)],
+        ]
     }
 
     /// The facet normal as the file states it.

@@ -7,7 +7,11 @@ use robust::{Coord, Coord3D, orient2d, orient3d};
 pub type Point = [f64; 3];
 
 fn at3(p: &Point) -> Coord3D<f64> {
-    Coord3D { x: p[0], y: p[1], z: p[2] }
+    Coord3D {
+        x: p[0],
+        y: p[1],
+        z: p[2],
+    }
 }
 
 /// On which side of the plane through a, b, c the point p lies: positive where (b−a)×(c−a)
@@ -27,8 +31,15 @@ pub fn turn_2d(a: &Point, b: &Point, c: &Point, u: usize, v: usize) -> i8 {
 #[inline]
 pub fn is_flat(t: &[Point; 3]) -> bool {
     let [a, b, c] = t;
-    let (u, v) = ([0, 1, 2].map(|k| b[k] - a[k]), [0, 1, 2].map(|k| c[k] - a[k]));
-    let n = [u[1] * v[2] - u[2] * v[1], u[2] * v[0] - u[0] * v[2], u[0] * v[1] - u[1] * v[0]];
+    let (u, v) = (
+        [0, 1, 2].map(|k| b[k] - a[k]),
+        [0, 1, 2].map(|k| c[k] - a[k]),
+    );
+    let n = [
+        u[1] * v[2] - u[2] * v[1],
+        u[2] * v[0] - u[0] * v[2],
+        u[0] * v[1] - u[1] * v[0],
+    ];
     let size = |w: &[f64; 3]| w[0].abs().max(w[1].abs()).max(w[2].abs());
     // Rounding of the differences and products is below 16 ulp of the edges' product plus what
     // the coordinates' own size loses; past that the area is certainly not zero.
@@ -36,7 +47,9 @@ pub fn is_flat(t: &[Point; 3]) -> bool {
     if size(&n) > doubt {
         return false;
     }
-    [(0, 1), (1, 2), (2, 0)].iter().all(|&(i, j)| turn_2d(a, b, c, i, j) == 0)
+    [(0, 1), (1, 2), (2, 0)]
+        .iter()
+        .all(|&(i, j)| turn_2d(a, b, c, i, j) == 0)
 }
 
 fn sign(x: f64) -> i8 {
@@ -70,7 +83,11 @@ pub fn ray_crossing(p: &Point, t: &[Point; 3]) -> Position {
             return Position::Misses;
         }
     }
-    let raw = [turn_2d(a, b, p, 1, 2), turn_2d(b, c, p, 1, 2), turn_2d(c, a, p, 1, 2)];
+    let raw = [
+        turn_2d(a, b, p, 1, 2),
+        turn_2d(b, c, p, 1, 2),
+        turn_2d(c, a, p, 1, 2),
+    ];
     let grazes = raw.contains(&0);
     if grazes {
         // On the rim, or in a triangle that is seen edge-on: the point may lie on it.
@@ -106,7 +123,11 @@ fn in_closed_triangle(p: &Point, t: &[Point; 3]) -> bool {
         if turn_2d(a, b, c, u, v) == 0 {
             continue;
         }
-        let s = [turn_2d(a, b, p, u, v), turn_2d(b, c, p, u, v), turn_2d(c, a, p, u, v)];
+        let s = [
+            turn_2d(a, b, p, u, v),
+            turn_2d(b, c, p, u, v),
+            turn_2d(c, a, p, u, v),
+        ];
         return s.iter().all(|&x| x >= 0) || s.iter().all(|&x| x <= 0);
     }
     // No area at all: the triangle is a segment; p lies on it if within its box and collinear,
@@ -134,10 +155,20 @@ mod tests {
     fn a_ray_through_a_shared_edge_counts_once() {
         // Two triangles of a square in the plane x = 1, seen from the origin; the ray runs
         // exactly along their shared diagonal's middle.
-        let (p, q, r, s) =
-            ([1.0, -1.0, -1.0], [1.0, 1.0, -1.0], [1.0, 1.0, 1.0], [1.0, -1.0, 1.0]);
-        let hits = [ray_crossing(&[0.0; 3], &[p, q, r]), ray_crossing(&[0.0; 3], &[p, r, s])];
-        assert_eq!(hits.iter().filter(|h| **h == Position::Crosses(1)).count(), 1);
+        let (p, q, r, s) = (
+            [1.0, -1.0, -1.0],
+            [1.0, 1.0, -1.0],
+            [1.0, 1.0, 1.0],
+            [1.0, -1.0, 1.0],
+        );
+        let hits = [
+            ray_crossing(&[0.0; 3], &[p, q, r]),
+            ray_crossing(&[0.0; 3], &[p, r, s]),
+        ];
+        assert_eq!(
+            hits.iter().filter(|h| **h == Position::Crosses(1)).count(),
+            1
+        );
         assert_eq!(hits.iter().filter(|h| **h == Position::Misses).count(), 1);
         assert_eq!(ray_crossing(&[1.0, 0.0, 0.0], &[p, q, r]), Position::On);
         assert_eq!(ray_crossing(&[2.0, 0.0, 0.0], &[p, q, r]), Position::Misses);

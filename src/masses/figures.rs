@@ -112,8 +112,7 @@ impl Figures {
         out.principal_axes = Some(p.axes);
         out.axes_free = Some(p.free);
         // A principal moment that rounding has left below zero has a radius of zero.
-        out.radii_of_gyration_m =
-            Some(p.moments.map(|m| (m / volume.zeroth).max(0.0).sqrt()));
+        out.radii_of_gyration_m = Some(p.moments.map(|m| (m / volume.zeroth).max(0.0).sqrt()));
         let density = substance.map(|s| s.density.value);
         if let Some(density) = density {
             out.mass_kg = finite(volume.zeroth * density);
@@ -193,7 +192,10 @@ mod tests {
         let f = crate::geometry::LooseFacets(&facets);
         let solid =
             crate::moments::integrate(&f, crate::geometry::Select::All, facets[0][0], facets[0][0]);
-        let steel = Substance { name: None, density: Quantity::exact(7850.0) };
+        let steel = Substance {
+            name: None,
+            density: Quantity::exact(7850.0),
+        };
         let got = Figures::of(&solid, &[[0.0; 3]; 2], 1.0, Some(&steel), None);
         assert!((got.volume_m3.unwrap() - 30.0).abs() < 1e-12);
         let i = got.inertia_kg_m2.unwrap();

@@ -100,9 +100,15 @@ impl Mesh {
         let mut drafts = families(&soup, &found.shells);
         drafts.sort_by_key(|d| d.iter().map(|r| found.shells[r.shell].first).min());
         let mut ids = Ids::default();
-        let bodies = drafts.into_iter().map(|roles| body(&soup, &found, roles, stem, &mut ids));
+        let bodies = drafts
+            .into_iter()
+            .map(|roles| body(&soup, &found, roles, stem, &mut ids));
         let bodies = bodies.collect();
-        Ok(Self { soup, found, bodies })
+        Ok(Self {
+            soup,
+            found,
+            bodies,
+        })
     }
 
     /// The bodies, in file order.
@@ -122,7 +128,11 @@ impl Mesh {
     /// # Errors
     /// The refusal: open shells, facets doubled beyond mending, nested solids without a rule, or
     /// a volume of exactly zero.
-    pub fn solid(&self, body: &Body, nested: Option<NestedRule>) -> Result<SolidIntegrals, Refusal> {
+    pub fn solid(
+        &self,
+        body: &Body,
+        nested: Option<NestedRule>,
+    ) -> Result<SolidIntegrals, Refusal> {
         if let Some(refusal) = self.refusal(body, nested) {
             return Err(refusal);
         }
@@ -133,7 +143,14 @@ impl Mesh {
         let shells = || body.shells.iter().map(|r| &self.found.shells[r.shell]);
         let open_edges: u64 = shells().map(Shell::open_edges).sum();
         let loops: usize = shells().map(|s| s.loops.len()).sum();
-        let refuse = |kind, advice: String| Some(Refusal { kind, open_edges, loops, advice });
+        let refuse = |kind, advice: String| {
+            Some(Refusal {
+                kind,
+                open_edges,
+                loops,
+                advice,
+            })
+        };
         if open_edges > 0 {
             return refuse(
                 "not-closed",
@@ -149,11 +166,20 @@ impl Mesh {
         if nested.is_none() && body.shells.iter().any(|r| r.part == Part::Nested) {
             return refuse(
                 "nested-solid",
-                "a solid lies inside another: say how to count it with --nested sum, union or void".into(),
+                "a solid lies inside another: say how to count it with --nested sum, union or void"
+                    .into(),
             );
         }
-        if self.solid_by(body, nested.unwrap_or(NestedRule::Sum)).moments.zeroth == 0.0 {
-            return refuse("degenerate", "the surface is closed but holds no volume: export the solid, not a sheet".into());
+        if self
+            .solid_by(body, nested.unwrap_or(NestedRule::Sum))
+            .moments
+            .zeroth
+            == 0.0
+        {
+            return refuse(
+                "degenerate",
+                "the surface is closed but holds no volume: export the solid, not a sheet".into(),
+            );
         }
         None
     }
@@ -214,7 +240,12 @@ impl Mesh {
     /// Surface area of a body, open or not (file unit²).
     pub fn area(&self, body: &Body) -> f64 {
         body.solid.map_or_else(
-            || body.shells.iter().map(|r| self.found.shells[r.shell].solid.area).sum(),
+            || {
+                body.shells
+                    .iter()
+                    .map(|r| self.found.shells[r.shell].solid.area)
+                    .sum()
+            },
             |s| s.area,
         )
     }
@@ -227,7 +258,9 @@ impl Mesh {
                 self.0.count()
             }
             fn triangle(&self, t: usize) -> [[f64; 3]; 3] {
-                self.0.triangle(t).map(|p| (self.1 * nalgebra::Vector3::from(p)).into())
+                self.0
+                    .triangle(t)
+                    .map(|p| (self.1 * nalgebra::Vector3::from(p)).into())
             }
         }
         each!(&self.soup.triangles, f => super::shells::bounds(&Turned(f, turn), body.members.select()))
@@ -262,7 +295,10 @@ fn families(soup: &Soup, shells: &[Shell]) -> Vec<Vec<Role>> {
     for (i, s) in shells.iter().enumerate() {
         by_name.entry(s.name).or_default().push(i);
     }
-    by_name.into_values().flat_map(|of_name| family_of_name(soup, shells, &of_name)).collect()
+    by_name
+        .into_values()
+        .flat_map(|of_name| family_of_name(soup, shells, &of_name))
+        .collect()
 }
 
 fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<Role>> {
@@ -279,7 +315,10 @@ fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<R
     for a in 0..group.len() {
         if depth[a] % 2 == 1 {
             let even = inside[a].iter().filter(|&&b| depth[b] % 2 == 0);
-            home[a] = even.copied().max_by_key(|&b| (depth[b], usize::MAX - b)).unwrap_or(a);
+            home[a] = even
+                .copied()
+                .max_by_key(|&b| (depth[b], usize::MAX - b))
+                .unwrap_or(a);
         } else if group[a].facing < 0 {
             let p = each!(&soup.triangles, f => f.triangle(group[a].first as usize)[0]);
             let around = (0..group.len()).find(|&b| {
@@ -307,15 +346,26 @@ fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<R
             let inverted = group[outer].facing < 0;
             // Wholly inverted: turned as one. Else each shell is judged by itself.
             let whole = inverted
-                && guests.iter().filter(|&&a| group[a].closed()).all(|&a| group[a].facing > 0);
-            let mut roles = vec![Role { shell: of_name[outer], part: Part::Outer, turned: inverted }];
+                && guests
+                    .iter()
+                    .filter(|&&a| group[a].closed())
+                    .all(|&a| group[a].facing > 0);
+            let mut roles = vec![Role {
+                shell: of_name[outer],
+                part: Part::Outer,
+                turned: inverted,
+            }];
             roles.extend(guests.into_iter().map(|a| {
                 let part = match group[a] {
                     s if !s.closed() => Part::Stray,
                     s if (s.facing > 0) != whole => Part::Nested,
                     _ => Part::Void,
                 };
-                Role { shell: of_name[a], part, turned: whole }
+                Role {
+                    shell: of_name[a],
+                    part,
+                    turned: whole,
+                }
             }));
             roles.sort_by_key(|r| (r.part as u8, r.shell));
             roles
@@ -340,21 +390,38 @@ fn body(soup: &Soup, found: &Shells, roles: Vec<Role>, stem: &str, ids: &mut Ids
                 .collect();
             all.sort_unstable();
             let whole = all.len() + found.collapsed.len() == soup.triangles.count()
-                && found.collapsed.iter().all(|t| all.binary_search(t).is_err());
-            if whole { Members::All } else { Members::Listed(all) }
+                && found
+                    .collapsed
+                    .iter()
+                    .all(|t| all.binary_search(t).is_err());
+            if whole {
+                Members::All
+            } else {
+                Members::Listed(all)
+            }
         }
     };
     let triangles = shells().map(|s| s.count).sum();
     let first = shells().map(|s| s.first).min().unwrap_or(0);
     let bounds = [
-        [0, 1, 2].map(|k| shells().map(|s| s.bounds[0][k]).fold(f64::INFINITY, f64::min)),
-        [0, 1, 2].map(|k| shells().map(|s| s.bounds[1][k]).fold(f64::NEG_INFINITY, f64::max)),
+        [0, 1, 2].map(|k| {
+            shells()
+                .map(|s| s.bounds[0][k])
+                .fold(f64::INFINITY, f64::min)
+        }),
+        [0, 1, 2].map(|k| {
+            shells()
+                .map(|s| s.bounds[1][k])
+                .fold(f64::NEG_INFINITY, f64::max)
+        }),
     ];
     let closed = shells().all(Shell::closed);
     let turned = roles[0].turned;
     // One pass over all its triangles, unless shells count in different ways.
     let uniform = closed
-        && roles.iter().all(|r| r.turned == turned && matches!(r.part, Part::Outer | Part::Void));
+        && roles
+            .iter()
+            .all(|r| r.turned == turned && matches!(r.part, Part::Outer | Part::Void));
     let solid = uniform.then(|| {
         let whole = if roles.len() == 1 {
             outer.solid
@@ -365,7 +432,10 @@ fn body(soup: &Soup, found: &Shells, roles: Vec<Role>, stem: &str, ids: &mut Ids
             })
         };
         let sign = if turned { -1.0 } else { 1.0 };
-        SolidIntegrals { moments: whole.moments.weighted(sign), ..whole }
+        SolidIntegrals {
+            moments: whole.moments.weighted(sign),
+            ..whole
+        }
     });
     let mut joined: Vec<String> = Vec::new();
     for s in shells() {
@@ -400,19 +470,24 @@ fn materials_of(soup: &Soup, members: &Members) -> Vec<String> {
     }
     let mut seen: Vec<u32> = Vec::new();
     for run in &soup.runs {
-        let Some(material) = run.material.filter(|m| !seen.contains(m)) else { continue };
+        let Some(material) = run.material.filter(|m| !seen.contains(m)) else {
+            continue;
+        };
         let touches = match members {
             Members::All => run.count > 0,
             Members::Listed(list) => {
                 let at = list.partition_point(|&t| (t as usize) < run.first);
-                list.get(at).is_some_and(|&t| (t as usize) < run.first + run.count)
+                list.get(at)
+                    .is_some_and(|&t| (t as usize) < run.first + run.count)
             }
         };
         if touches {
             seen.push(material);
         }
     }
-    seen.into_iter().filter_map(|m| soup.materials.get(m as usize).cloned()).collect()
+    seen.into_iter()
+        .filter_map(|m| soup.materials.get(m as usize).cloned())
+        .collect()
 }
 
 /// Hands out ids: the name, then `name/2`, `name/3`; never one twice.
@@ -427,7 +502,11 @@ impl Ids {
         let count = self.used.entry(name.to_owned()).or_insert(0);
         loop {
             *count += 1;
-            let id = if *count == 1 { name.to_owned() } else { format!("{name}/{count}") };
+            let id = if *count == 1 {
+                name.to_owned()
+            } else {
+                format!("{name}/{count}")
+            };
             if self.taken.insert(id.clone()) {
                 return id;
             }

@@ -27,7 +27,9 @@ impl<T: Copy + Default + Send + Sync> Buckets<T> {
         E: Fn(std::ops::Range<usize>, &mut dyn FnMut(u64, T)) + Sync,
     {
         Self::fill_with(n, per_source, |range, sink: &mut Vec<(u32, T)>, shift| {
-            emit(range, &mut |hash, item| sink.push(((hash >> shift) as u32, item)));
+            emit(range, &mut |hash, item| {
+                sink.push(((hash >> shift) as u32, item))
+            });
         })
     }
 
@@ -37,7 +39,10 @@ impl<T: Copy + Default + Send + Sync> Buckets<T> {
     {
         // About eight thousand items a bucket keep its table inside a core's own cache.
         let items = n.saturating_mul(per_source);
-        let bits = (items / 8192).next_power_of_two().trailing_zeros().clamp(1, 12);
+        let bits = (items / 8192)
+            .next_power_of_two()
+            .trailing_zeros()
+            .clamp(1, 12);
         let count = 1usize << bits;
         // Chunks are large enough that a bucket's segment in one is a few cache lines.
         let chunk = (count * 64 / per_source).clamp(16_384, 1 << 20);
@@ -64,7 +69,11 @@ impl<T: Copy + Default + Send + Sync> Buckets<T> {
                 Chunk { items, starts }
             })
             .collect();
-        Self { chunks, count, chunk }
+        Self {
+            chunks,
+            count,
+            chunk,
+        }
     }
 
     /// Number of buckets.
@@ -80,13 +89,19 @@ impl<T: Copy + Default + Send + Sync> Buckets<T> {
     /// The segments of one bucket: (chunk, items), in input order.
     pub(crate) fn segments(&self, bucket: usize) -> impl Iterator<Item = (usize, &[T])> {
         self.chunks.iter().enumerate().map(move |(k, c)| {
-            (k, &c.items[c.starts[bucket] as usize..c.starts[bucket + 1] as usize])
+            (
+                k,
+                &c.items[c.starts[bucket] as usize..c.starts[bucket + 1] as usize],
+            )
         })
     }
 
     /// How many items the bucket holds.
     pub(crate) fn len(&self, bucket: usize) -> usize {
-        self.chunks.iter().map(|c| (c.starts[bucket + 1] - c.starts[bucket]) as usize).sum()
+        self.chunks
+            .iter()
+            .map(|c| (c.starts[bucket + 1] - c.starts[bucket]) as usize)
+            .sum()
     }
 }
 
@@ -105,7 +120,9 @@ pub(crate) fn hash2(seed: u64, a: u64, b: u64) -> u64 {
 /// A seed that differs from run to run.
 pub(crate) fn random_seed() -> u64 {
     use std::hash::{BuildHasher, Hasher};
-    std::collections::hash_map::RandomState::new().build_hasher().finish()
+    std::collections::hash_map::RandomState::new()
+        .build_hasher()
+        .finish()
 }
 
 #[cfg(test)]
@@ -124,7 +141,10 @@ mod tests {
         });
         let mut seen = 0;
         for bucket in 0..b.count() {
-            let items: Vec<u32> = b.segments(bucket).flat_map(|(_, s)| s.iter().copied()).collect();
+            let items: Vec<u32> = b
+                .segments(bucket)
+                .flat_map(|(_, s)| s.iter().copied())
+                .collect();
             assert!(items.is_sorted());
             assert_eq!(items.len(), b.len(bucket));
             seen += items.len();

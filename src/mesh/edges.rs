@@ -57,7 +57,12 @@ pub(crate) fn match_edges(
                     for &(low, high, passage) in buckets.segments(b).flat_map(|s| s.1) {
                         if table.is_irregular(low, high) {
                             let forward = passage & 1 == 1;
-                            odd.push(Half { low, high, triangle: passage >> 1, forward });
+                            odd.push(Half {
+                                low,
+                                high,
+                                triangle: passage >> 1,
+                                forward,
+                            });
                         }
                     }
                 }
@@ -129,7 +134,12 @@ impl EdgeTable {
         let slot = self.slots[at];
         if slot == NONE {
             self.slots[at] = self.edges.len() as u32;
-            self.edges.push(Edge { low, high, first: passage, second: NONE });
+            self.edges.push(Edge {
+                low,
+                high,
+                first: passage,
+                second: NONE,
+            });
             if self.edges.len() * 4 > self.slots.len() * 3 {
                 self.grow();
             }
@@ -137,9 +147,7 @@ impl EdgeTable {
         }
         let e = &mut self.edges[slot as usize];
         let opposed = (e.first ^ passage) & 1 == 1;
-        e.second = if e.second == NONE
-            && opposed
-            && name_of(e.first >> 1) == name_of(passage >> 1)
+        e.second = if e.second == NONE && opposed && name_of(e.first >> 1) == name_of(passage >> 1)
         {
             passage
         } else {
@@ -150,7 +158,8 @@ impl EdgeTable {
     #[cold]
     fn grow(&mut self) {
         self.slots.clear();
-        self.slots.resize((self.edges.len() * 2).next_power_of_two(), NONE);
+        self.slots
+            .resize((self.edges.len() * 2).next_power_of_two(), NONE);
         for i in 0..self.edges.len() {
             let at = self.place(self.edges[i].low, self.edges[i].high);
             self.slots[at] = i as u32;

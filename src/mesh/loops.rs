@@ -65,8 +65,10 @@ pub(crate) fn loops(edges: &[OpenEdge]) -> Vec<Loop> {
 }
 
 fn closed(path: &[usize], edges: &[OpenEdge]) -> Loop {
-    let mut triangles: Vec<u32> =
-        path.iter().flat_map(|&i| edges[i].triangles.iter().copied()).collect();
+    let mut triangles: Vec<u32> = path
+        .iter()
+        .flat_map(|&i| edges[i].triangles.iter().copied())
+        .collect();
     triangles.sort_unstable();
     triangles.dedup();
     Loop {
@@ -81,12 +83,25 @@ mod tests {
     use super::*;
 
     fn edge(from: u32, to: u32) -> OpenEdge {
-        OpenEdge { from, to, surplus: 1, triangles: vec![from] }
+        OpenEdge {
+            from,
+            to,
+            surplus: 1,
+            triangles: vec![from],
+        }
     }
 
     #[test]
     fn loops_that_touch_at_a_vertex_are_two() {
-        let edges = [edge(1, 2), edge(2, 3), edge(3, 4), edge(4, 1), edge(3, 5), edge(5, 6), edge(6, 3)];
+        let edges = [
+            edge(1, 2),
+            edge(2, 3),
+            edge(3, 4),
+            edge(4, 1),
+            edge(3, 5),
+            edge(5, 6),
+            edge(6, 3),
+        ];
         let mut found: Vec<Vec<u32>> = loops(&edges)
             .into_iter()
             .map(|l| {

@@ -12,8 +12,8 @@ mod union;
 mod wedge;
 mod weld;
 
-pub use bodies::{Body, Mesh, NestedRule, Refusal};
 pub(crate) use bodies::Part;
+pub use bodies::{Body, Mesh, NestedRule, Refusal};
 pub(crate) use shells::Shell;
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};

@@ -149,9 +149,18 @@ impl Grid {
         let high = [bound(1, f64::max), bound(2, f64::max)];
         let per_unit = [0, 1].map(|k| {
             let width = high[k] - low[k];
-            if width > 0.0 { side as f64 / width } else { 0.0 }
+            if width > 0.0 {
+                side as f64 / width
+            } else {
+                0.0
+            }
         });
-        let mut grid = Self { low, per_unit, side, cells: BTreeMap::new() };
+        let mut grid = Self {
+            low,
+            per_unit,
+            side,
+            cells: BTreeMap::new(),
+        };
         for (a, p) in points {
             let cell = grid.row(0, p[1]) * side + grid.row(1, p[2]);
             grid.cells.entry(cell).or_default().push((a, p));

@@ -116,9 +116,8 @@ impl Shells {
             let join = |sets: &Sets, left_out: &dyn Fn(u32) -> bool| {
                 join_at_odd_edges(&odd, &soup.triangles, &corners, &name_of, left_out, sets);
             };
-            let left_out = |t: u32| {
-                duplicates.opposed.contains(&t) || duplicates.surplus.contains_key(&t)
-            };
+            let left_out =
+                |t: u32| duplicates.opposed.contains(&t) || duplicates.surplus.contains_key(&t);
             join(&sets, &left_out);
             if let Some(plain) = plain {
                 let open = open_edges(&odd, &left_out, &sets);
@@ -152,11 +151,17 @@ impl Shells {
         let mut groups = group(&sets, n, &collapsed, &duplicates);
         // A closed shell of two facets is one facet and its opposite.
         groups.retain(|(first, members)| {
-            let Members::Listed(list) = members else { return true };
-            if list.len() != 2 || odd.iter().any(|h| h.triangle == *first) {
+            let two = match members {
+                Members::All => (0..n as u32)
+                    .filter(|t| collapsed.binary_search(t).is_err())
+                    .take(3)
+                    .collect(),
+                Members::Listed(list) => list[..list.len().min(3)].to_vec(),
+            };
+            if two.len() != 2 || odd.iter().any(|h| h.triangle == *first) {
                 return true;
             }
-            duplicates.add(list.clone(), &corners);
+            duplicates.add(two, &corners);
             false
         });
         let left_out =
@@ -168,7 +173,11 @@ impl Shells {
                 name: name_of(first),
                 joined: Vec::new(),
                 open: open.remove(&first).unwrap_or_default(),
-                doubled: restored.iter().copied().filter(|&t| sets.find(t) == first).collect(),
+                doubled: restored
+                    .iter()
+                    .copied()
+                    .filter(|&t| sets.find(t) == first)
+                    .collect(),
                 members,
                 first,
             })
@@ -177,20 +186,28 @@ impl Shells {
         let shells = drafts.into_par_iter().map(|d| d.finish(soup)).collect();
         let mut dropped: Vec<u32> = duplicates.surplus.keys().copied().collect();
         dropped.sort_unstable();
-        Ok(Self { corners, shells, odd, duplicates, dropped, collapsed, names })
+        Ok(Self {
+            corners,
+            shells,
+            odd,
+            duplicates,
+            dropped,
+            collapsed,
+            names,
+        })
     }
 }
 
 /// The triangles of each set, by least member; left out are collapsed and set-aside ones.
-fn group(
-    sets: &Sets,
-    n: usize,
-    collapsed: &[u32],
-    duplicates: &Duplicates,
-) -> Vec<(u32, Members)> {
-    let label: Vec<u32> = (0..n as u32).into_par_iter().map(|t| sets.find(t)).collect();
+fn group(sets: &Sets, n: usize, collapsed: &[u32], duplicates: &Duplicates) -> Vec<(u32, Members)> {
+    let label: Vec<u32> = (0..n as u32)
+        .into_par_iter()
+        .map(|t| sets.find(t))
+        .collect();
     let aside = duplicates.opposed.len() + duplicates.surplus.len();
-    let Some(&root) = label.first() else { return Vec::new() };
+    let Some(&root) = label.first() else {
+        return Vec::new();
+    };
     if aside == 0 && collapsed.is_empty() && label.par_iter().all(|&l| l == root) {
         return vec![(root, Members::All)];
     }
@@ -202,7 +219,11 @@ fn group(
     let mut sizes = vec![0u32; n];
     let mut skip = left_out.iter().copied().peekable();
     let is_left_out = |t: u32, skip: &mut std::iter::Peekable<_>| {
-        if skip.peek() == Some(&t) { skip.next().is_some() } else { false }
+        if skip.peek() == Some(&t) {
+            skip.next().is_some()
+        } else {
+            false
+        }
     };
     for (t, &l) in (0..).zip(&label) {
         if !is_left_out(t, &mut skip) {
@@ -229,7 +250,10 @@ fn group(
         // Collapsed triangles add exactly zero: the whole file is the one shell.
         return vec![(*l, Members::All)];
     }
-    groups.into_iter().map(|(l, list)| (l, Members::Listed(list))).collect()
+    groups
+        .into_iter()
+        .map(|(l, list)| (l, Members::Listed(list)))
+        .collect()
 }
 
 /// The unbalanced edges of each shell, by its label.
@@ -250,7 +274,12 @@ fn open_edges(
             let (low, high) = (group[0].low, group[0].high);
             let (from, to) = if net > 0 { (low, high) } else { (high, low) };
             let surplus = net.unsigned_abs() as u32;
-            open.entry(shell).or_default().push(OpenEdge { from, to, surplus, triangles });
+            open.entry(shell).or_default().push(OpenEdge {
+                from,
+                to,
+                surplus,
+                triangles,
+            });
         }
     }
     open
@@ -273,7 +302,10 @@ fn join_names(drafts: Vec<Draft>) -> Vec<Draft> {
     for (i, d) in drafts.iter().enumerate() {
         for e in &d.open {
             let net = if e.from < e.to { 1 } else { -1 } * i64::from(e.surplus);
-            at_edge.entry((e.from.min(e.to), e.from.max(e.to))).or_default().push((i, net));
+            at_edge
+                .entry((e.from.min(e.to), e.from.max(e.to)))
+                .or_default()
+                .push((i, net));
         }
     }
     let sets = Sets::new(drafts.len());
@@ -305,7 +337,11 @@ fn join_names(drafts: Vec<Draft>) -> Vec<Draft> {
     let mut families: BTreeMap<u32, Vec<Draft>> = BTreeMap::new();
     for (i, d) in drafts.into_iter().enumerate() {
         let family = sets.find(i as u32);
-        let key = if fails[family as usize] { i as u32 } else { family };
+        let key = if fails[family as usize] {
+            i as u32
+        } else {
+            family
+        };
         families.entry(key).or_default().push(d);
     }
     let mut out: Vec<Draft> = families.into_values().map(merge).collect();
@@ -329,7 +365,10 @@ fn merge(mut family: Vec<Draft>) -> Draft {
         }
     }
     list.sort_unstable();
-    let doubled = family.iter().flat_map(|d| d.doubled.iter().copied()).collect();
+    let doubled = family
+        .iter()
+        .flat_map(|d| d.doubled.iter().copied())
+        .collect();
     let first = &family[0];
     Draft {
         name: first.name,
@@ -399,13 +438,19 @@ pub(crate) fn bounds(f: &impl Corners, select: Select<'_>) -> [[f64; 3]; 2] {
         b
     };
     let wider = |a: [[f64; 3]; 2], b: [[f64; 3]; 2]| {
-        [[0, 1, 2].map(|k| a[0][k].min(b[0][k])), [0, 1, 2].map(|k| a[1][k].max(b[1][k]))]
+        [
+            [0, 1, 2].map(|k| a[0][k].min(b[0][k])),
+            [0, 1, 2].map(|k| a[1][k].max(b[1][k])),
+        ]
     };
     let blocks = n.div_ceil(4096);
     let b = if blocks < 2 {
         block(0)
     } else {
-        (0..blocks).into_par_iter().map(block).reduce(|| EMPTY, wider)
+        (0..blocks)
+            .into_par_iter()
+            .map(block)
+            .reduce(|| EMPTY, wider)
     };
     // −0 would be shown as such.
     b.map(|p| p.map(|x| x + 0.0))

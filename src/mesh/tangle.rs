@@ -41,7 +41,10 @@ impl Duplicates {
             .collect();
         keyed.sort_unstable();
         let mut found = Self::default();
-        for place in keyed.chunk_by(|a, b| (a.0, a.1) == (b.0, b.1)).filter(|p| p.len() > 1) {
+        for place in keyed
+            .chunk_by(|a, b| (a.0, a.1) == (b.0, b.1))
+            .filter(|p| p.len() > 1)
+        {
             found.add(place.iter().map(|p| p.2).collect(), corners);
         }
         found
@@ -55,8 +58,10 @@ impl Duplicates {
         // The facet that stays is the first of those that face the prevailing way.
         let more = if even.len() > odd.len() { &even } else { &odd };
         let kept = more[..more.len() - pairs].to_vec();
-        self.surplus.extend(kept.iter().skip(1).map(|&t| (t, kept[0])));
-        self.opposed.extend(facets.iter().filter(|t| !kept.contains(t)));
+        self.surplus
+            .extend(kept.iter().skip(1).map(|&t| (t, kept[0])));
+        self.opposed
+            .extend(facets.iter().filter(|t| !kept.contains(t)));
         self.places.push(facets);
     }
 }
@@ -109,7 +114,9 @@ pub(crate) fn join_at_odd_edges(
 
 /// The corner that is neither of the two.
 fn apex(c: [u32; 3], low: u32, high: u32) -> u32 {
-    c.into_iter().find(|&v| v != low && v != high).unwrap_or(low)
+    c.into_iter()
+        .find(|&v| v != low && v != high)
+        .unwrap_or(low)
 }
 
 #[cfg(test)]

@@ -15,7 +15,12 @@ impl Sets {
 
     /// The same sets once more.
     pub(crate) fn copy(&self) -> Self {
-        Self(self.0.par_iter().map(|a| AtomicU32::new(a.load(Ordering::Relaxed))).collect())
+        Self(
+            self.0
+                .par_iter()
+                .map(|a| AtomicU32::new(a.load(Ordering::Relaxed)))
+                .collect(),
+        )
     }
 
     /// The least member of the set of `x`.

@@ -76,7 +76,11 @@ fn half(low: &Point, high: &Point, r: &Point, p: &Point) -> u8 {
             for (u, v) in [(0, 1), (1, 2), (2, 0)] {
                 let s = turn_2d(low, high, r, u, v);
                 if s != 0 {
-                    return if turn_2d(low, high, p, u, v) == -s { 2 } else { 0 };
+                    return if turn_2d(low, high, p, u, v) == -s {
+                        2
+                    } else {
+                        0
+                    };
                 }
             }
             0
@@ -90,7 +94,12 @@ mod tests {
 
     /// Leaves at given quarter turns about the z axis.
     fn leaf(quarter: usize, forward: bool) -> Leaf {
-        let apex = [[1.0, 0.0, 0.5], [0.0, 1.0, 0.5], [-1.0, 0.0, 0.5], [0.0, -1.0, 0.5]][quarter];
+        let apex = [
+            [1.0, 0.0, 0.5],
+            [0.0, 1.0, 0.5],
+            [-1.0, 0.0, 0.5],
+            [0.0, -1.0, 0.5],
+        ][quarter];
         Leaf { apex, forward }
     }
 

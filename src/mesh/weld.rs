@@ -20,7 +20,10 @@ pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
     if triangles.count() > MOST_TRIANGLES {
         return Err(Error::new(
             Kind::TooLarge,
-            format!("{} triangles are more than the {MOST_TRIANGLES} that can be audited", triangles.count()),
+            format!(
+                "{} triangles are more than the {MOST_TRIANGLES} that can be audited",
+                triangles.count()
+            ),
             "split the file into its bodies and weigh each",
         ));
     }
@@ -38,7 +41,10 @@ pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
         Triangles::Loose(list) => weld_corners(list.len(), |t| list[t].map(key64)),
         Triangles::Indexed { vertices, corners } => {
             let first = weld_points(vertices.len(), |v| key64(vertices[v]));
-            corners.par_iter().map(|c| c.map(|v| first[v as usize])).collect()
+            corners
+                .par_iter()
+                .map(|c| c.map(|v| first[v as usize]))
+                .collect()
         }
     })
 }
@@ -75,9 +81,14 @@ fn weld_corners<K: Key>(n: usize, keys: impl Fn(usize) -> [K; 3] + Sync) -> Vec<
             }
         }
     });
-    let out: Vec<AtomicU32> = (0..3 * n).into_par_iter().map(|_| AtomicU32::new(0)).collect();
+    let out: Vec<AtomicU32> = (0..3 * n)
+        .into_par_iter()
+        .map(|_| AtomicU32::new(0))
+        .collect();
     first_places(&buckets, &out);
-    out.par_chunks_exact(3).map(|c| [0, 1, 2].map(|k: usize| c[k].load(Ordering::Relaxed))).collect()
+    out.par_chunks_exact(3)
+        .map(|c| [0, 1, 2].map(|k: usize| c[k].load(Ordering::Relaxed)))
+        .collect()
 }
 
 fn weld_points<K: Key>(n: usize, key: impl Fn(usize) -> K + Sync) -> Vec<u32> {
@@ -96,14 +107,16 @@ fn weld_points<K: Key>(n: usize, key: impl Fn(usize) -> K + Sync) -> Vec<u32> {
 /// For each place, the first place of the same key. Places of one key are all in one bucket, in
 /// order, so each bucket can be done alone.
 fn first_places<K: Key>(buckets: &Buckets<(K, u32)>, out: &[AtomicU32]) {
-    (0..buckets.count()).into_par_iter().for_each_init(Table::default, |table, b| {
-        table.clear(buckets.len(b));
-        for (_, segment) in buckets.segments(b) {
-            for &(key, place) in segment {
-                out[place as usize].store(table.first(key, place), Ordering::Relaxed);
+    (0..buckets.count())
+        .into_par_iter()
+        .for_each_init(Table::default, |table, b| {
+            table.clear(buckets.len(b));
+            for (_, segment) in buckets.segments(b) {
+                for &(key, place) in segment {
+                    out[place as usize].store(table.first(key, place), Ordering::Relaxed);
+                }
             }
-        }
-    });
+        });
 }
 
 /// Open addressing with the key beside its first place.
@@ -118,7 +131,11 @@ const EMPTY: u32 = u32::MAX;
 
 impl<K> Default for Table<K> {
     fn default() -> Self {
-        Self { slots: Vec::new(), used: 0, seed: random_seed() }
+        Self {
+            slots: Vec::new(),
+            used: 0,
+            seed: random_seed(),
+        }
     }
 }
 

@@ -26,11 +26,19 @@ pub struct Principal {
 pub fn principal(tensor: &Matrix3<f64>) -> Principal {
     let identity = [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]];
     if tensor.iter().any(|x| !x.is_finite()) {
-        return Principal { moments: [f64::NAN; 3], axes: identity, free: vec![0, 1, 2] };
+        return Principal {
+            moments: [f64::NAN; 3],
+            axes: identity,
+            free: vec![0, 1, 2],
+        };
     }
     let scale = tensor.amax();
     if scale == 0.0 {
-        return Principal { moments: [0.0; 3], axes: identity, free: vec![0, 1, 2] };
+        return Principal {
+            moments: [0.0; 3],
+            axes: identity,
+            free: vec![0, 1, 2],
+        };
     }
     // Scaled by a power of two so that neither tiny nor huge bodies leave the range of squares.
     let unit = 2f64.powi(-(scale.log2().floor().clamp(-1000.0, 1000.0) as i32));
@@ -60,7 +68,11 @@ pub fn principal(tensor: &Matrix3<f64>) -> Principal {
     let first = facing(axes[0]);
     let second = facing((axes[1] - first * first.dot(&axes[1])).normalize());
     let third = first.cross(&second);
-    Principal { moments, axes: [first, second, third].map(|a| [a.x, a.y, a.z]), free }
+    Principal {
+        moments,
+        axes: [first, second, third].map(|a| [a.x, a.y, a.z]),
+        free,
+    }
 }
 
 /// Two directions that span the plane across `normal`: the first is the coordinate axis that lies
@@ -101,9 +113,15 @@ mod tests {
     fn the_published_tetrahedron_has_its_principal_moments() {
         // Tonon, J. Math. Stat. 1(1):8–11 (2005 [2004]); principal moments recomputed exactly.
         let t = Matrix3::new(
-            43520.33328539, -11996.20139323, 46343.16738139,
-            -11996.20139323, 194711.29259079, -4417.66156969,
-            46343.16738139, -4417.66156969, 191168.76488608,
+            43520.33328539,
+            -11996.20139323,
+            46343.16738139,
+            -11996.20139323,
+            194711.29259079,
+            -4417.66156969,
+            46343.16738139,
+            -4417.66156969,
+            191168.76488608,
         );
         let p = principal(&t);
         for (got, want) in p.moments.iter().zip([29535.43, 191103.65, 208761.31]) {
@@ -121,7 +139,10 @@ mod tests {
         assert_eq!(p.axes[0], [1.0, 0.0, 0.0]);
         let cube = principal(&(Matrix3::identity() * 7.0));
         assert_eq!(cube.free, [0, 1, 2]);
-        assert_eq!(cube.axes, [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]]);
+        assert_eq!(
+            cube.axes,
+            [[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]]
+        );
     }
 
     proptest! {

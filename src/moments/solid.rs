@@ -63,7 +63,10 @@ pub struct ChunkSums {
 
 impl ChunkSums {
     /// Nothing.
-    pub const ZERO: Self = Self { sums: [Sum::ZERO; SUMS], absolute: 0.0 };
+    pub const ZERO: Self = Self {
+        sums: [Sum::ZERO; SUMS],
+        absolute: 0.0,
+    };
 
     /// Adds the sums of the chunk that follows.
     pub fn join(&mut self, next: &Self) {
@@ -133,8 +136,7 @@ pub fn chunk_sums<C: Corners>(
             #[allow(unsafe_code)]
             return unsafe { wide512(facets, select, range, apex, middle) };
         }
-        if std::arch::is_x86_feature_detected!("avx2")
-            && std::arch::is_x86_feature_detected!("fma")
+        if std::arch::is_x86_feature_detected!("avx2") && std::arch::is_x86_feature_detected!("fma")
         {
             // SAFETY: the processor has just been asked for both features.
             #[allow(unsafe_code)]
@@ -191,7 +193,11 @@ fn kernel<C: Corners, P: Product>(
     let mut low = [[0.0; LANES]; SUMS];
     let mut absolute = [0.0; LANES];
     // From the apex to the middle of the box.
-    let m = [middle[0] - apex[0], middle[1] - apex[1], middle[2] - apex[2]];
+    let m = [
+        middle[0] - apex[0],
+        middle[1] - apex[1],
+        middle[2] - apex[2],
+    ];
     let mut at = range.start;
     while at < range.end {
         // Corner coordinates, one lane a triangle. Lanes past the end hold the apex three times:
@@ -298,8 +304,7 @@ fn terms<P: Product>(x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> Terms {
                 + (c[i][l] * c[j][l] + s[i][l] * s[j][l]))
         })
     };
-    let absolute =
-        lanes(|l| (d[l] - (m[0] * n[0][l] + m[1] * n[1][l] + m[2] * n[2][l])).abs());
+    let absolute = lanes(|l| (d[l] - (m[0] * n[0][l] + m[1] * n[1][l] + m[2] * n[2][l])).abs());
     let area = lanes(|l| (n[0][l] * n[0][l] + n[1][l] * n[1][l] + n[2][l] * n[2][l]).sqrt());
     Terms {
         sums: [
@@ -330,7 +335,10 @@ mod tests {
     fn corner_tetrahedron(at: [f64; 3]) -> Vec<[[f64; 3]; 3]> {
         let p = [[0.0; 3], [5.0, 0.0, 0.0], [0.0, 4.0, 0.0], [0.0, 0.0, 3.0]]
             .map(|q| [q[0] + at[0], q[1] + at[1], q[2] + at[2]]);
-        [[0, 2, 1], [0, 1, 3], [1, 2, 3], [0, 3, 2]].iter().map(|f| f.map(|i| p[i])).collect()
+        [[0, 2, 1], [0, 1, 3], [1, 2, 3], [0, 3, 2]]
+            .iter()
+            .map(|f| f.map(|i| p[i]))
+            .collect()
     }
 
     #[test]
@@ -364,8 +372,9 @@ mod tests {
             x ^= x << 17;
             (x >> 11) as f64 / (1u64 << 53) as f64 - 0.5
         };
-        let facets: Vec<[[f64; 3]; 3]> =
-            (0..1003).map(|_| [(); 3].map(|()| [(); 3].map(|()| next()))).collect();
+        let facets: Vec<[[f64; 3]; 3]> = (0..1003)
+            .map(|_| [(); 3].map(|()| [(); 3].map(|()| next())))
+            .collect();
         let f = LooseFacets(&facets);
         let (apex, middle) = (facets[0][0], [0.01, 0.02, 0.03]);
         let plain = kernel::<_, Split>(&f, Select::All, 0..1003, apex, middle).finish(apex);

@@ -31,13 +31,23 @@ pub fn render(document: &Document<CheckBody>, look: Look) -> String {
 }
 
 fn of_file(file: &CheckedFile, look: Look) -> String {
-    let mut out = file_heading(&file.path, file.format, file.triangles, file.unit, file.unit_assumed, look);
+    let mut out = file_heading(
+        &file.path,
+        file.format,
+        file.triangles,
+        file.unit,
+        file.unit_assumed,
+        look,
+    );
     if file.error.is_some() {
         out.push_str(&look.marked("not read: see the error\n", Mark::Fail));
         return out;
     }
     let verdict = if file.sound == Some(true) {
-        look.marked("sound: every body is closed and nothing throws doubt on its volume", Mark::Pass)
+        look.marked(
+            "sound: every body is closed and nothing throws doubt on its volume",
+            Mark::Pass,
+        )
     } else if file.bodies.is_empty() {
         look.marked("NOT SOUND: no body in the file", Mark::Fail)
     } else {
@@ -50,22 +60,39 @@ fn of_file(file: &CheckedFile, look: Look) -> String {
     }
     let mut n = 0;
     let on_file = file.findings.iter().map(|f| (None, f));
-    let on_bodies = file.bodies.iter().flat_map(|b| b.findings.iter().map(move |f| (Some(&b.id), f)));
+    let on_bodies = file
+        .bodies
+        .iter()
+        .flat_map(|b| b.findings.iter().map(move |f| (Some(&b.id), f)));
     for (id, f) in on_file.chain(on_bodies) {
         n += 1;
         out.push('\n');
-        out.push_str(&finding(n, id.map(String::as_str), f, unit_of(file.unit), look));
+        out.push_str(&finding(
+            n,
+            id.map(String::as_str),
+            f,
+            unit_of(file.unit),
+            look,
+        ));
     }
     out
 }
 
-fn finding(n: usize, id: Option<&str>, f: &Finding, unit: crate::quantity::LengthUnit, look: Look) -> String {
+fn finding(
+    n: usize,
+    id: Option<&str>,
+    f: &Finding,
+    unit: crate::quantity::LengthUnit,
+    look: Look,
+) -> String {
     let (word, mark) = match f.severity {
         Severity::Blocks => ("blocks", Mark::Fail),
         Severity::Doubts => ("doubts", Mark::Fail),
         Severity::Notes => ("notes", Mark::Dim),
     };
-    let on = id.map_or(String::new(), |id| format!(" on {}", crate::text::shown(id)));
+    let on = id.map_or(String::new(), |id| {
+        format!(" on {}", crate::text::shown(id))
+    });
     let mut out = format!(
         "{n}. {} {}: {}{on}\n",
         look.marked(word, mark),
@@ -74,12 +101,18 @@ fn finding(n: usize, id: Option<&str>, f: &Finding, unit: crate::quantity::Lengt
     );
     let effect = match (f.volume_effect_m3, f.volume_effect_is) {
         (Some(v), Some(is)) => {
-            let (cm3, is) = (v * 1e6, match is {
-                EffectIs::Exact => "exact",
-                EffectIs::Bound => "at most, either way",
-                EffectIs::Estimate => "estimate",
-            });
-            format!("   volume would change by {} cm3 ({is})\n", significant(cm3, 6))
+            let (cm3, is) = (
+                v * 1e6,
+                match is {
+                    EffectIs::Exact => "exact",
+                    EffectIs::Bound => "at most, either way",
+                    EffectIs::Estimate => "estimate",
+                },
+            );
+            format!(
+                "   volume would change by {} cm3 ({is})\n",
+                significant(cm3, 6)
+            )
         }
         _ => "   effect on the volume: not known\n".to_owned(),
     };
@@ -97,15 +130,25 @@ fn finding(n: usize, id: Option<&str>, f: &Finding, unit: crate::quantity::Lengt
         let line = p.line.map_or(String::new(), |l| format!(", line {l}"));
         let rim = match (p.edges, p.length_m) {
             (Some(e), Some(l)) => {
-                format!(", {e} edges, {} {} round", significant(l / unit.metres(), 5), unit.symbol())
+                format!(
+                    ", {e} edges, {} {} round",
+                    significant(l / unit.metres(), 5),
+                    unit.symbol()
+                )
             }
             (Some(e), None) => format!(", {e} corners"),
             _ => String::new(),
         };
-        out.push_str(&format!("   at {}{rim}{line}{triangles}\n", point(&p.at_m, unit)));
+        out.push_str(&format!(
+            "   at {}{rim}{line}{triangles}\n",
+            point(&p.at_m, unit)
+        ));
     }
     if f.count > f.places_shown as u64 {
-        out.push_str(&format!("   … {} more (--places N)\n", f.count - f.places_shown as u64));
+        out.push_str(&format!(
+            "   … {} more (--places N)\n",
+            f.count - f.places_shown as u64
+        ));
     }
     out.push_str(&format!("   → {}\n", crate::text::shown(&f.advice)));
     out
@@ -142,7 +185,11 @@ fn table(files: &[CheckedFile], with_path: bool) -> Table {
     for file in files {
         for b in &file.bodies {
             let yes = |x: bool| {
-                if x { Cell::text("yes").marked(Mark::Pass) } else { Cell::text("NO").marked(Mark::Fail) }
+                if x {
+                    Cell::text("yes").marked(Mark::Pass)
+                } else {
+                    Cell::text("NO").marked(Mark::Fail)
+                }
             };
             let figure = |x: Option<f64>, k: f64| {
                 x.map_or_else(Cell::empty, |x| Cell::figure(significant(x * k, 6), x * k))
@@ -160,8 +207,11 @@ fn table(files: &[CheckedFile], with_path: bool) -> Table {
                 yes(b.sound),
             ]);
             if with_path {
-                let kinds: Vec<String> =
-                    b.findings.iter().map(|f| format!("{} {}", f.count, kind_word(f.kind, f.count))).collect();
+                let kinds: Vec<String> = b
+                    .findings
+                    .iter()
+                    .map(|f| format!("{} {}", f.count, kind_word(f.kind, f.count)))
+                    .collect();
                 row.extend([
                     figure(b.volume_m3, 1.0),
                     figure(b.area_m2, 1.0),

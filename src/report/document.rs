@@ -16,8 +16,10 @@ pub struct Program {
 }
 
 /// This program.
-pub const PROGRAM: Program =
-    Program { name: env!("CARGO_PKG_NAME"), version: env!("CARGO_PKG_VERSION") };
+pub const PROGRAM: Program = Program {
+    name: env!("CARGO_PKG_NAME"),
+    version: env!("CARGO_PKG_VERSION"),
+};
 
 /// One input, so that a result can be traced.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -37,9 +39,18 @@ impl InputFact {
     /// Of an input at `path`.
     pub fn new(path: &Path, bytes: Option<u64>, sha256: Option<String>) -> Self {
         let path_hex = path.to_str().is_none().then(|| {
-            path.as_os_str().as_encoded_bytes().iter().map(|b| format!("{b:02x}")).collect()
+            path.as_os_str()
+                .as_encoded_bytes()
+                .iter()
+                .map(|b| format!("{b:02x}"))
+                .collect()
         });
-        Self { path: path.to_string_lossy().into_owned(), path_hex, bytes, sha256 }
+        Self {
+            path: path.to_string_lossy().into_owned(),
+            path_hex,
+            bytes,
+            sha256,
+        }
     }
 }
 

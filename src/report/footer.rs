@@ -16,11 +16,16 @@ pub fn footer<B>(document: &Document<B>, look: Look) -> String {
         options()
     )];
     lines.extend(document.inputs.iter().map(input));
-    lines.iter().map(|l| look.marked(&shown(l), Mark::Dim) + "\n").collect()
+    lines
+        .iter()
+        .map(|l| look.marked(&shown(l), Mark::Dim) + "\n")
+        .collect()
 }
 
 fn input(fact: &InputFact) -> String {
-    let size = fact.bytes.map_or("not read".to_owned(), |b| format!("{b} bytes"));
+    let size = fact
+        .bytes
+        .map_or("not read".to_owned(), |b| format!("{b} bytes"));
     let hash = match (&fact.sha256, fact.bytes) {
         (Some(h), _) => format!(" · sha256 {h}"),
         (None, Some(_)) => " · sha256 not taken (--hash)".to_owned(),
@@ -35,7 +40,11 @@ fn options() -> String {
         .skip(1)
         .map(|a| {
             let a = a.to_string_lossy().into_owned();
-            if a.contains(char::is_whitespace) { format!("\"{a}\"") } else { a }
+            if a.contains(char::is_whitespace) {
+                format!("\"{a}\"")
+            } else {
+                a
+            }
         })
         .collect();
     words.join(" ")

@@ -63,7 +63,8 @@ fn table(body: &MaterialsBody) -> Table {
             Cell::text(&m.id),
             Cell::text(&m.name),
             Cell::figure(significant(m.density_kg_m3, 6), m.density_kg_m3),
-            m.tolerance_percent.map_or_else(Cell::empty, |t| Cell::figure(significant(t, 3), t)),
+            m.tolerance_percent
+                .map_or_else(Cell::empty, |t| Cell::figure(significant(t, 3), t)),
             Cell::text(&m.source),
         ]);
     }

@@ -22,7 +22,10 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
         out.push('\n');
     }
     let weighed = document.body.files.iter().any(|f| {
-        f.bodies.iter().flatten().any(|b| b.figures.mass_kg.is_some())
+        f.bodies
+            .iter()
+            .flatten()
+            .any(|b| b.figures.mass_kg.is_some())
     });
     if weighed {
         out.push_str(&format!("{CAUTION}\n"));
@@ -32,8 +35,14 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
 }
 
 fn of_file(file: &WeighedFile, look: Look) -> String {
-    let mut out =
-        file_heading(&file.path, file.format, file.triangles, file.unit, file.unit_assumed, look);
+    let mut out = file_heading(
+        &file.path,
+        file.format,
+        file.triangles,
+        file.unit,
+        file.unit_assumed,
+        look,
+    );
     if file.error.is_some() {
         out.push_str(&look.marked("not read: see the error\n", Mark::Fail));
         return out;
@@ -42,10 +51,17 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     let bodies = file.bodies.as_deref().unwrap_or_default();
     let first = bodies.first().map(|b| &b.figures);
     if let Some(density) = first.and_then(|f| f.density_kg_m3) {
-        let name = first.and_then(|f| f.material.as_deref()).map_or(String::new(), |m| format!("{m}, "));
-        out.push_str(&format!("material: {name}{} kg/m3, solid\n", significant(density, 6)));
+        let name = first
+            .and_then(|f| f.material.as_deref())
+            .map_or(String::new(), |m| format!("{m}, "));
+        out.push_str(&format!(
+            "material: {name}{} kg/m3, solid\n",
+            significant(density, 6)
+        ));
     } else {
-        out.push_str("no density given: volume figures only (--density or --material gives masses)\n");
+        out.push_str(
+            "no density given: volume figures only (--density or --material gives masses)\n",
+        );
     }
     out.push('\n');
     out.push_str(&table(file, unit).render(look));
@@ -55,8 +71,17 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     for b in bodies {
         out.push_str(&remarks(b, look));
     }
-    for f in file.findings.iter().filter(|f| f.severity < Severity::Notes) {
-        out.push_str(&format!("{} {}: {}\n", f.count, kind_word(f.kind, f.count), f.advice));
+    for f in file
+        .findings
+        .iter()
+        .filter(|f| f.severity < Severity::Notes)
+    {
+        out.push_str(&format!(
+            "{} {}: {}\n",
+            f.count,
+            kind_word(f.kind, f.count),
+            f.advice
+        ));
     }
     let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
     if readable.len() <= IN_FULL {
@@ -69,15 +94,21 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
             readable.len()
         ));
     }
-    if readable.len() > 1 && let Some(whole) = &file.whole {
+    if readable.len() > 1
+        && let Some(whole) = &file.whole
+    {
         out.push_str(&in_full("all bodies together", whole, unit, look));
     }
-    out.push_str("\nself-overlap: not tested; surfaces that cut each other would count some space twice\n");
+    out.push_str(
+        "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
+    );
     out
 }
 
 fn refusal(b: &WeighedBody, look: Look) -> String {
-    let Some(r) = &b.refused else { return String::new() };
+    let Some(r) = &b.refused else {
+        return String::new();
+    };
     let why = match r.kind {
         "not-closed" => format!(
             "not closed: {} open edges in {} boundary loop{}",
@@ -99,7 +130,11 @@ fn refusal(b: &WeighedBody, look: Look) -> String {
 
 fn remarks(b: &WeighedBody, look: Look) -> String {
     let mut out = String::new();
-    for f in b.findings.iter().filter(|f| f.severity == Severity::Doubts || b.turned) {
+    for f in b
+        .findings
+        .iter()
+        .filter(|f| f.severity == Severity::Doubts || b.turned)
+    {
         out.push_str(&format!(
             "{} {}: {} {}; {}\n",
             look.marked("note", Mark::Fail),
@@ -122,15 +157,25 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 
 /// Centre, tensor, principal moments and axes of one thing.
 fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
-    let mut out = format!("\n{}\n", look.marked(&crate::text::shown(title), Mark::Heading));
+    let mut out = format!(
+        "\n{}\n",
+        look.marked(&crate::text::shown(title), Mark::Heading)
+    );
     let (Some(centre), Some(volume_inertia)) = (&f.centroid_m, &f.volume_inertia_m5) else {
         return out;
     };
     let u = unit.symbol();
     // kg·mm² and the like read better than kg·m² on parts of a hand's size.
     let k = 1.0 / (unit.metres() * unit.metres());
-    let word = if f.mass_kg.is_some() { "centre of mass" } else { "centroid" };
-    out.push_str(&format!("{word}  {}   frame: the file's own axes and origin\n", point(centre, unit)));
+    let word = if f.mass_kg.is_some() {
+        "centre of mass"
+    } else {
+        "centroid"
+    };
+    out.push_str(&format!(
+        "{word}  {}   frame: the file's own axes and origin\n",
+        point(centre, unit)
+    ));
     let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
         Some(i) => (i, format!("kg {u}2"), k),
         None => (volume_inertia, format!("{u}5"), 1.0 / unit.metres().powi(5)),
@@ -140,7 +185,9 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         &tensor_si.map(|r| r.map(|x| x * scale)),
     ));
     let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
-    if let (Some(moments), Some(axes), Some(radii)) = (moments, &f.principal_axes, &f.radii_of_gyration_m) {
+    if let (Some(moments), Some(axes), Some(radii)) =
+        (moments, &f.principal_axes, &f.radii_of_gyration_m)
+    {
         let mut t = Table::new(vec![
             Column::text("n", "principal"),
             Column::figures("moment", "moment", &name),
@@ -150,7 +197,11 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         let free = f.axes_free.as_deref().unwrap_or_default();
         for i in 0..3 {
             let axis = axes[i].map(|x| format!("{:+.5}", x + 0.0)).join(" ");
-            let axis = if free.contains(&i) { format!("{axis} (free)") } else { axis };
+            let axis = if free.contains(&i) {
+                format!("{axis} (free)")
+            } else {
+                axis
+            };
             t.row(vec![
                 Cell::text(&(i + 1).to_string()),
                 Cell::figure(significant(moments[i] * scale, 6), moments[i]),
@@ -163,7 +214,11 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
     if let Some(about) = &f.about {
         let (tensor_si, name, scale) = match &about.inertia_kg_m2 {
             Some(i) => (i, format!("kg {u}2"), k),
-            None => (&about.volume_inertia_m5, format!("{u}5"), 1.0 / unit.metres().powi(5)),
+            None => (
+                &about.volume_inertia_m5,
+                format!("{u}5"),
+                1.0 / unit.metres().powi(5),
+            ),
         };
         out.push_str(&matrix(
             &format!("inertia about {}, {name}", point(&about.point_m, unit)),
@@ -176,7 +231,11 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
 /// A tensor as three aligned rows under its title.
 pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3]) -> String {
     let (cells, exponent) = tensor(m, 6);
-    let times = if exponent == 0 { String::new() } else { format!(" × 10^{exponent}") };
+    let times = if exponent == 0 {
+        String::new()
+    } else {
+        format!(" × 10^{exponent}")
+    };
     let width = cells.iter().flatten().map(String::len).max().unwrap_or(0);
     let mut out = format!("{title}{times}\n");
     for row in &cells {
@@ -188,8 +247,10 @@ pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3]) -> String {
 
 fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     let bodies = file.bodies.as_deref().unwrap_or_default();
-    let heaviest =
-        bodies.iter().filter_map(|b| b.figures.mass_kg).fold(0.0f64, |m, x| m.max(x.abs()));
+    let heaviest = bodies
+        .iter()
+        .filter_map(|b| b.figures.mass_kg)
+        .fold(0.0f64, |m, x| m.max(x.abs()));
     let scale = Scale::for_mass(heaviest);
     let u = unit.symbol();
     let mut table = Table::new(vec![
@@ -203,13 +264,19 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
         Column::text("size", &format!("box, {u}")),
     ]);
     for b in bodies {
-        let name = if b.refused.is_some() { format!("{} (refused)", b.id) } else { b.id.clone() };
+        let name = if b.refused.is_some() {
+            format!("{} (refused)", b.id)
+        } else {
+            b.id.clone()
+        };
         table.row(cells(&name, &b.figures, unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
             Some(whole) => table.total(cells("total", whole, unit, scale)),
-            None => table.total(vec![Cell::text("total: none, a body is missing").marked(Mark::Fail)]),
+            None => table.total(vec![
+                Cell::text("total: none, a body is missing").marked(Mark::Fail),
+            ]),
         }
     }
     table
@@ -230,7 +297,11 @@ fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
     for k in 0..3 {
         row.push(figure(f.centroid_m.map(|c| c[k] / unit.metres()), 1.0));
     }
-    row.push(f.bounds_m.as_ref().map_or_else(Cell::empty, |b| Cell::text(&box_size(b, unit))));
+    row.push(
+        f.bounds_m
+            .as_ref()
+            .map_or_else(Cell::empty, |b| Cell::text(&box_size(b, unit))),
+    );
     row
 }
 
@@ -240,13 +311,28 @@ fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
 /// As [`Table::csv`].
 pub fn csv(body: &WeighBody) -> Result<String> {
     let keys = [
-        "volume_m3", "area_m2", "density_kg_m3", "mass_kg", "centre_x_m", "centre_y_m",
-        "centre_z_m", "inertia_xx_kg_m2", "inertia_yy_kg_m2", "inertia_zz_kg_m2",
-        "inertia_xy_kg_m2", "inertia_xz_kg_m2", "inertia_yz_kg_m2", "size_x_m", "size_y_m",
+        "volume_m3",
+        "area_m2",
+        "density_kg_m3",
+        "mass_kg",
+        "centre_x_m",
+        "centre_y_m",
+        "centre_z_m",
+        "inertia_xx_kg_m2",
+        "inertia_yy_kg_m2",
+        "inertia_zz_kg_m2",
+        "inertia_xy_kg_m2",
+        "inertia_xz_kg_m2",
+        "inertia_yz_kg_m2",
+        "size_x_m",
+        "size_y_m",
         "size_z_m",
     ];
-    let mut columns =
-        vec![Column::text("path", ""), Column::text("id", ""), Column::text("refused", "")];
+    let mut columns = vec![
+        Column::text("path", ""),
+        Column::text("id", ""),
+        Column::text("refused", ""),
+    ];
     columns.extend(keys.iter().map(|k| Column::figures(k, k, "")));
     let mut table = Table::new(columns);
     for file in &body.files {
@@ -256,8 +342,22 @@ pub fn csv(body: &WeighBody) -> Result<String> {
             let c = |k: usize| f.centroid_m.map(|c| c[k]);
             let size = |k: usize| f.bounds_m.map(|b| b[1][k] - b[0][k]);
             let figures = [
-                f.volume_m3, f.area_m2, f.density_kg_m3, f.mass_kg, c(0), c(1), c(2), i(0, 0),
-                i(1, 1), i(2, 2), i(0, 1), i(0, 2), i(1, 2), size(0), size(1), size(2),
+                f.volume_m3,
+                f.area_m2,
+                f.density_kg_m3,
+                f.mass_kg,
+                c(0),
+                c(1),
+                c(2),
+                i(0, 0),
+                i(1, 1),
+                i(2, 2),
+                i(0, 1),
+                i(0, 2),
+                i(1, 2),
+                size(0),
+                size(1),
+                size(2),
             ];
             let mut row = vec![
                 Cell::text(&file.path),

@@ -8,10 +8,16 @@ use crate::text::shown;
 
 /// The unit of a symbol; mm where there is none.
 pub fn unit_of(symbol: Option<&str>) -> LengthUnit {
-    [LengthUnit::Mm, LengthUnit::Cm, LengthUnit::M, LengthUnit::In, LengthUnit::Ft]
-        .into_iter()
-        .find(|u| Some(u.symbol()) == symbol)
-        .unwrap_or_default()
+    [
+        LengthUnit::Mm,
+        LengthUnit::Cm,
+        LengthUnit::M,
+        LengthUnit::In,
+        LengthUnit::Ft,
+    ]
+    .into_iter()
+    .find(|u| Some(u.symbol()) == symbol)
+    .unwrap_or_default()
 }
 
 /// Path, format, size and unit of a file.
@@ -27,7 +33,9 @@ pub fn file_heading(
     if let (Some(format), Some(triangles), Some(unit)) = (format, triangles, unit) {
         let assumed = if assumed { " (assumed)" } else { "" };
         let format = format.to_uppercase();
-        out.push_str(&format!(" · {format} · {triangles} triangles · lengths in {unit}{assumed}"));
+        out.push_str(&format!(
+            " · {format} · {triangles} triangles · lengths in {unit}{assumed}"
+        ));
     }
     out.push('\n');
     out

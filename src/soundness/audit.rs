@@ -18,7 +18,10 @@ pub struct Audit {
 impl Audit {
     /// Whether nothing blocks and nothing doubts.
     pub fn is_sound(&self) -> bool {
-        self.file.iter().chain(self.bodies.iter().flatten()).all(|f| !f.is_unsound())
+        self.file
+            .iter()
+            .chain(self.bodies.iter().flatten())
+            .all(|f| !f.is_unsound())
     }
 }
 
@@ -26,9 +29,17 @@ impl Audit {
 ///
 /// `metres` is the length of the file's unit; `places` the most places that a finding lists.
 pub fn audit(mesh: &Mesh, metres: f64, places: usize) -> Audit {
-    let look = Look { mesh, metres, places, flat: mesh.flat_triangles() };
+    let look = Look {
+        mesh,
+        metres,
+        places,
+        flat: mesh.flat_triangles(),
+    };
     let home = look.home_of_triangles();
-    let mut out = Audit { file: Vec::new(), bodies: vec![Vec::new(); mesh.bodies().len()] };
+    let mut out = Audit {
+        file: Vec::new(),
+        bodies: vec![Vec::new(); mesh.bodies().len()],
+    };
     let mut put = |body: Option<usize>, finding: Finding| match body {
         Some(b) => out.bodies[b].push(finding),
         None => out.file.push(finding),
@@ -75,7 +86,10 @@ impl Look<'_> {
     fn home_of_triangles(&self) -> Home {
         let bodies = self.mesh.bodies();
         if bodies.len() == 1 {
-            return Home { of: Vec::new(), all: Some(0) };
+            return Home {
+                of: Vec::new(),
+                all: Some(0),
+            };
         }
         let found = self.mesh.found();
         // Only what stands at a busy edge, has collapsed or is doubled is asked about.
@@ -129,13 +143,19 @@ impl Look<'_> {
 
     /// Holes, winding conflicts, and what is said of whole shells.
     fn shells_of(&self, body: &Body, put: &mut dyn FnMut(Finding)) {
-        let shells: Vec<&Shell> =
-            body.roles().iter().map(|r| &self.mesh.found().shells[r.shell]).collect();
+        let shells: Vec<&Shell> = body
+            .roles()
+            .iter()
+            .map(|r| &self.mesh.found().shells[r.shell])
+            .collect();
         let mut holes = Vec::new();
         let mut conflicts = Vec::new();
         for shell in &shells {
             holes.extend(shell.loops.iter().filter(|l| !l.conflict));
-            let doubled = shell.open.iter().filter(|e| e.surplus == 2 && e.triangles.len() == 2);
+            let doubled = shell
+                .open
+                .iter()
+                .filter(|e| e.surplus == 2 && e.triangles.len() == 2);
             conflicts.extend(doubled);
         }
         if !holes.is_empty() {
@@ -182,7 +202,11 @@ impl Look<'_> {
         self.inside_out(body, put);
         self.nested(body, put);
         if body.joined.len() > 1 {
-            let names = body.joined.iter().map(|n| format!("\"{n}\"")).collect::<Vec<_>>();
+            let names = body
+                .joined
+                .iter()
+                .map(|n| format!("\"{n}\""))
+                .collect::<Vec<_>>();
             put(self.finding(
                 FindingKind::NameSplit,
                 Severity::Notes,
@@ -198,7 +222,13 @@ impl Look<'_> {
     }
 
     fn place(&self, at_m: [f64; 3], triangles: Vec<u32>) -> Place {
-        Place { at_m, triangles, line: None, length_m: None, edges: None }
+        Place {
+            at_m,
+            triangles,
+            line: None,
+            length_m: None,
+            edges: None,
+        }
     }
 
     fn inside_out(&self, body: &Body, put: &mut dyn FnMut(Finding)) {
@@ -208,7 +238,10 @@ impl Look<'_> {
         }
         let shells = &self.mesh.found().shells;
         let m3 = self.metres.powi(3);
-        let effect: f64 = turned.iter().map(|r| -2.0 * shells[r.shell].solid.moments.zeroth).sum();
+        let effect: f64 = turned
+            .iter()
+            .map(|r| -2.0 * shells[r.shell].solid.moments.zeroth)
+            .sum();
         let places = turned
             .iter()
             .take(self.places)
@@ -230,7 +263,11 @@ impl Look<'_> {
     }
 
     fn nested(&self, body: &Body, put: &mut dyn FnMut(Finding)) {
-        let nested: Vec<_> = body.roles().iter().filter(|r| r.part == Part::Nested).collect();
+        let nested: Vec<_> = body
+            .roles()
+            .iter()
+            .filter(|r| r.part == Part::Nested)
+            .collect();
         if nested.is_empty() {
             return;
         }
@@ -245,8 +282,11 @@ impl Look<'_> {
             .collect();
         let effect = body.closed.then(|| {
             let v = |rule| self.mesh.solid_by(body, rule).moments.zeroth * self.metres.powi(3);
-            let (sum, union, void) =
-                (v(NestedRule::Sum), v(NestedRule::Union), v(NestedRule::Void));
+            let (sum, union, void) = (
+                v(NestedRule::Sum),
+                v(NestedRule::Union),
+                v(NestedRule::Void),
+            );
             (sum, union, void)
         });
         let said = effect.map_or(String::new(), |(sum, union, void)| {
@@ -270,7 +310,10 @@ impl Look<'_> {
         let found = self.mesh.found();
         let mut by_body: BTreeMap<(Option<usize>, Severity), Vec<Place>> = BTreeMap::new();
         let mut counts: BTreeMap<(Option<usize>, Severity), u64> = BTreeMap::new();
-        for edge in found.odd.chunk_by(|a, b| (a.low, a.high) == (b.low, b.high)) {
+        for edge in found
+            .odd
+            .chunk_by(|a, b| (a.low, a.high) == (b.low, b.high))
+        {
             let mut of_name: BTreeMap<u32, (i64, Vec<u32>)> = BTreeMap::new();
             for h in edge.iter().filter(|h| !found.is_set_aside(h.triangle)) {
                 let e = of_name.entry(found.name_of(h.triangle)).or_default();
@@ -278,9 +321,12 @@ impl Look<'_> {
                 e.1.push(h.triangle);
             }
             for (net, triangles) in of_name.into_values().filter(|(_, t)| t.len() > 2) {
-                let severity = if net == 0 { Severity::Notes } else { Severity::Blocks };
-                let mut homes: Vec<Option<usize>> =
-                    triangles.iter().map(|&t| home.of(t)).collect();
+                let severity = if net == 0 {
+                    Severity::Notes
+                } else {
+                    Severity::Blocks
+                };
+                let mut homes: Vec<Option<usize>> = triangles.iter().map(|&t| home.of(t)).collect();
                 homes.sort_unstable();
                 homes.dedup();
                 for h in homes {
@@ -300,7 +346,17 @@ impl Look<'_> {
             } else {
                 "more than two facets meet at an edge and do not cancel: look for a stray or missing face there"
             };
-            put(body, self.finding(FindingKind::NonManifoldEdge, severity, count, places, None, advice));
+            put(
+                body,
+                self.finding(
+                    FindingKind::NonManifoldEdge,
+                    severity,
+                    count,
+                    places,
+                    None,
+                    advice,
+                ),
+            );
         }
     }
 
@@ -360,7 +416,10 @@ impl Look<'_> {
         places.sort();
         for place in places {
             // The facet that stays knows the body; of opposed pairs, a neighbour does.
-            let body = place.iter().find_map(|&t| home.of(t)).or_else(|| self.neighbour_body(home, place));
+            let body = place
+                .iter()
+                .find_map(|&t| home.of(t))
+                .or_else(|| self.neighbour_body(home, place));
             let of = by_body.entry(body).or_insert_with(|| Of {
                 count: 0,
                 places: Vec::new(),
@@ -368,14 +427,22 @@ impl Look<'_> {
                 stays: false,
             });
             of.count += place.len() as u64 - 1;
-            of.dropped.extend(place.iter().filter(|t| found.dropped.binary_search(t).is_ok()));
-            of.stays |= place.iter().any(|t| found.shells.iter().any(|s| s.doubled.contains(t)));
+            of.dropped.extend(
+                place
+                    .iter()
+                    .filter(|t| found.dropped.binary_search(t).is_ok()),
+            );
+            of.stays |= place
+                .iter()
+                .any(|t| found.shells.iter().any(|s| s.doubled.contains(t)));
             if of.places.len() < self.places {
-                of.places.push(self.place(self.corner(place[0]), place.clone()));
+                of.places
+                    .push(self.place(self.corner(place[0]), place.clone()));
             }
         }
         for (body, of) in by_body {
-            let effect = (!of.stays).then(|| (self.dropped_volume(body, &of.dropped), EffectIs::Exact));
+            let effect =
+                (!of.stays).then(|| (self.dropped_volume(body, &of.dropped), EffectIs::Exact));
             let advice = if of.stays {
                 "facets stand twice and dropping one opens the surface: a solid is drawn over another; unite them in the model"
             } else if of.dropped.is_empty() {
@@ -385,7 +452,14 @@ impl Look<'_> {
             };
             put(
                 body,
-                self.finding(FindingKind::Duplicate, Severity::Doubts, of.count, of.places, effect, advice),
+                self.finding(
+                    FindingKind::Duplicate,
+                    Severity::Doubts,
+                    of.count,
+                    of.places,
+                    effect,
+                    advice,
+                ),
             );
         }
     }
@@ -433,16 +507,27 @@ impl Look<'_> {
         }
         let mut by_body: BTreeMap<(Option<usize>, Severity), Of> = BTreeMap::new();
         for w in &self.mesh.soup.warped {
-            let severity = if w.within_rounding { Severity::Notes } else { Severity::Doubts };
+            let severity = if w.within_rounding {
+                Severity::Notes
+            } else {
+                Severity::Doubts
+            };
             let of = by_body
                 .entry((home.of(w.first as u32), severity))
-                .or_insert_with(|| Of { count: 0, places: Vec::new(), most: 0.0 });
+                .or_insert_with(|| Of {
+                    count: 0,
+                    places: Vec::new(),
+                    most: 0.0,
+                });
             of.count += 1;
             of.most += w.volume_high.max(-w.volume_low);
             if of.places.len() < self.places {
                 of.places.push(Place {
                     at_m: w.at.map(|x| x * self.metres),
-                    triangles: (w.first..w.first + w.count).take(64).map(|t| t as u32).collect(),
+                    triangles: (w.first..w.first + w.count)
+                        .take(64)
+                        .map(|t| t as u32)
+                        .collect(),
                     line: Some(w.line),
                     length_m: None,
                     edges: Some(w.count + 2),
@@ -458,7 +543,14 @@ impl Look<'_> {
             let effect = Some((of.most * self.metres.powi(3), EffectIs::Bound));
             put(
                 body,
-                self.finding(FindingKind::WarpedPolygon, severity, of.count, of.places, effect, advice),
+                self.finding(
+                    FindingKind::WarpedPolygon,
+                    severity,
+                    of.count,
+                    of.places,
+                    effect,
+                    advice,
+                ),
             );
         }
     }
@@ -476,5 +568,9 @@ fn centre_of_polyline(points: &[[f64; 3]]) -> ([f64; 3], f64) {
             weighted[k] += l * (p[k] + (q[k] - p[k]) / 2.0);
         }
     }
-    if length > 0.0 { (weighted.map(|w| w / length), length) } else { (points[0], 0.0) }
+    if length > 0.0 {
+        (weighted.map(|w| w / length), length)
+    } else {
+        (points[0], 0.0)
+    }
 }
