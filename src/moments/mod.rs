@@ -1,5 +1,7 @@
 //! The one idea: everything that has mass becomes [`Moments`].
 
 mod algebra;
+mod principal;
 
 pub use algebra::{Moments, Placement};
+pub use principal::{Principal, principal};
