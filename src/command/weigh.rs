@@ -3,7 +3,7 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
-use super::{Answer, Common, gather};
+use super::{Answer, Common, gather, point};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
@@ -137,21 +137,7 @@ fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
 
 /// The point of `--about`, m.
 fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>> {
-    let Some(text) = text else { return Ok(None) };
-    let parts: Vec<&str> = text.split(',').collect();
-    let [x, y, z] = parts[..] else {
-        return Err(Error::new(
-            Kind::Usage,
-            format!("--about: \"{text}\" is not three lengths"),
-            "write three lengths parted by commas, such as 0,0,120",
-        ));
-    };
-    let length = |part: &str| {
-        Quantity::parse(part.trim(), Dimension::Length, Some(unit))
-            .map(|q| q.value)
-            .map_err(|e| Error::new(e.kind, format!("--about: {}", e.message), e.advice))
-    };
-    Ok(Some([length(x)?, length(y)?, length(z)?]))
+    text.map(|text| point(text, unit)).transpose()
 }
 
 fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
