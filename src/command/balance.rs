@@ -54,8 +54,8 @@ pub fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     });
     let exit = balance.exit();
     let errors: Vec<Error> = balance.error.iter().chain(&balance.more).cloned().collect();
-    let warnings: Vec<_> = loaded.warnings.iter().chain(&resolved.warnings).cloned().collect();
-    let inputs = loaded.inputs.iter().chain(&resolved.inputs).map(fact).collect();
+    let warnings = resolved.warnings.clone();
+    let inputs = resolved.inputs.iter().map(fact).collect();
     let document = Document {
         schema: "bismar/balance/1",
         program: PROGRAM,
@@ -72,7 +72,12 @@ pub fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     } else {
         report::balance::render(&document, unit, report::table::Look::of_standard_output())
     };
-    Ok(Answer { exit, text, warnings, errors })
+    Ok(Answer {
+        exit,
+        text,
+        warnings,
+        errors,
+    })
 }
 
 fn fact(input: &Input) -> InputFact {

@@ -33,7 +33,9 @@ impl MeshBody for Placed {
     }
 
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {
-        self.mesh.bounds_turned(&self.body, turn).map(|p| p.map(|x| x * self.metres))
+        self.mesh
+            .bounds_turned(&self.body, turn)
+            .map(|p| p.map(|x| x * self.metres))
     }
 }
 
@@ -55,7 +57,9 @@ impl MeshFiles for Files {
         let soup = format::read(bytes, path, None)?;
         // Formats that state their unit are believed before the assembly's word for all.
         let metres = soup.unit.unwrap_or(unit).metres();
-        let stem = path.file_stem().map_or("body".into(), |s| s.to_string_lossy());
+        let stem = path
+            .file_stem()
+            .map_or("body".into(), |s| s.to_string_lossy());
         let mesh = Arc::new(Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?);
         let bodies: Vec<Arc<dyn MeshBody>> = mesh
             .bodies()
@@ -93,7 +97,11 @@ fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
         moments,
         area: mesh.area(body) * metres * metres,
         bounds: body.bounds.map(|p| p.map(|x| x * metres)),
-        condition: solid.as_ref().ok().and_then(|s| s.condition()).unwrap_or(f64::INFINITY),
+        condition: solid
+            .as_ref()
+            .ok()
+            .and_then(|s| s.condition())
+            .unwrap_or(f64::INFINITY),
         refused: solid.err().map(|r| Refusal {
             kind: r.kind.to_owned(),
             message: match r.kind {

@@ -16,9 +16,9 @@ use rayon::prelude::*;
 use serde::Serialize;
 
 use crate::error::{Error, Kind, Result, Warning};
+use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::table::Look;
 use crate::report::{Document, Failure, InputFact, PROGRAM, to_json};
-use crate::quantity::{Dimension, LengthUnit, Quantity};
 use inputs::Input;
 
 /// Mass, balance point and inertia of mesh exports, with every mesh proved closed or refused

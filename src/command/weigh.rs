@@ -10,8 +10,8 @@ use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule};
 use crate::moments::Moments;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
-use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile};
-use crate::report::{self, InputFact};
+use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
+use crate::report::{self, InputFact, path_hex};
 use crate::soundness;
 
 /// Arguments of `weigh`.
@@ -143,6 +143,7 @@ fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>>
 fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
     WeighedFile {
         path: path.to_string_lossy().into_owned(),
+        path_hex: path_hex(path),
         format: None,
         triangles: None,
         unit: None,
@@ -181,11 +182,18 @@ fn answer(
         .map(|b| b.id.clone())
         .collect();
     let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
-        [one] => one.figures.clone(),
-        _ => whole(&m.mesh, &chosen, metres, rule, substance, about),
+        [one] => Whole {
+            figures: one.figures.clone(),
+            uncertainty: None,
+        },
+        _ => Whole {
+            figures: whole(&m.mesh, &chosen, metres, rule, substance, about),
+            uncertainty: None,
+        },
     });
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
+        path_hex: path_hex(&input.path),
         format: Some(m.format),
         triangles: Some(m.mesh.soup.triangles.count() as u64),
         unit: Some(m.unit.symbol()),

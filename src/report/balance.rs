@@ -45,7 +45,10 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         Some(total) => out.push_str(&whole(total, body.about.as_ref(), unit, look)),
         None => out.push_str(&format!(
             "\n{}\n",
-            look.marked("NO TOTAL: a part cannot be weighed, see the error", Mark::Fail)
+            look.marked(
+                "NO TOTAL: a part cannot be weighed, see the error",
+                Mark::Fail
+            )
         )),
     }
     if !b.expectations.is_empty() {
@@ -114,8 +117,9 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
             Cell::text(&made_of(p)),
             Cell::text(&format!("{}{implied}", basis_word(p.basis))),
             Cell::figure(significant(p.mass_kg, 5), p.mass_kg),
-            p.share_of_mass
-                .map_or_else(Cell::empty, |s| Cell::figure(format!("{:.1}", 100.0 * s), s)),
+            p.share_of_mass.map_or_else(Cell::empty, |s| {
+                Cell::figure(format!("{:.1}", 100.0 * s), s)
+            }),
             centre(c, 0),
             centre(c, 1),
             centre(c, 2),
@@ -142,7 +146,11 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
 /// Hundredths of the unit at most: a position is not known finer.
 fn fixed(x: f64) -> String {
     let text = format!("{x:.2}");
-    if text.trim_start_matches('-').chars().all(|c| matches!(c, '0' | '.')) {
+    if text
+        .trim_start_matches('-')
+        .chars()
+        .all(|c| matches!(c, '0' | '.'))
+    {
         "0.00".to_owned()
     } else {
         text
@@ -163,22 +171,40 @@ fn subtotals(b: &Balance, look: Look) -> String {
             Cell::text(name),
             Cell::count(parts as u64),
             Cell::figure(significant(mass, 5), mass),
-            share.map_or_else(Cell::empty, |s| Cell::figure(format!("{:.1}", 100.0 * s), s)),
+            share.map_or_else(Cell::empty, |s| {
+                Cell::figure(format!("{:.1}", 100.0 * s), s)
+            }),
         ]);
     };
     for (i, m) in b.by_material.iter().enumerate() {
         let by = if i == 0 { "by material" } else { "" };
-        let density =
-            m.density_kg_m3.map_or(String::new(), |d| format!(", {} kg/m3", significant(d, 5)));
-        let name = m.material.as_deref().unwrap_or("(no material: bought in or measured)");
-        row(by, &format!("{name}{density}"), m.parts, m.mass_kg, m.share_of_mass);
+        let density = m
+            .density_kg_m3
+            .map_or(String::new(), |d| format!(", {} kg/m3", significant(d, 5)));
+        let name = m
+            .material
+            .as_deref()
+            .unwrap_or("(no material: bought in or measured)");
+        row(
+            by,
+            &format!("{name}{density}"),
+            m.parts,
+            m.mass_kg,
+            m.share_of_mass,
+        );
     }
     if b.by_group.iter().any(|g| g.group.is_some()) {
         for (i, g) in b.by_group.iter().enumerate() {
             let by = if i == 0 { "by group" } else { "" };
             let indent = "  ".repeat(g.depth.saturating_sub(1));
             let name = g.group.as_deref().unwrap_or("(in no group)");
-            row(by, &format!("{indent}{name}"), g.parts, g.mass_kg, g.share_of_mass);
+            row(
+                by,
+                &format!("{indent}{name}"),
+                g.parts,
+                g.mass_kg,
+                g.share_of_mass,
+            );
         }
     }
     for (i, s) in b.by_basis.iter().enumerate() {
@@ -190,12 +216,19 @@ fn subtotals(b: &Balance, look: Look) -> String {
 
 fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) -> String {
     let mut out = format!("\n{}\n", look.marked("the whole", Mark::Heading));
-    out.push_str(&format!("mass           {} kg\n", significant(t.mass_kg, 6)));
+    out.push_str(&format!(
+        "mass           {} kg\n",
+        significant(t.mass_kg, 6)
+    ));
     out.push_str(&format!(
         "balance point  {}   frame: the assembly's axes and origin\n",
         point(&t.centre_of_mass_m, unit)
     ));
-    out.push_str(&format!("box            {} {}\n", box_size(&t.bounds_m, unit), unit.symbol()));
+    out.push_str(&format!(
+        "box            {} {}\n",
+        box_size(&t.bounds_m, unit),
+        unit.symbol()
+    ));
     out.push_str(&matrix(
         "inertia about the centre of mass, kg m2; off-diagonals are the tensor's own, −∫xy dm",
         &t.inertia_kg_m2,
@@ -207,11 +240,20 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
         Column::text("axis", "axis"),
     ]);
     for i in 0..3 {
-        let axis = t.principal_axes[i].map(|x| format!("{:+.5}", x + 0.0)).join(" ");
-        let free = if t.axes_free.contains(&i) { " (free)" } else { "" };
+        let axis = t.principal_axes[i]
+            .map(|x| format!("{:+.5}", x + 0.0))
+            .join(" ");
+        let free = if t.axes_free.contains(&i) {
+            " (free)"
+        } else {
+            ""
+        };
         table.row(vec![
             Cell::text(&(i + 1).to_string()),
-            Cell::figure(significant(t.principal_moments_kg_m2[i], 6), t.principal_moments_kg_m2[i]),
+            Cell::figure(
+                significant(t.principal_moments_kg_m2[i], 6),
+                t.principal_moments_kg_m2[i],
+            ),
             Cell::figure(
                 significant(length_in(t.radii_of_gyration_m[i], unit), 6),
                 t.radii_of_gyration_m[i],
@@ -292,7 +334,11 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
     for l in limits {
         let shown = |x: f64| {
             let (x, _) = readable(x, l.unit, unit);
-            let text = if l.unit == "m" { fixed(x) } else { significant(x, 6) };
+            let text = if l.unit == "m" {
+                fixed(x)
+            } else {
+                significant(x, 6)
+            };
             Cell::figure(text, x)
         };
         let percent = match (l.margin_percent, l.percent_of) {
@@ -309,7 +355,11 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
             End::From => " to the lower end",
             End::To => " to the upper end",
         };
-        let percent = if l.from.is_some() && l.to.is_some() { percent + end } else { percent };
+        let percent = if l.from.is_some() && l.to.is_some() {
+            percent + end
+        } else {
+            percent
+        };
         let (word, mark) = verdict(l.verdict);
         table.row(vec![
             Cell::text(&l.name),
@@ -323,11 +373,20 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
             Cell::text(word).marked(mark),
         ]);
     }
-    let broken = limits.iter().filter(|l| l.verdict == Verdict::Broken).count();
+    let broken = limits
+        .iter()
+        .filter(|l| l.verdict == Verdict::Broken)
+        .count();
     let verdict = if broken == 0 {
-        look.marked(&format!("all {} limits hold at the nominal figures", limits.len()), Mark::Pass)
+        look.marked(
+            &format!("all {} limits hold at the nominal figures", limits.len()),
+            Mark::Pass,
+        )
     } else {
-        look.marked(&format!("{broken} of {} limits BROKEN", limits.len()), Mark::Fail)
+        look.marked(
+            &format!("{broken} of {} limits BROKEN", limits.len()),
+            Mark::Fail,
+        )
     };
     format!("\n{}{verdict}\n", table.render(look))
 }
@@ -338,10 +397,23 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
 /// As [`Table::csv`].
 pub fn csv(body: &BalanceBody) -> Result<String> {
     let figures = [
-        "mass_kg", "share_of_mass", "density_kg_m3", "implied_density_kg_m3", "volume_m3",
-        "centre_x_m", "centre_y_m", "centre_z_m", "inertia_xx_kg_m2", "inertia_yy_kg_m2",
-        "inertia_zz_kg_m2", "inertia_xy_kg_m2", "inertia_xz_kg_m2", "inertia_yz_kg_m2",
-        "size_x_m", "size_y_m", "size_z_m",
+        "mass_kg",
+        "share_of_mass",
+        "density_kg_m3",
+        "implied_density_kg_m3",
+        "volume_m3",
+        "centre_x_m",
+        "centre_y_m",
+        "centre_z_m",
+        "inertia_xx_kg_m2",
+        "inertia_yy_kg_m2",
+        "inertia_zz_kg_m2",
+        "inertia_xy_kg_m2",
+        "inertia_xz_kg_m2",
+        "inertia_yz_kg_m2",
+        "size_x_m",
+        "size_y_m",
+        "size_z_m",
     ];
     let mut columns = vec![
         Column::text("path", ""),
@@ -355,12 +427,29 @@ pub fn csv(body: &BalanceBody) -> Result<String> {
         let i = |a: usize, b: usize| p.inertia_kg_m2.map(|t| t[a][b]);
         let size = |k: usize| Some(p.bounds_m[1][k] - p.bounds_m[0][k]);
         let figures = [
-            Some(p.mass_kg), p.share_of_mass, p.density_kg_m3, p.implied_density_kg_m3,
-            p.volume_m3, c(0), c(1), c(2), i(0, 0), i(1, 1), i(2, 2), i(0, 1), i(0, 2), i(1, 2),
-            size(0), size(1), size(2),
+            Some(p.mass_kg),
+            p.share_of_mass,
+            p.density_kg_m3,
+            p.implied_density_kg_m3,
+            p.volume_m3,
+            c(0),
+            c(1),
+            c(2),
+            i(0, 0),
+            i(1, 1),
+            i(2, 2),
+            i(0, 1),
+            i(0, 2),
+            i(1, 2),
+            size(0),
+            size(1),
+            size(2),
         ];
-        let mut row =
-            vec![Cell::text(&p.path), Cell::text(&made_of(p)), Cell::text(basis_word(p.basis))];
+        let mut row = vec![
+            Cell::text(&p.path),
+            Cell::text(&made_of(p)),
+            Cell::text(basis_word(p.basis)),
+        ];
         row.extend(figures.map(|x| x.map_or_else(Cell::empty, |x| Cell::figure("", x))));
         table.row(row);
     }

@@ -13,5 +13,5 @@ pub mod weigh;
 pub mod weigh_text;
 mod words;
 
-pub use document::{Document, Failure, InputFact, PROGRAM, Program, to_json};
+pub use document::{Document, Failure, InputFact, PROGRAM, Program, path_hex, to_json};
 pub use footer::{CAUTION, footer};

@@ -97,7 +97,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     if readable.len() > 1
         && let Some(whole) = &file.whole
     {
-        out.push_str(&in_full("all bodies together", whole, unit, look));
+        out.push_str(&in_full("all bodies together", &whole.figures, unit, look));
     }
     out.push_str(
         "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
@@ -273,7 +273,7 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => table.total(cells("total", whole, unit, scale)),
+            Some(whole) => table.total(cells("total", &whole.figures, unit, scale)),
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
