@@ -16,7 +16,6 @@ struct Chunk<T> {
 pub(crate) struct Buckets<T> {
     chunks: Vec<Chunk<T>>,
     count: usize,
-    chunk: usize,
 }
 
 impl<T: Copy + Default + Send + Sync> Buckets<T> {
@@ -69,21 +68,12 @@ impl<T: Copy + Default + Send + Sync> Buckets<T> {
                 Chunk { items, starts }
             })
             .collect();
-        Self {
-            chunks,
-            count,
-            chunk,
-        }
+        Self { chunks, count }
     }
 
     /// Number of buckets.
     pub(crate) fn count(&self) -> usize {
         self.count
-    }
-
-    /// Sources in one chunk.
-    pub(crate) fn chunk_size(&self) -> usize {
-        self.chunk
     }
 
     /// The segments of one bucket: (chunk, items), in input order.
