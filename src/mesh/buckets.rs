@@ -9,10 +9,12 @@ use std::sync::atomic::AtomicU32;
 
 use rayon::prelude::*;
 
+use super::words::Words;
+
 /// Items in buckets: `W` words each.
 pub(crate) struct Buckets<const W: usize> {
     /// Chunk after chunk; in a chunk, bucket after bucket.
-    items: Vec<[u32; W]>,
+    items: Words,
     /// For each chunk, where in it each bucket starts, and the end.
     starts: Vec<u32>,
     /// The bucket of each item, in source order, chunk after chunk.
@@ -28,9 +30,11 @@ pub(crate) struct Buckets<const W: usize> {
 const ITEMS_A_BUCKET: usize = 32_768;
 
 impl<const W: usize> Buckets<W> {
-    /// Sorts the items of sources `0..n` into buckets: `M` of each source, or none.
+    /// Sorts the items of sources `0..n` into buckets: `M` of each source, or none. `scratch` is
+    /// memory that an earlier run gave back.
     pub(crate) fn fill<const M: usize>(
         n: usize,
+        scratch: Option<Words>,
         items_of: impl Fn(usize) -> Option<[[u32; W]; M]> + Sync,
         hash: impl Fn(&[u32; W]) -> u64 + Sync,
     ) -> Self {
@@ -44,11 +48,12 @@ impl<const W: usize> Buckets<W> {
         let sources = (count * 48 / M).clamp(8192, 1 << 18);
         let chunks = n.div_ceil(sources);
         let room = sources * M;
-        // Zeroed memory costs nothing before it is touched.
-        let mut items = vec![[0u32; W]; chunks * room];
+        let mut items = Words::reuse(scratch, chunks * room * W);
         let mut tags = vec![0u16; chunks * room];
         let mut starts = vec![0u32; chunks * (count + 1)];
-        items
+        items.as_mut_slice()[..chunks * room * W]
+            .as_chunks_mut::<W>()
+            .0
             .par_chunks_mut(room.max(1))
             .zip(tags.par_chunks_mut(room.max(1)))
             .zip(starts.par_chunks_mut(count + 1))
@@ -88,6 +93,15 @@ impl<const W: usize> Buckets<W> {
         }
     }
 
+    /// The memory, for the next run.
+    pub(crate) fn into_scratch(self) -> Words {
+        self.items
+    }
+
+    fn all(&self) -> &[[u32; W]] {
+        self.items.as_slice().as_chunks::<W>().0
+    }
+
     /// Number of buckets.
     pub(crate) fn count(&self) -> usize {
         self.count
@@ -106,7 +120,7 @@ impl<const W: usize> Buckets<W> {
     #[inline(always)]
     pub(crate) fn each(&self, bucket: usize, mut see: impl FnMut(&[u32; W])) {
         for k in 0..self.chunks() {
-            for item in &self.items[self.segment(k, bucket)] {
+            for item in &self.all()[self.segment(k, bucket)] {
                 see(item);
             }
         }
@@ -126,7 +140,7 @@ impl<const W: usize> Buckets<W> {
         work: impl Fn(&mut S, usize, &mut dyn Iterator<Item = Cells<'_, W>>) + Sync + Send,
     ) {
         let (count, room) = (self.count, self.room);
-        let (starts, cells) = (&self.starts, as_atomic(self.items.as_flattened_mut()));
+        let (starts, cells) = (&self.starts, as_atomic(self.items.as_mut_slice()));
         let chunks = starts.len() / (count + 1);
         (0..count).into_par_iter().for_each_init(start, |state, b| {
             let mut segments = (0..chunks).map(|k| {
@@ -152,7 +166,7 @@ impl<const W: usize> Buckets<W> {
             .for_each(|(k, out)| {
                 let first = k * (self.count + 1);
                 let mut next = self.starts[first..first + self.count].to_vec();
-                let items = &self.items[k * self.room..(k + 1) * self.room];
+                let items = &self.all()[k * self.room..(k + 1) * self.room];
                 let tags = &self.tags[k * self.room..];
                 for (word, tag) in out.as_flattened_mut().iter_mut().zip(tags) {
                     let at = &mut next[*tag as usize];
@@ -217,6 +231,7 @@ mod tests {
         let seed = random_seed();
         let mut b = Buckets::<2>::fill(
             n,
+            None,
             |i| {
                 Some([
                     [i as u32 % 777, 2 * i as u32],

@@ -4,6 +4,7 @@ use rayon::prelude::*;
 
 use super::buckets::{Buckets, hash2, random_seed};
 use super::union::Sets;
+use super::words::Words;
 
 /// One triangle's passage along an edge.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -31,10 +32,12 @@ pub(crate) fn match_edges(
     corners: &[[u32; 3]],
     name_of: &(dyn Fn(u32) -> u32 + Sync),
     sets: &Sets,
+    scratch: Words,
 ) -> Vec<Half> {
     let seed = random_seed();
     let buckets = Buckets::<3>::fill(
         corners.len(),
+        Some(scratch),
         |t| {
             let [a, b, c] = corners[t];
             let whole = a != b && b != c && c != a;

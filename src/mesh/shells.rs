@@ -97,7 +97,7 @@ impl Shells {
 
     /// Welds the soup and finds its shells.
     pub(crate) fn of(soup: &Soup) -> Result<Self> {
-        let corners = weld(&soup.triangles)?;
+        let (corners, scratch) = weld(&soup.triangles)?;
         let n = corners.len();
         let names = (soup.names.len() > 1).then(|| {
             let mut names = vec![0u32; n];
@@ -108,7 +108,7 @@ impl Shells {
         });
         let name_of = |t: u32| names.as_ref().map_or(0, |n| n[t as usize]);
         let mut sets = Sets::new(n);
-        let odd = match_edges(&corners, &name_of, &sets);
+        let odd = match_edges(&corners, &name_of, &sets, scratch);
         let mut duplicates = Duplicates::among(&odd, &corners, &name_of);
         let mut restored: Vec<u32> = Vec::new();
         if !odd.is_empty() {

@@ -4,17 +4,18 @@ use rayon::prelude::*;
 
 use super::Triangles;
 use super::buckets::{Buckets, hash2, random_seed};
+use super::words::Words;
 use crate::error::{Error, Kind, Result};
 
 /// Most triangles that the exact path audits: corners are numbered in 32 bits.
 pub const MOST_TRIANGLES: usize = (u32::MAX / 3) as usize;
 
-/// Vertex numbers after welding, three a triangle.
+/// Vertex numbers after welding, three a triangle, and the memory that the work was done in.
 ///
 /// A vertex's number is that of the first place, in file order, where its coordinates stand: a
 /// corner (3·triangle + corner) where corners are not shared, a row of the vertex list where they
 /// are.
-pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
+pub(crate) fn weld(triangles: &Triangles) -> Result<(Vec<[u32; 3]>, Words)> {
     let vertices = match triangles {
         Triangles::Indexed { vertices, .. } => vertices.len(),
         _ => 0,
@@ -52,11 +53,13 @@ pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
             ]
         }),
         Triangles::Indexed { vertices, corners } => {
-            let first = first_places(vertices.len(), |v| [words64(vertices[v], v as u32)]);
-            corners
+            let (first, scratch) =
+                first_places(vertices.len(), |v| [words64(vertices[v], v as u32)]);
+            let corners = corners
                 .par_iter()
                 .map(|c| c.map(|v| first[v as usize][0]))
-                .collect()
+                .collect();
+            (corners, scratch)
         }
     })
 }
@@ -80,16 +83,16 @@ fn words64(p: [f64; 3], place: u32) -> [u32; 7] {
 fn first_places<const W: usize, const M: usize>(
     n: usize,
     items: impl Fn(usize) -> [[u32; W]; M] + Sync,
-) -> Vec<[u32; M]> {
+) -> (Vec<[u32; M]>, Words) {
     let seed = random_seed();
-    let mut buckets = Buckets::<W>::fill(n, |i| Some(items(i)), |item| hash(seed, item));
+    let mut buckets = Buckets::<W>::fill(n, None, |i| Some(items(i)), |item| hash(seed, item));
     buckets.rewrite(Table::default, |table: &mut Table<W>, len, segments| {
         table.clear(len);
         for segment in segments {
             segment.each(|item| table.first(item));
         }
     });
-    buckets.last_words(n)
+    (buckets.last_words(n), buckets.into_scratch())
 }
 
 /// Hash of an item's key.
@@ -198,7 +201,7 @@ mod tests {
                 let key = p.map(|x| (x + 0.0).to_bits());
                 want.push(*seen.entry(key).or_insert(i as u32));
             }
-            let got = weld(&Triangles::Loose(list)).unwrap();
+            let (got, _) = weld(&Triangles::Loose(list)).unwrap();
             prop_assert_eq!(got.concat(), want);
         }
     }
