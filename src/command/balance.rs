@@ -13,7 +13,7 @@ use crate::report::{self, Document, InputFact, PROGRAM, to_json};
 
 /// Arguments of `balance`.
 #[derive(Args, Clone, Debug)]
-pub struct BalanceArgs {
+pub(super) struct BalanceArgs {
     /// The assembly file, TOML or JSON
     #[arg(value_name = "ASSEMBLY")]
     file: PathBuf,
@@ -26,7 +26,7 @@ pub struct BalanceArgs {
 ///
 /// # Errors
 /// Of the options; faults of the assembly stand in the answer.
-pub fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     let loaded = match assembly::load(&args.file) {
         Ok(loaded) => loaded,
         Err(errors) => return Ok(failure(errors, common)),

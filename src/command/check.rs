@@ -12,7 +12,7 @@ use crate::soundness::{self, Finding, TESTED};
 
 /// Arguments of `check`.
 #[derive(Args, Clone, Debug)]
-pub struct CheckArgs {
+pub(super) struct CheckArgs {
     #[command(flatten)]
     meshes: MeshArgs,
     /// List up to N places of each finding
@@ -21,7 +21,7 @@ pub struct CheckArgs {
 }
 
 /// Runs the command.
-pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
     let answers = gather(expand(&args.meshes), |input| check_file(input, args));
     let mut files = Vec::new();
     let mut exit = 0;
@@ -44,7 +44,7 @@ pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
         body,
         common,
         report::check_text::render,
-        |b| report::check_text::csv(b),
+        report::check_text::csv,
     )
 }
 

@@ -15,7 +15,7 @@ use crate::quantity::LengthUnit;
 
 /// Reads mesh files for an assembly.
 #[derive(Default)]
-pub struct Files {
+pub(super) struct Files {
     read: BTreeMap<(PathBuf, &'static str), Vec<Arc<dyn MeshBody>>>,
     inputs: BTreeMap<PathBuf, Input>,
 }

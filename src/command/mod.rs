@@ -38,7 +38,7 @@ struct Cli {
 
 /// Options that every command takes.
 #[derive(Args, Clone, Debug, Default)]
-pub struct Common {
+pub(crate) struct Common {
     /// Print one JSON document (SI units)
     #[arg(long, global = true)]
     json: bool,
@@ -75,7 +75,7 @@ enum Command {
 }
 
 /// What a command has to say.
-pub struct Answer {
+pub(crate) struct Answer {
     exit: u8,
     text: String,
     warnings: Vec<Warning>,

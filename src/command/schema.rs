@@ -3,7 +3,7 @@
 use super::Answer;
 
 /// Runs the command.
-pub fn run() -> Answer {
+pub(super) fn run() -> Answer {
     // A value without floats or foreign keys always serialises.
     let mut text = serde_json::to_string_pretty(&crate::assembly::schema()).unwrap_or_default();
     text.push('\n');

@@ -16,7 +16,7 @@ use crate::soundness;
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
-pub struct WeighArgs {
+pub(super) struct WeighArgs {
     #[command(flatten)]
     meshes: MeshArgs,
     /// Density of the solid, such as "7850 kg/m3 ± 1 %" or "2.70 g/cm3"
@@ -58,7 +58,7 @@ impl From<Nested> for NestedRule {
 ///
 /// # Errors
 /// Of the options; faults of inputs stand in the answer.
-pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
@@ -105,7 +105,7 @@ pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
         body,
         common,
         report::weigh_text::render,
-        |b| report::weigh_text::csv(b),
+        report::weigh_text::csv,
     )
 }
 

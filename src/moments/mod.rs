@@ -2,8 +2,10 @@
 
 mod algebra;
 mod principal;
+mod skin;
 mod solid;
 
 pub use algebra::{Moments, Placement};
 pub use principal::{Principal, principal};
+pub use skin::integrate_skin;
 pub use solid::{CHUNK, ChunkSums, SolidIntegrals, chunk_sums, integrate};

@@ -189,6 +189,7 @@ fn kernel<C: Corners, P: Product>(
     apex: [f64; 3],
     middle: [f64; 3],
 ) -> ChunkSums {
+    #![allow(clippy::needless_range_loop)] // lanes of several arrays side by side
     let mut high = [[0.0; LANES]; SUMS];
     let mut low = [[0.0; LANES]; SUMS];
     let mut absolute = [0.0; LANES];

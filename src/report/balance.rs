@@ -7,7 +7,7 @@ use super::digits::{length_in, significant};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
-use super::words::{box_size, point};
+use super::words::{box_size, direction, point};
 use crate::assembly::{Balance, Basis, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, Judged, PercentOf, Verdict};
@@ -240,9 +240,7 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
         Column::text("axis", "axis"),
     ]);
     for i in 0..3 {
-        let axis = t.principal_axes[i]
-            .map(|x| format!("{:+.5}", x + 0.0))
-            .join(" ");
+        let axis = direction(&t.principal_axes[i]);
         let free = if t.axes_free.contains(&i) {
             " (free)"
         } else {

@@ -5,7 +5,7 @@ use super::digits::{Scale, significant, tensor};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh::{WeighBody, WeighedBody, WeighedFile};
-use super::words::{box_size, file_heading, kind_word, point, unit_of};
+use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
 use crate::masses::Figures;
 use crate::quantity::LengthUnit;
@@ -196,7 +196,7 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         ]);
         let free = f.axes_free.as_deref().unwrap_or_default();
         for i in 0..3 {
-            let axis = axes[i].map(|x| format!("{:+.5}", x + 0.0)).join(" ");
+            let axis = direction(&axes[i]);
             let axis = if free.contains(&i) {
                 format!("{axis} (free)")
             } else {
@@ -294,8 +294,12 @@ fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
             Cell::figure(significant(scale.of(m), 6), scale.of(m))
         }),
     ];
-    for k in 0..3 {
-        row.push(figure(f.centroid_m.map(|c| c[k] / unit.metres()), 1.0));
+    match (&f.centroid_m, &f.bounds_m) {
+        (Some(c), Some(b)) => {
+            let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
+            row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
+        }
+        _ => row.extend([Cell::empty(), Cell::empty(), Cell::empty()]),
     }
     row.push(
         f.bounds_m

@@ -64,6 +64,45 @@ fn column(x: &[f64; 3]) -> [String; 3] {
     x.map(|v| format!("{v:.decimals$}"))
 }
 
+/// The three coordinates of a point in table cells: to six digits of the largest length about it,
+/// so that rounding dust shows as zero.
+pub(super) fn coordinates(at_m: &[f64; 3], size_m: f64, unit: LengthUnit) -> [(String, f64); 3] {
+    let p = at_m.map(|x| length_in(x, unit));
+    let scale = p
+        .iter()
+        .fold(length_in(size_m, unit), |m, x| m.max(x.abs()));
+    let shown = column(&[scale, scale, scale]);
+    let decimals = shown[0].split_once('.').map_or(0, |(_, d)| d.len());
+    p.map(|x| {
+        if shown[0].contains('e') {
+            return (significant(x, 6), x);
+        }
+        let text = format!("{x:.decimals$}");
+        let zero = text.bytes().all(|b| matches!(b, b'-' | b'0' | b'.'));
+        (
+            if zero {
+                text.trim_start_matches('-').to_owned()
+            } else {
+                text
+            },
+            x,
+        )
+    })
+}
+
+/// A direction as its three components, to five places.
+pub(super) fn direction(axis: &[f64; 3]) -> String {
+    axis.map(|x| {
+        let text = format!("{x:+.5}");
+        if text == "-0.00000" {
+            "+0.00000".to_owned()
+        } else {
+            text
+        }
+    })
+    .join(" ")
+}
+
 /// Without the zeros behind the point that say nothing, and without a negative zero.
 fn trimmed(text: &str) -> String {
     let text = if text.contains('.') && !text.contains('e') {
