@@ -54,6 +54,7 @@ fn alike(a: &Moments, b: &Moments) -> Result<(), TestCaseError> {
     let b = b.shifted(a.about);
     let reach = a.about.norm() + b.about.norm() + 20.0;
     let size = a.zeroth.abs().max(1.0);
+    prop_assert_eq!(b.second, b.second.transpose());
     prop_assert!((a.zeroth - b.zeroth).abs() <= 1e-14 * size, "{a:?} {b:?}");
     prop_assert!(
         (a.first - b.first).amax() <= 1e-13 * size * reach,
@@ -193,10 +194,13 @@ proptest! {
     }
 }
 
+/// Closed, turned; shells, voids, triangles; volume in grains; findings.
+type SaidOfBody = (bool, bool, usize, usize, usize, Option<i64>, Vec<String>);
+
 /// What is said of a mesh that does not depend on where it stands: bodies by volume, findings.
 #[derive(Debug, PartialEq)]
 struct Said {
-    bodies: Vec<(bool, bool, usize, usize, usize, Option<i64>, Vec<String>)>,
+    bodies: Vec<SaidOfBody>,
     file: Vec<String>,
 }
 

@@ -416,7 +416,8 @@ fn curved() -> Vec<Curved> {
 
 /// The error of a mesh with corners on the surface falls with the square of the step. From 64 to
 /// 128 steps the next term of the series (h⁴) shifts the ratio by less than 0.02; and the two
-/// together, extrapolated, leave only that term: 1e-5 of the figure.
+/// together, extrapolated, leave only that term: 2e-5 of the figure (the torus, with 64 steps around its
+/// tube, leaves most).
 #[test]
 fn curved_solids_converge_with_the_square_of_the_step() {
     let names = ["V", "centroid z", "Izz", "Ixx", "Iyy"];
@@ -455,7 +456,7 @@ fn curved_solids_converge_with_the_square_of_the_step() {
                 &what,
                 (4.0 * fine[k] - middle[k]) / 3.0,
                 want[k],
-                1e-5 * size,
+                2e-5 * size,
             );
             if k == 0 {
                 assert!(e3 < 0.0 || name.starts_with("tube") || name.starts_with("torus"));
@@ -528,13 +529,8 @@ fn the_tabulated_numbers_are_those_of_the_formulas() {
         },
     ];
     for (solid, formula) in curved().iter().zip(by_formula) {
-        for k in 0..5 {
-            near(
-                solid.name,
-                formula[k],
-                solid.want[k],
-                2e-14 * solid.want[k].abs(),
-            );
+        for (found, want) in formula.into_iter().zip(solid.want) {
+            near(solid.name, found, want, 2e-14 * want.abs());
         }
     }
 }

@@ -334,9 +334,12 @@ fn names_that_close_together_are_one_body() {
     assert_eq!(m.bodies().len(), 1);
     assert_eq!(m.bodies()[0].id, "z");
     assert_eq!(m.bodies()[0].joined, ["z", "m", "a"]);
-    // One triangle is missing: they do not close together, and stay two that are refused.
-    let m = piece(vec![(Some("a"), a.to_vec()), (Some("b"), b[1..].to_vec())]);
-    assert_eq!(m.bodies().len(), 2);
+    // One triangle is missing: they do not close together, and no piece is weighed.
+    let m = piece(vec![(Some("a"), a[..4].to_vec()), (Some("b"), b.to_vec())]);
+    let names: Vec<_> = m.bodies().iter().map(|b| b.name.as_deref()).collect();
+    // Bottom and top of the cube hang together under neither name.
+    assert_eq!(names, [Some("a"), Some("a"), Some("b")]);
+    assert!(m.bodies().iter().all(|b| !b.closed && b.joined.is_empty()));
     assert!(m.bodies().iter().all(|b| m.solid(b, None).is_err()));
     // A whole cube under one name and a split one elsewhere: the whole is not drawn in.
     let far = moved(&all, [9.0, 0.0, 0.0]);
@@ -408,14 +411,23 @@ fn repeated_facets_are_dropped_and_said_where_the_rest_closes() {
 
 #[test]
 fn a_doubled_facet_on_an_open_shell_is_refused() {
-    // The rest does not close: a hole beside it.
+    // The rest does not close: a hole beside it. Nothing is dropped, and no piece is weighed.
     let mut t = cube(0.0, 2.0);
     t.push(t[5]);
     t.remove(0);
+    let open = imbalance(&t);
+    assert_eq!(open, 6);
     let m = mesh(t);
-    let [body] = m.bodies() else { panic!() };
-    assert!(!body.closed);
-    assert_eq!(m.solid(body, None).unwrap_err().kind, "not-closed");
+    let refusals: Vec<_> = m
+        .bodies()
+        .iter()
+        .map(|b| m.solid(b, None).unwrap_err())
+        .collect();
+    assert!(refusals.iter().all(|r| r.kind == "not-closed"));
+    assert!(refusals.iter().map(|r| r.open_edges).sum::<u64>() >= open);
+    let counted: usize = m.bodies().iter().map(|b| b.triangles).sum();
+    assert_eq!(counted, 12);
+    assert!(findings(&m).contains(&(FindingKind::Duplicate, Severity::Doubts, 1)));
 }
 
 /// A mesh and its mirror in winding lie on each other: nothing is left, and no body.
@@ -486,30 +498,62 @@ proptest! {
         prop_assert_eq!(shells, grid.solids(inverted).len() + grid.pockets(!inverted));
     }
 
-    /// Random facets on small integers, most of them open: nothing is lost, nothing counted twice,
-    /// and a body is closed exactly where its directed edges cancel, by a plain count.
+    /// Random facets on small integers, most of them open: nothing is counted twice, a body is
+    /// closed exactly where no open edge is found, and no order of the facets or of their corners
+    /// changes what is found.
     #[test]
     fn random_facets(
         corners in prop::collection::vec([[0..3u8, 0..3, 0..3], [0..3, 0..3, 0..3], [0..3, 0..3, 0..3]], 1..40),
+        order in Just((0..40usize).collect::<Vec<_>>()).prop_shuffle(),
+        start in 0..3usize,
     ) {
         let t: Vec<Tri> = corners.iter().map(|t| t.map(|p| p.map(f64::from))).collect();
         let m = mesh(t.clone());
-        let open: u64 = m
-            .bodies()
-            .iter()
-            .map(|b| m.solid(b, None).err().map_or(0, |r| r.open_edges))
-            .sum();
+        let open: u64 = m.bodies().iter().map(|b| open_edges(&m, b)).sum();
         let net = imbalance(&t);
         // Shells can each be open where together they cancel; never the other way.
         prop_assert!(open >= net, "{open} open edges found, {net} at least");
-        if m.bodies().iter().all(|b| b.closed) {
-            prop_assert_eq!(open, 0);
+        for b in m.bodies() {
+            prop_assert_eq!(b.closed, open_edges(&m, b) == 0);
         }
         let counted: usize = m.bodies().iter().map(|b| b.triangles).sum();
         prop_assert!(counted <= t.len());
-        for b in m.bodies() {
-            prop_assert_eq!(b.closed, m.solid(b, Some(NestedRule::Sum)).err().is_none_or(|r| r.open_edges == 0));
+        let mixed: Vec<Tri> = order
+            .iter()
+            .filter_map(|&i| t.get(i))
+            .map(|t| [t[start], t[(start + 1) % 3], t[(start + 2) % 3]])
+            .collect();
+        if !stacked(&t) {
+            prop_assert_eq!(told(&m), told(&mesh(mixed)));
         }
+    }
+
+    /// The same of closed surfaces: tetrahedra on small integers, that touch and cut each other
+    /// along faces, edges and corners in every way.
+    #[test]
+    fn random_tetrahedra(
+        corners in prop::collection::vec([[0..3i8, 0..3, 0..3], [0..3, 0..3, 0..3], [0..3, 0..3, 0..3], [0..3, 0..3, 0..3]], 1..8),
+        order in Just((0..40usize).collect::<Vec<_>>()).prop_shuffle(),
+    ) {
+        let mut t = Vec::new();
+        for p in &corners {
+            let p = p.map(|p| p.map(f64::from));
+            t.extend(polyhedron(&p, &[vec![0, 2, 1], vec![0, 1, 3], vec![1, 2, 3], vec![0, 3, 2]]));
+        }
+        prop_assert_eq!(imbalance(&t), 0);
+        let m = mesh(t.clone());
+        let mixed: Vec<Tri> = order.iter().filter_map(|&i| t.get(i)).copied().collect();
+        if stacked(&t) {
+            return Ok(());
+        }
+        // Which of two shells that cut each other lies in the other has no answer, so bodies are
+        // not compared: shells are.
+        let shells = |m: &Mesh| {
+            let of = |f: fn(&Body) -> usize| m.bodies().iter().map(f).sum::<usize>();
+            (of(Body::shell_count), of(|b| b.triangles), m.bodies().iter().all(|b| b.closed))
+        };
+        prop_assert_eq!(shells(&m), shells(&mesh(mixed)));
+        prop_assert!(m.bodies().iter().all(|b| b.closed));
     }
 
     /// Closed surfaces with facets taken out or flipped, where no edge is busy: shells are what
@@ -540,6 +584,65 @@ proptest! {
         let open: u64 = m.bodies().iter().map(|b| m.solid(b, None).err().map_or(0, |r| r.open_edges)).sum();
         prop_assert_eq!(open, imbalance(&t));
     }
+}
+
+/// Whether two facets stand in one place: which of them is kept is the first of the file.
+fn stacked(t: &[Tri]) -> bool {
+    let mut keys: Vec<_> = t
+        .iter()
+        .map(|f| {
+            let mut k = f.map(key);
+            k.sort_unstable();
+            k
+        })
+        .filter(|k| k[0] != k[1] && k[1] != k[2])
+        .collect();
+    let all = keys.len();
+    keys.sort_unstable();
+    keys.dedup();
+    keys.len() < all
+}
+
+fn open_edges(mesh: &Mesh, body: &Body) -> u64 {
+    let refusal = mesh.solid(body, Some(NestedRule::Sum)).err();
+    refusal.map_or(0, |r| r.open_edges)
+}
+
+/// What is found, without order: of each body its facets, shells, voids, open edges, whether it
+/// was turned, and 6·V where it has one (a whole number here); and all findings.
+type Told = (
+    Vec<(usize, usize, usize, u64, bool, Option<i64>)>,
+    Vec<(FindingKind, Severity, u64)>,
+);
+
+fn told(mesh: &Mesh) -> Told {
+    let mut bodies: Vec<_> = mesh
+        .bodies()
+        .iter()
+        .map(|b| {
+            let v = mesh.solid(b, Some(NestedRule::Sum)).ok();
+            let v = v.map(|s| (s.moments.zeroth * 6.0).round() as i64);
+            (
+                b.triangles,
+                b.shell_count(),
+                b.void_count(),
+                open_edges(mesh, b),
+                b.turned,
+                v,
+            )
+        })
+        .collect();
+    bodies.sort_unstable();
+    // Where boundaries meet at a vertex they can be strung together in more than one way.
+    let strung = [FindingKind::Hole, FindingKind::WindingConflict];
+    let found = findings(mesh).into_iter().map(|f| {
+        if strung.contains(&f.0) {
+            (f.0, f.1, 0)
+        } else {
+            f
+        }
+    });
+    (bodies, found.collect())
 }
 
 /// A corner, so that it can be a key.

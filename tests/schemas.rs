@@ -115,7 +115,11 @@ fn meshes_answer_as_the_schemas_say() {
     many[0] = "weigh";
     hold(&many);
     hold(&["check", "--json", "--deep", "fixtures"]);
-    hold(&["weigh", "--json", "demo-data/rover/frame.obj#frame"]);
+    hold(&[
+        "weigh",
+        "--json",
+        "demo-data/rover/frame.obj#frame rail left",
+    ]);
     for name in ["check", "weigh", "error"] {
         assert!(answered.get(name).is_some_and(|n| *n > 3), "{answered:?}");
     }

@@ -41,7 +41,7 @@ fn near(v: &Value, want: f64, tolerance: f64) {
     );
 }
 
-/// 1. Tonon's tetrahedron (numbers as quoted by public test suites of the 2004 paper, recomputed
+/// Check 1: Tonon's tetrahedron (numbers as quoted by public test suites of the 2004 paper, recomputed
 /// in exact rationals) moved by 1e6 on each axis. The coordinates are rounded to 6e-11 there, over
 /// a surface of 2400: the printed digits stand to 1e-7. A naive sum gives 1842.684.
 #[test]
@@ -53,7 +53,7 @@ fn check_1_a_body_far_from_the_origin_keeps_its_volume() {
     }
 }
 
-/// 2. The signs of its tensor (elements, −∫) and the principal moments that tell them from the
+/// Check 2: The signs of its tensor (elements, −∫) and the principal moments that tell them from the
 /// flipped and the swapped ones. Eight decimals are known; 3e-8 is 1e-13 of the norm.
 #[test]
 fn check_2_signs_of_the_tensor_and_principal_moments() {
@@ -86,7 +86,7 @@ fn check_2_signs_of_the_tensor_and_principal_moments() {
     assert!((det - 1.0).abs() < 1e-14);
 }
 
-/// 3. The right-triangle prism with legs 3 (x) and 4 (y) and height 5: Ixy +10 as the tensor's own
+/// Check 3: The right-triangle prism with legs 3 (x) and 4 (y) and height 5: Ixy +10 as the tensor's own
 /// element (exact in rationals). The corners are whole numbers and the terms a few hundred.
 #[test]
 fn check_3_the_prism_has_a_positive_element() {
@@ -101,7 +101,7 @@ fn check_3_the_prism_has_a_positive_element() {
     }
 }
 
-/// 4. Prisms on regular polygons against the polygon's own closed form at 1e-13, not the circle's.
+/// Check 4: Prisms on regular polygons against the polygon's own closed form at 1e-13, not the circle's.
 /// The corners in the files are doubles written to their last digit.
 #[test]
 fn check_4_a_polygon_prism_has_the_polygons_volume() {
@@ -123,7 +123,7 @@ fn check_4_a_polygon_prism_has_the_polygons_volume() {
     }
 }
 
-/// 9. A density other than 1 with products of inertia about the centre: a published code once got
+/// Check 9: A density other than 1 with products of inertia about the centre: a published code once got
 /// each of them wrong, as its own revision history records (Mirtich 1996).
 #[test]
 fn check_9_density_scales_products_about_the_centre() {
