@@ -305,8 +305,10 @@ fn terms<P: Product>(x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> Terms {
                 + (c[i][l] * c[j][l] + s[i][l] * s[j][l]))
         })
     };
-    let absolute = lanes(|l| (d[l] - (m[0] * n[0][l] + m[1] * n[1][l] + m[2] * n[2][l])).abs());
-    let area = lanes(|l| (n[0][l] * n[0][l] + n[1][l] * n[1][l] + n[2][l] * n[2][l]).sqrt());
+    // The area vector rounded once: of a long thin facet the first part alone is off by far more.
+    let w: [Lane; 3] = std::array::from_fn(|i| lanes(|l| n[i][l] + nl[i][l]));
+    let absolute = lanes(|l| (d[l] - (m[0] * w[0][l] + m[1] * w[1][l] + m[2] * w[2][l])).abs());
+    let area = lanes(|l| (w[0][l] * w[0][l] + w[1][l] * w[1][l] + w[2][l] * w[2][l]).sqrt());
     Terms {
         sums: [
             d,
