@@ -211,6 +211,26 @@ fn a_solid_in_a_solid_has_three_readings() {
         .map(|b| m.solid(b, Some(NestedRule::Void)).unwrap().moments.zeroth)
         .sum();
     assert_eq!(sum, 1000.0 - 216.0 + 8.0);
+    // Where the overlap counts once, the innermost adds nothing to the whole.
+    assert_eq!(
+        m.bodies()
+            .iter()
+            .map(|b| b.is_in_nested())
+            .collect::<Vec<_>>(),
+        [false, true]
+    );
+    // The hollow of a nested solid is taken from it, and is no body that is inside out.
+    let m = mesh(join(&[
+        cube(0.0, 10.0),
+        cube(2.0, 8.0),
+        reversed(&cube(4.0, 6.0)),
+    ]));
+    let [body] = m.bodies() else { panic!() };
+    let by = |rule| m.solid(body, Some(rule)).unwrap().moments.zeroth;
+    assert!(!body.turned);
+    assert_eq!(by(NestedRule::Sum), 1000.0 + 216.0 - 8.0);
+    assert_eq!(by(NestedRule::Union), 1000.0);
+    assert_eq!(by(NestedRule::Void), 1000.0 - 216.0 + 8.0);
 }
 
 /// Vertices of the void that lie on the outer surface decide nothing; another point does.

@@ -272,7 +272,8 @@ fn weighed(
     }
 }
 
-/// All bodies together: their moments added about the first one's point, in file order.
+/// All bodies together: their moments added about the first one's point, in file order. Where
+/// nested solids count once, a body inside one of them adds nothing.
 fn whole(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
@@ -284,6 +285,9 @@ fn whole(
     let mut total: Option<Moments> = None;
     let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
     for (_, body) in bodies {
+        if rule == Some(NestedRule::Union) && body.is_in_nested() {
+            continue;
+        }
         let Ok(solid) = mesh.solid(body, rule) else {
             continue;
         };

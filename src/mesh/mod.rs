@@ -3,6 +3,7 @@
 mod bodies;
 mod buckets;
 mod edges;
+mod families;
 mod loops;
 mod nesting;
 mod shells;
@@ -13,8 +14,8 @@ mod wedge;
 mod weld;
 mod words;
 
-pub(crate) use bodies::Part;
 pub use bodies::{Body, Mesh, NestedRule, Refusal};
+pub(crate) use families::Part;
 pub(crate) use shells::Shell;
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};

@@ -115,21 +115,44 @@ fn inside_by_other_points(f: &impl Corners, a: &Shell, b: &Shell) -> bool {
     const FACETS: usize = 64;
     let (of_a, of_b) = (a.members.select(), b.members.select());
     let of_b = |i: usize| f.triangle(of_b.get(i));
-    let spread = |k: usize, most: usize| (k * a.count / most.min(a.count)).min(a.count - 1);
-    for k in 0..VERTICES.min(a.count) {
-        for p in f.triangle(of_a.get(spread(k, VERTICES))) {
+    // In the order of coordinates, so that the file's order has no say.
+    let mut facets: Vec<[Point; 3]> = (0..a.count)
+        .map(|i| {
+            let mut t = f.triangle(of_a.get(i));
+            t.sort_by(compare);
+            t
+        })
+        .collect();
+    facets.sort_by(|s, t| {
+        compare(&s[2], &t[2])
+            .then(compare(&s[1], &t[1]))
+            .then(compare(&s[0], &t[0]))
+    });
+    let spread = |most: usize| {
+        let most = most.min(facets.len());
+        (0..most).map(move |k| k * a.count / most)
+    };
+    for k in spread(VERTICES) {
+        for p in facets[k] {
             if let Some(w) = winding((0..b.count).map(|i| ray_crossing(&p, &of_b(i)))) {
                 return w != 0;
             }
         }
     }
-    for k in 0..FACETS.min(a.count) {
-        let p = RationalPoint::middle(&f.triangle(of_a.get(spread(k, FACETS))));
+    for k in spread(FACETS) {
+        let p = RationalPoint::middle(&facets[k]);
         if let Some(w) = winding((0..b.count).map(|i| p.ray_crossing(&of_b(i)))) {
             return w != 0;
         }
     }
     false
+}
+
+fn compare(p: &Point, q: &Point) -> std::cmp::Ordering {
+    (0..3)
+        .map(|k| p[k].total_cmp(&q[k]))
+        .find(|o| o.is_ne())
+        .unwrap_or(std::cmp::Ordering::Equal)
 }
 
 /// Points sorted into square cells of the (y, z) plane.
