@@ -12,7 +12,7 @@ use crate::moments::Moments;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile};
 use crate::report::{self, InputFact};
-use crate::soundness;
+use crate::soundness::{self, Overlap};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -180,7 +180,7 @@ fn answer(
     let metres = m.unit.metres();
     let about = about_point(args.about.as_deref(), m.unit)?;
     let rule = args.nested.map(NestedRule::from);
-    let mut audit = soundness::audit(&m.mesh, metres, 3);
+    let mut audit = soundness::audit(&m.mesh, metres, 3, Overlap::Skipped);
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<WeighedBody> = chosen
         .iter()

@@ -118,7 +118,8 @@ struct Passage {
 impl Passage {
     /// From the sides of its corners, not all zero; `None` where it meets the plane in a point.
     fn of(s: &[i8; 3]) -> Option<Self> {
-        let lone = (0..3).find(|&k| s[k] != 0 && s[(k + 1) % 3] != s[k] && s[(k + 2) % 3] != s[k])?;
+        let lone =
+            (0..3).find(|&k| s[k] != 0 && s[(k + 1) % 3] != s[k] && s[(k + 2) % 3] != s[k])?;
         let (next, last) = (s[(lone + 1) % 3], s[(lone + 2) % 3]);
         Some(Self {
             lone,

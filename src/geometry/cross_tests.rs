@@ -147,10 +147,7 @@ fn agrees(t: &[Point; 3], u: &[Point; 3]) -> Result<(), TestCaseError> {
     };
     prop_assert_eq!(meeting(u, t), swapped);
     let shared = |a: &[Point; 3], b: &[Point; 3]| a.map(|p| b.contains(&p));
-    prop_assert_eq!(
-        meeting_sharing(t, u, shared(t, u), shared(u, t)),
-        want
-    );
+    prop_assert_eq!(meeting_sharing(t, u, shared(t, u), shared(u, t)), want);
     if want != Meeting::Apart {
         // The point lies in both boxes, to rounding.
         let p = meeting_point(t, u);

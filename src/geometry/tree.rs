@@ -416,10 +416,7 @@ fn morton_order(facets: &impl Corners, select: Select<'_>, n: usize) -> Vec<u32>
             let m = middle(i);
             // The cast saturates, also for NaN.
             let cell = [0, 1, 2].map(|k| spread(((m[k] - low[k]) * scale) as u64 & 0x1f_ffff));
-            (
-                cell[0] | cell[1] << 1 | cell[2] << 2,
-                select.get(i) as u32,
-            )
+            (cell[0] | cell[1] << 1 | cell[2] << 2, select.get(i) as u32)
         })
         .collect();
     keyed.par_sort_unstable();
@@ -452,11 +449,14 @@ mod tests {
 
     fn triangles() -> impl Strategy<Value = Vec<[Point; 3]>> {
         prop::collection::vec(
-            (prop::array::uniform3(-50i8..50), prop::array::uniform9(-6i8..=6)).prop_map(|(m, v)| {
-                [0, 3, 6].map(|k| {
-                    [0, 1, 2].map(|i| f64::from(m[i]) + f64::from(v[k + i]) * 0.7)
-                })
-            }),
+            (
+                prop::array::uniform3(-50i8..50),
+                prop::array::uniform9(-6i8..=6),
+            )
+                .prop_map(|(m, v)| {
+                    [0, 3, 6]
+                        .map(|k| [0, 1, 2].map(|i| f64::from(m[i]) + f64::from(v[k + i]) * 0.7))
+                }),
             0..300,
         )
     }

@@ -17,4 +17,5 @@ pub use bodies::{Body, Mesh, NestedRule, Refusal};
 pub(crate) use shells::Shell;
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};
+pub(crate) use wedge::strictly_inside;
 pub use weld::MOST_TRIANGLES;

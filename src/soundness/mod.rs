@@ -2,6 +2,8 @@
 
 mod audit;
 mod finding;
+mod overlap;
 
-pub use audit::{Audit, audit};
-pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED};
+pub use audit::{Audit, Overlap, audit};
+pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED, TESTED_WITH_OVERLAP};
+pub use overlap::{Cuts, OverlapFindings, cuts, self_overlap};
