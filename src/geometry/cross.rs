@@ -53,6 +53,9 @@ pub fn meeting_sharing(
     t_shared: [bool; 3],
     u_shared: [bool; 3],
 ) -> Meeting {
+    if seen_apart(t, u, t_shared, u_shared) {
+        return Meeting::Apart;
+    }
     let of_t = sides(u, t, t_shared);
     if one_side(&of_t) {
         return Meeting::Apart;
@@ -82,6 +85,117 @@ pub fn meeting_sharing(
         },
         (Some(e), Some(f)) => Meeting::EdgeOnEdge { edges: [e, f] },
     }
+}
+
+/// Whether neighbours across an edge do no more than that: `t` and `u` share two corners, and their
+/// third corners are `a` of `t` and `b` of `u`. False only where one is folded onto the other, or
+/// one has no area.
+pub fn unfolded(t: &[Point; 3], u: &[Point; 3], a: usize, b: usize) -> bool {
+    if quick_side(t, &u[b]).is_some() {
+        return true;
+    }
+    // Nearly in one plane: third corners on different sides of the edge settle it.
+    let (x, y) = widest(t);
+    let edge = (&t[(a + 1) % 3], &t[(a + 2) % 3]);
+    let mine = turn_2d(edge.0, edge.1, &t[a], x, y);
+    if mine != 0 && turn_2d(edge.0, edge.1, &u[b], x, y) == -mine {
+        return true;
+    }
+    plane_side(&t[0], &t[1], &t[2], &u[b]) != 0
+}
+
+/// Whether floating-point bounds or turns in a plane already show that the triangles share no
+/// length and no area. Triangles that lie nearly in one plane would else ask for exact arithmetic
+/// at every pair of neighbours.
+#[inline(always)]
+fn seen_apart(t: &[Point; 3], u: &[Point; 3], t_shared: [bool; 3], u_shared: [bool; 3]) -> bool {
+    let quick = |plane: &[Point; 3], of: &[Point; 3], known_zero: [bool; 3]| {
+        let (mut front, mut behind, mut zero) = (0, 0, 0);
+        for k in 0..3 {
+            match known_zero[k] {
+                true => zero += 1,
+                false => match quick_side(plane, &of[k]) {
+                    Some(1) => front += 1,
+                    Some(_) => behind += 1,
+                    None => return false,
+                },
+            }
+        }
+        zero <= 1 && (front == 0 || behind == 0)
+    };
+    quick(u, t, t_shared) || quick(t, u, u_shared) || parted_in_shadow(t, u)
+}
+
+/// The side of a plane, where rounding leaves no doubt of it and it is not zero (Shewchuk's first
+/// filter).
+#[inline(always)]
+fn quick_side(plane: &[Point; 3], p: &Point) -> Option<i8> {
+    // (7 + 56 ε) ε with ε = 2⁻⁵³, and room for what underflows.
+    const BOUND: f64 = 7.771_561_172_376_103e-16;
+    let d = [0, 1, 2].map(|i| [0, 1, 2].map(|k| plane[i][k] - p[k]));
+    let pairs = |i: usize, j: usize| (d[i][0] * d[j][1], d[j][0] * d[i][1]);
+    let (ab, bc, ca) = (pairs(0, 1), pairs(1, 2), pairs(2, 0));
+    let det = d[0][2] * (bc.0 - bc.1) + d[1][2] * (ca.0 - ca.1) + d[2][2] * (ab.0 - ab.1);
+    let size = d[0][2].abs() * (bc.0.abs() + bc.1.abs())
+        + d[1][2].abs() * (ca.0.abs() + ca.1.abs())
+        + d[2][2].abs() * (ab.0.abs() + ab.1.abs());
+    // det is (a−p)·((b−p)×(c−p)): positive where p lies behind.
+    (det.abs() > BOUND * size + f64::MIN_POSITIVE).then_some(if det > 0.0 { -1 } else { 1 })
+}
+
+/// The two axes of the coordinate plane in which the triangle is widest.
+#[inline(always)]
+fn widest(t: &[Point; 3]) -> (usize, usize) {
+    let e = [1, 2].map(|i| [0, 1, 2].map(|k| t[i][k] - t[0][k]));
+    let n = [(1, 2), (2, 0), (0, 1)].map(|(i, j)| (e[0][i] * e[1][j] - e[0][j] * e[1][i]).abs());
+    if n[0] >= n[1] && n[0] >= n[2] {
+        (1, 2)
+    } else if n[1] >= n[2] {
+        (2, 0)
+    } else {
+        (0, 1)
+    }
+}
+
+/// Whether, seen along an axis, an edge of one parts them: they then share at most what lies on
+/// the plane of that edge and the axis, which is a corner, or edges that do not overlap.
+fn parted_in_shadow(t: &[Point; 3], u: &[Point; 3]) -> bool {
+    let (x, y) = widest(t);
+    parted_by_edge(t, u, x, y) || parted_by_edge(u, t, x, y)
+}
+
+fn parted_by_edge(t: &[Point; 3], u: &[Point; 3], x: usize, y: usize) -> bool {
+    let s = turn_2d(&t[0], &t[1], &t[2], x, y);
+    s != 0
+        && (0..3).any(|k| {
+            let (a, b) = (&t[k], &t[(k + 1) % 3]);
+            let mut on = [a; 2];
+            let mut count = 0;
+            for p in u {
+                let turn = if p == a || p == b {
+                    0
+                } else {
+                    turn_2d(a, b, p, x, y)
+                };
+                if turn == s {
+                    return false;
+                }
+                if turn == 0 {
+                    if count == 2 {
+                        return false;
+                    }
+                    on[count] = p;
+                    count += 1;
+                }
+            }
+            // Two corners on the line: apart where their stretch of it lies beyond the edge.
+            let beyond = |axis: usize| {
+                let (p, q) = (on[0][axis], on[1][axis]);
+                let (low, high) = (a[axis].min(b[axis]), a[axis].max(b[axis]));
+                low != high && (p.max(q) <= low || p.min(q) >= high)
+            };
+            count < 2 || beyond(x) || beyond(y)
+        })
 }
 
 /// Sides of the corners of `of` against the plane of `plane`.
@@ -235,7 +349,15 @@ pub fn meeting_point(t: &[Point; 3], u: &[Point; 3]) -> Point {
         shape = kept;
     }
     let share = 1.0 / shape.len() as f64;
-    [0, 1, 2].map(|c| shape.iter().map(|p| p[c] * share).sum())
+    let mean = [0, 1, 2].map(|c| shape.iter().map(|p| p[c] * share).sum::<f64>());
+    // Planes that are nearly one leave the point loose along them: it is in both boxes for certain.
+    let end =
+        |t: &[Point; 3], c: usize, pick: fn(f64, f64) -> f64| pick(pick(t[0][c], t[1][c]), t[2][c]);
+    [0, 1, 2].map(|c| {
+        let low = end(t, c, f64::min).max(end(u, c, f64::min));
+        let high = end(t, c, f64::max).min(end(u, c, f64::max));
+        mean[c].max(low).min(high)
+    })
 }
 
 #[cfg(test)]

@@ -148,6 +148,14 @@ fn agrees(t: &[Point; 3], u: &[Point; 3]) -> Result<(), TestCaseError> {
     prop_assert_eq!(meeting(u, t), swapped);
     let shared = |a: &[Point; 3], b: &[Point; 3]| a.map(|p| b.contains(&p));
     prop_assert_eq!(meeting_sharing(t, u, shared(t, u), shared(u, t)), want);
+    let (p, q) = (shared(t, u), shared(u, t));
+    let third = |s: [bool; 3]| (0..3).find(|&k| !s[k] && s[(k + 1) % 3] && s[(k + 2) % 3]);
+    if let (Some(a), Some(b)) = (third(p), third(q)) {
+        let folded = matches!(want, Meeting::Coplanar { .. });
+        let flat = is_flat(t) || is_flat(u);
+        prop_assert!(flat || unfolded(t, u, a, b) || folded || want == Meeting::Apart);
+        prop_assert!(!(folded && unfolded(t, u, a, b)));
+    }
     if want != Meeting::Apart {
         // The point lies in both boxes, to rounding.
         let p = meeting_point(t, u);
@@ -179,6 +187,18 @@ proptest! {
 
     #[test]
     fn agrees_with_exact_clipping_in_one_plane(t in flat_small(), u in flat_small()) {
+        agrees(&t, &u)?;
+    }
+
+    #[test]
+    fn nearly_flat_pairs_agree_with_exact_clipping(
+        t in flat_small(), u in flat_small(), at in 0usize..18, by in -2i64..=2
+    ) {
+        // One coordinate off by an ulp or two.
+        let (mut t, mut u) = (t, u);
+        let (corner, k) = (at / 3 % 3, at % 3);
+        let x = if at < 9 { &mut t[corner][k] } else { &mut u[corner][k] };
+        *x = f64::from_bits((x.to_bits() as i64 + by).max(0) as u64);
         agrees(&t, &u)?;
     }
 

@@ -7,7 +7,7 @@ mod facets;
 mod predicates;
 mod tree;
 
-pub use cross::{Meeting, meeting, meeting_point, meeting_sharing};
+pub use cross::{Meeting, meeting, meeting_point, meeting_sharing, unfolded};
 pub use exact::{RationalPoint, exact_volume_sign};
 pub use facets::{Corners, IndexedFacets, LooseFacets, RecordFacets, Select};
 pub use predicates::{Point, Position, is_flat, plane_side, ray_crossing, turn_2d};

@@ -16,7 +16,7 @@ use std::collections::{BTreeMap, BinaryHeap, HashMap};
 
 use super::finding::{Finding, FindingKind, Place, Severity};
 use crate::geometry::{
-    BoxTree, Corners, Meeting, Point, Select, meeting, meeting_point, meeting_sharing, plane_side,
+    BoxTree, Corners, Meeting, Point, Select, meeting, meeting_point, meeting_sharing, unfolded,
 };
 use crate::mesh::{Mesh, Part, each, strictly_inside};
 
@@ -303,7 +303,7 @@ fn judged(
     let met = match shared {
         0 => meeting(p, q),
         // Neighbours across an edge overlap only where one is folded onto the other.
-        2 if one_shell && folds_not(p, q, d_shared) => return Judged::Free,
+        2 if one_shell && goes_on(p, q, c_shared, d_shared) => return Judged::Free,
         3 if a.name == b.name => return Judged::Free,
         _ => meeting_sharing(p, q, c_shared, d_shared),
     };
@@ -331,13 +331,14 @@ fn judged(
     }
 }
 
-/// Whether the third corner lies off the plane: then nothing beyond the edge is shared.
+/// Whether neighbours across an edge share nothing but the edge.
 #[inline(always)]
-fn folds_not(p: &[Point; 3], q: &[Point; 3], q_shared: [bool; 3]) -> bool {
-    q_shared
-        .iter()
-        .position(|s| !s)
-        .is_some_and(|k| plane_side(&p[0], &p[1], &p[2], &q[k]) != 0)
+fn goes_on(p: &[Point; 3], q: &[Point; 3], p_shared: [bool; 3], q_shared: [bool; 3]) -> bool {
+    let third = |shared: [bool; 3]| shared.iter().position(|s| !s);
+    match (third(p_shared), third(q_shared)) {
+        (Some(a), Some(b)) => unfolded(p, q, a, b),
+        _ => false,
+    }
 }
 
 /// Where nothing of the other surface may be: behind a facet, in its material; but the surfaces
