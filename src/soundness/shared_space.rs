@@ -10,7 +10,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use rayon::prelude::*;
 
-use super::columns::{Lattice, Piece, integrate, mean, three_errors};
+use super::columns::{Lattice, Piece, integrate, mean};
 use crate::geometry::{
     BoxTree, LooseFacets, Meeting, Point, Position, RationalPoint, Select, meeting, ray_crossing,
 };
@@ -29,7 +29,8 @@ pub struct SharedSpace {
     pub b: usize,
     /// Moments of the shared volume.
     pub moments: Moments,
-    /// Three standard errors of the volume; zero where it is exact to rounding.
+    /// How far off the volume may be: three standard errors and what rays may have missed; zero
+    /// where it is exact to rounding.
     pub volume_error: f64,
 }
 
@@ -96,7 +97,11 @@ fn pairs_of_boxes(boxes: &[[Point; 2]]) -> Vec<(usize, usize)> {
         .max_by(|&i, &j| spread(i).total_cmp(&spread(j)))
         .unwrap_or(0);
     let mut order: Vec<usize> = (0..boxes.len()).collect();
-    order.sort_by(|&i, &j| boxes[i][0][axis].total_cmp(&boxes[j][0][axis]).then(i.cmp(&j)));
+    order.sort_by(|&i, &j| {
+        boxes[i][0][axis]
+            .total_cmp(&boxes[j][0][axis])
+            .then(i.cmp(&j))
+    });
     let mut pairs = Vec::new();
     for (k, &i) in order.iter().enumerate() {
         for &j in order[k + 1..]
@@ -251,8 +256,8 @@ fn shells(facets: &[[Point; 3]]) -> Vec<Vec<u32>> {
     out
 }
 
-/// Moments of the space inside both closed surfaces, within `region`, and three standard errors of
-/// its volume: refined until that is below `wanted`, or the finest lattice is reached.
+/// Moments of the space inside both closed surfaces, within `region`, and how far off its
+/// volume may be: refined until that is below `wanted`, or the finest lattice is reached.
 pub fn common_space(
     a: &[[Point; 3]],
     b: &[[Point; 3]],
@@ -274,12 +279,10 @@ pub fn common_space(
             side,
         };
         let inside = |w: [i32; 2]| f64::from(u8::from(w[0] > 0 && w[1] > 0));
-        let replicates = integrate(&pieces, lattice, &inside);
-        let error = three_errors(&replicates, |m| {
-            nalgebra::Vector3::new(m.zeroth, 0.0, 0.0)
-        });
+        let found = integrate(&pieces, lattice, &inside);
+        let error = found.volume_error();
         if error <= wanted || side >= FINEST {
-            return (mean(&replicates), error);
+            return (mean(&found.replicates), error);
         }
         side *= 2;
     }
