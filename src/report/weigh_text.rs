@@ -99,10 +99,27 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     {
         out.push_str(&in_full("all bodies together", whole, unit, look));
     }
-    out.push_str(
-        "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
-    );
+    if let Some(e) = &file.whole_estimate {
+        out.push_str(&estimated("all bodies together", e));
+    }
+    out.push_str(match file.overlap {
+        "untested" => "\nself-overlap: not tested; surfaces that cut each other would count some space twice (check tests it, --filled counts it once)\n",
+        "none" => "\nself-overlap: none\n",
+        _ => "\nself-overlap: found; each region is counted once\n",
+    });
     out
+}
+
+/// How far off an estimate may be.
+fn estimated(id: &str, e: &crate::report::weigh::Estimate) -> String {
+    format!(
+        "{}: by {}, volume ± {} cm3, centre ± {} mm, if {}\n",
+        crate::text::shown(id),
+        e.method,
+        significant(e.volume_bound_m3 * 1e6, 2),
+        significant(e.centre_bound_m * 1e3, 2),
+        e.condition
+    )
 }
 
 fn refusal(b: &WeighedBody, look: Look) -> String {
@@ -143,6 +160,9 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
             kind_word(f.kind, f.count),
             crate::text::shown(&f.advice)
         ));
+    }
+    if let Some(e) = &b.estimate {
+        out.push_str(&estimated(&b.id, e));
     }
     if let Some(n) = &b.nested {
         out.push_str(&format!(

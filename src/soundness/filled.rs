@@ -53,28 +53,47 @@ pub fn filled(facets: &[[Point; 3]], tolerance: f64) -> Filled {
     fill(&[piece], raw, bounds, tolerance)
 }
 
-/// Fills a body: solids nested in it count once, voids are taken out.
+/// Fills bodies of a mesh together: solids nested in them count once, voids are taken out, and
+/// what several of them occupy counts once.
 ///
 /// # Errors
-/// The refusal of [`Mesh::solid`] with nested solids allowed: a body that is not closed has no
-/// winding number.
-pub fn filled_body(mesh: &Mesh, body: &Body, tolerance: f64) -> Result<Filled, Refusal> {
-    let raw = mesh.solid(body, Some(NestedRule::Sum))?.moments;
+/// The first refusal of [`Mesh::solid`] with nested solids allowed: a body that is not closed has
+/// no winding number.
+pub fn filled_bodies(mesh: &Mesh, bodies: &[&Body], tolerance: f64) -> Result<Filled, Refusal> {
+    let mut raw: Option<Moments> = None;
+    let mut bounds = [[f64::INFINITY; 3], [f64::NEG_INFINITY; 3]];
+    for body in bodies {
+        let m = mesh.solid(body, Some(NestedRule::Sum))?.moments;
+        raw = Some(raw.map_or(m, |sum| sum.plus(&m)));
+        for k in 0..3 {
+            bounds[0][k] = bounds[0][k].min(body.bounds[0][k]);
+            bounds[1][k] = bounds[1][k].max(body.bounds[1][k]);
+        }
+    }
+    let raw = raw.unwrap_or_else(|| Moments::zero(Vector3::zeros()));
     Ok(each!(&mesh.soup.triangles, f => {
-        let facets: &dyn Corners = f;
-        let pieces: Vec<Piece<'_>> = body
-            .roles()
+        let pieces: Vec<Piece<'_>> = bodies
             .iter()
-            .filter(|r| r.part != Part::Stray)
-            .map(|r| Piece {
-                facets,
-                select: mesh.found().shells[r.shell].members.select(),
-                weight: if r.turned { -1 } else { 1 },
-                group: 0,
-            })
+            .flat_map(|b| pieces_of(mesh, b, f, 0))
             .collect();
-        fill(&pieces, raw, body.bounds, tolerance)
+        fill(&pieces, raw, bounds, tolerance)
     }))
+}
+
+/// The closed shells of a body.
+pub(super) fn pieces_of<'a>(
+    mesh: &'a Mesh,
+    body: &'a Body,
+    facets: &'a dyn Corners,
+    group: usize,
+) -> impl Iterator<Item = Piece<'a>> {
+    let roles = body.roles().iter().filter(|r| r.part != Part::Stray);
+    roles.map(move |r| Piece {
+        facets,
+        select: mesh.found().shells[r.shell].members.select(),
+        weight: if r.turned { -1 } else { 1 },
+        group,
+    })
 }
 
 fn fill(pieces: &[Piece<'_>], raw: Moments, bounds: [Point; 2], tolerance: f64) -> Filled {

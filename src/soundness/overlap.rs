@@ -14,14 +14,20 @@
 
 use std::collections::{BTreeMap, BinaryHeap, HashMap};
 
-use super::finding::{Finding, FindingKind, Place, Severity};
+use super::filled::filled_bodies;
+use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
+use super::shared_space::common_space_of_bodies;
 use crate::geometry::{
     BoxTree, Corners, Meeting, Point, Select, meeting, meeting_point, meeting_sharing, unfolded,
 };
-use crate::mesh::{Mesh, Part, each, strictly_inside};
+use crate::mesh::{Body, Mesh, NestedRule, Part, each, strictly_inside};
 
 /// Pairs of bodies that get a finding of their own; the rest is counted in one more.
 const MOST_PAIRS: usize = 100;
+/// Of those, how many have their shared volume estimated.
+const MOST_VOLUMES: usize = 20;
+/// The error that an estimated volume is refined to, as a part of the body's volume.
+const TOLERANCE: f64 = 1e-4;
 
 /// What overlaps: how often, and where first.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -51,24 +57,43 @@ pub fn cuts(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
 /// Tests every body against itself and against the others of the file.
 ///
 /// `metres` is the length of the file's unit; `places` the most places that a finding lists. The
-/// effect on the volume is not known from the test alone.
+/// effect on the volume is what counting each region once would change, estimated (see
+/// [`filled_bodies`] and [`shared_spaces`](super::shared_spaces)), for closed bodies; with solids
+/// nested in the body it is not given, since their finding states it.
 pub fn self_overlap(mesh: &Mesh, metres: f64, places: usize) -> OverlapFindings {
     let mut out = OverlapFindings {
         file: Vec::new(),
         bodies: vec![Vec::new(); mesh.bodies().len()],
     };
     let mut rest = (0u64, 0u64);
+    let cubed = metres.powi(3);
     for ((a, b), cuts) in cuts(mesh, places) {
+        let (x, y) = (&mesh.bodies()[a], &mesh.bodies()[b]);
         if a == b {
-            let advice = "the surface passes through itself, and the space inside both parts counts twice: unite the parts in the model and export again";
-            out.bodies[a].push(finding(mesh, metres, &cuts, advice.to_owned()));
-        } else if out.file.len() < MOST_PAIRS {
-            let ids = [a, b].map(|i| &mesh.bodies()[i].id);
+            let once = once_counted(mesh, x);
+            let said = once.map_or(String::new(), |(_, v, error)| {
+                let (v, error) = (v * cubed, error * cubed);
+                format!(" (counted once the volume is {v:.6e} m3 ± {error:.1e} m3)")
+            });
             let advice = format!(
-                "\"{}\" and \"{}\" occupy the same space, which counts twice: part them, or cut one out of the other",
-                ids[0], ids[1]
+                "the surface passes through itself, and the space inside both parts counts twice{said}: unite the parts in the model and export again"
             );
-            out.file.push(finding(mesh, metres, &cuts, advice));
+            let effect = once.map(|o| o.0 * cubed);
+            out.bodies[a].push(finding(mesh, metres, &cuts, effect, advice));
+        } else if out.file.len() < MOST_PAIRS {
+            let shared = (out.file.len() < MOST_VOLUMES)
+                .then(|| twice_counted(mesh, x, y))
+                .flatten();
+            let said = shared.map_or(String::new(), |(v, error)| {
+                let (v, error) = (v * cubed, error * cubed);
+                format!(" of {v:.6e} m3 ± {error:.1e} m3")
+            });
+            let advice = format!(
+                "\"{}\" and \"{}\" occupy the same space{said}, which counts twice: part them, or cut one out of the other",
+                x.id, y.id
+            );
+            let effect = shared.map(|s| 0.0 - s.0 * cubed);
+            out.file.push(finding(mesh, metres, &cuts, effect, advice));
         } else {
             rest.0 += 1;
             rest.1 += cuts.count;
@@ -80,12 +105,32 @@ pub fn self_overlap(mesh: &Mesh, metres: f64, places: usize) -> OverlapFindings 
             pairs: Vec::new(),
         };
         let advice = format!("{} further pairs of bodies occupy the same space", rest.0);
-        out.file.push(finding(mesh, metres, &cuts, advice));
+        out.file.push(finding(mesh, metres, &cuts, None, advice));
     }
     out
 }
 
-fn finding(mesh: &Mesh, metres: f64, cuts: &Cuts, advice: String) -> Finding {
+/// What counting once changes a body's volume by, the volume then, and its error (file unit³).
+fn once_counted(mesh: &Mesh, body: &Body) -> Option<(f64, f64, f64)> {
+    let raw = mesh.solid(body, None).ok()?.moments.zeroth;
+    let once = filled_bodies(mesh, &[body], TOLERANCE).ok()?;
+    let volume = once.moments.zeroth;
+    Some((volume - raw, volume, once.volume_error))
+}
+
+/// The volume that two bodies share, and its error (file unit³).
+fn twice_counted(mesh: &Mesh, a: &Body, b: &Body) -> Option<(f64, f64)> {
+    let smaller = [a, b]
+        .map(|x| mesh.solid(x, Some(NestedRule::Sum)).ok())
+        .into_iter()
+        .try_fold(f64::INFINITY, |least, s| {
+            s.map(|s| least.min(s.moments.zeroth.abs()))
+        })?;
+    let (m, error) = common_space_of_bodies(mesh, a, b, TOLERANCE * smaller, 128)?;
+    Some((m.zeroth, error))
+}
+
+fn finding(mesh: &Mesh, metres: f64, cuts: &Cuts, effect: Option<f64>, advice: String) -> Finding {
     let places: Vec<Place> = each!(&mesh.soup.triangles, f => {
         cuts.pairs
             .iter()
@@ -105,8 +150,8 @@ fn finding(mesh: &Mesh, metres: f64, cuts: &Cuts, advice: String) -> Finding {
         count: cuts.count,
         places_shown: places.len(),
         places,
-        volume_effect_m3: None,
-        volume_effect_is: None,
+        volume_effect_m3: effect,
+        volume_effect_is: effect.map(|_| EffectIs::Estimate),
         advice,
     }
 }

@@ -11,9 +11,11 @@ use std::sync::atomic::{AtomicBool, Ordering};
 use rayon::prelude::*;
 
 use super::columns::{Lattice, Piece, integrate, mean};
+use super::filled::pieces_of;
 use crate::geometry::{
     BoxTree, LooseFacets, Meeting, Point, Position, RationalPoint, Select, meeting, ray_crossing,
 };
+use crate::mesh::{Body, Mesh, each};
 use crate::moments::{self, Moments};
 
 /// Coarsest and finest lattices, in points along a side.
@@ -271,7 +273,27 @@ pub fn common_space(
         weight: 1,
         group,
     };
-    let pieces = [piece(&fa, 0), piece(&fb, 1)];
+    refined(&[piece(&fa, 0), piece(&fb, 1)], region, wanted, FINEST)
+}
+
+/// Moments of what two bodies of a mesh both occupy, as [`common_space`]; zero where their boxes
+/// share nothing. Both must be closed.
+pub(super) fn common_space_of_bodies(
+    mesh: &Mesh,
+    a: &Body,
+    b: &Body,
+    wanted: f64,
+    finest: usize,
+) -> Option<(Moments, f64)> {
+    let region = common(&a.bounds, &b.bounds)?;
+    Some(each!(&mesh.soup.triangles, f => {
+        let of_a = pieces_of(mesh, a, f, 0);
+        let pieces: Vec<Piece<'_>> = of_a.chain(pieces_of(mesh, b, f, 1)).collect();
+        refined(&pieces, region, wanted, finest)
+    }))
+}
+
+fn refined(pieces: &[Piece<'_>], region: [Point; 2], wanted: f64, finest: usize) -> (Moments, f64) {
     let mut side = COARSEST;
     loop {
         let lattice = Lattice {
@@ -279,9 +301,9 @@ pub fn common_space(
             side,
         };
         let inside = |w: [i32; 2]| f64::from(u8::from(w[0] > 0 && w[1] > 0));
-        let found = integrate(&pieces, lattice, &inside);
+        let found = integrate(pieces, lattice, &inside);
         let error = found.volume_error();
-        if error <= wanted || side >= FINEST {
+        if error <= wanted || side >= finest {
             return (mean(&found.replicates), error);
         }
         side *= 2;
