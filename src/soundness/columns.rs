@@ -368,6 +368,19 @@ fn pierced(t: &[Point; 3], y: f64, z: f64) -> f64 {
     }
 }
 
+/// A lattice fine enough that an error, which falls as the square of the step, comes from `error`
+/// down to `wanted`: at least twice as fine as `side`, at most `finest`.
+pub(crate) fn finer(side: usize, error: f64, wanted: f64, finest: usize) -> usize {
+    let ratio = (error / wanted).sqrt();
+    let times = if ratio.is_finite() {
+        ratio.min(4096.0)
+    } else {
+        4096.0
+    };
+    let times = (times.ceil() as usize).next_power_of_two().max(2);
+    side.saturating_mul(times).min(finest)
+}
+
 /// Mean of the replicates.
 pub(crate) fn mean(replicates: &[Moments; REPLICATES]) -> Moments {
     let zero = Moments::zero(replicates[0].about);

@@ -8,7 +8,7 @@
 
 use nalgebra::Vector3;
 
-use super::columns::{Lattice, Piece, REPLICATES, integrate, mean, three_errors};
+use super::columns::{Lattice, Piece, REPLICATES, finer, integrate, mean, three_errors};
 use crate::geometry::{Corners, LooseFacets, Point, Select};
 use crate::mesh::{Body, Mesh, NestedRule, Part, Refusal, each};
 use crate::moments::{self, Moments};
@@ -128,6 +128,6 @@ fn fill(pieces: &[Piece<'_>], raw: Moments, bounds: [Point; 2], tolerance: f64) 
                 second_error: second_error + found.unseen * reach * reach,
             };
         }
-        side *= 2;
+        side = finer(side, volume_error, tolerance * moments.zeroth.abs(), FINEST);
     }
 }

@@ -10,7 +10,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use rayon::prelude::*;
 
-use super::columns::{Lattice, Piece, integrate, mean};
+use super::columns::{Lattice, Piece, finer, integrate, mean};
 use super::filled::pieces_of;
 use crate::geometry::{
     BoxTree, LooseFacets, Meeting, Point, Position, RationalPoint, Select, meeting, ray_crossing,
@@ -306,7 +306,7 @@ fn refined(pieces: &[Piece<'_>], region: [Point; 2], wanted: f64, finest: usize)
         if error <= wanted || side >= finest {
             return (mean(&found.replicates), error);
         }
-        side *= 2;
+        side = finer(side, error, wanted, finest);
     }
 }
 
