@@ -28,12 +28,11 @@ impl Aabb {
     };
 
     fn of(t: &[Point; 3]) -> Self {
-        let mut out = Self::EMPTY;
-        for k in 0..3 {
-            out.low[k] = down(t[0][k].min(t[1][k]).min(t[2][k]));
-            out.high[k] = up(t[0][k].max(t[1][k]).max(t[2][k]));
+        let [a, b, c] = t;
+        Self {
+            low: [0, 1, 2].map(|k| down(a[k].min(b[k]).min(c[k]))),
+            high: [0, 1, 2].map(|k| up(a[k].max(b[k]).max(c[k]))),
         }
-        out
     }
 
     fn joined(&self, o: &Self) -> Self {

@@ -65,10 +65,10 @@ pub fn filled_bodies(mesh: &Mesh, bodies: &[&Body], tolerance: f64) -> Result<Fi
     for body in bodies {
         let m = mesh.solid(body, Some(NestedRule::Sum))?.moments;
         raw = Some(raw.map_or(m, |sum| sum.plus(&m)));
-        for k in 0..3 {
-            bounds[0][k] = bounds[0][k].min(body.bounds[0][k]);
-            bounds[1][k] = bounds[1][k].max(body.bounds[1][k]);
-        }
+        bounds = [
+            [0, 1, 2].map(|k| bounds[0][k].min(body.bounds[0][k])),
+            [0, 1, 2].map(|k| bounds[1][k].max(body.bounds[1][k])),
+        ];
     }
     let raw = raw.unwrap_or_else(|| Moments::zero(Vector3::zeros()));
     Ok(each!(&mesh.soup.triangles, f => {

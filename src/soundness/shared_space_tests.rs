@@ -229,3 +229,46 @@ fn a_solid_wholly_inside_is_shared_exactly_and_one_in_a_hollow_is_not() {
         assert!(shared_spaces(&[&inner, &shell], 1e-4).is_empty());
     }
 }
+
+#[test]
+fn three_standard_errors_hold_nearly_always() {
+    // Bars of many proportions through a cube: the share of results within their own error.
+    let cube = block([0.0; 3], [1.0; 3]);
+    let (mut inside, mut worst) = (0, 0.0f64);
+    let all = 200;
+    for i in 0..all {
+        let part = |k: f64| (f64::from(i) * k).fract();
+        let low = [part(0.754_877) - 0.04, part(0.569_840) - 0.04, -0.5];
+        let size = [
+            0.05 + part(0.819_172),
+            0.05 + part(0.671_043),
+            0.6 + part(0.549_700),
+        ];
+        let high = [0, 1, 2].map(|k| low[k] + size[k]);
+        let exact = sides((low, high), ([0.0; 3], [1.0; 3]));
+        let common = common(&[low, high], &[[0.0; 3], [1.0; 3]]).unwrap();
+        // The spread alone, without the allowance for what rays may have missed.
+        let other = block(low, high);
+        let (fa, fb) = (LooseFacets(&other), LooseFacets(&cube));
+        let piece = |facets, group| Piece {
+            facets,
+            select: Select::All,
+            weight: 1,
+            group,
+        };
+        let lattice = Lattice {
+            bounds: common,
+            side: 32,
+        };
+        let found = integrate(&[piece(&fa, 0), piece(&fb, 1)], lattice, &|w| {
+            f64::from(u8::from(w[0] > 0 && w[1] > 0))
+        });
+        let ratio =
+            (mean(&found.replicates).zeroth - exact).abs() / (found.volume_error() - found.unseen);
+        inside += usize::from(ratio <= 1.0);
+        worst = worst.max(ratio);
+    }
+    println!("{inside} of {all} within the error; worst {worst:.2} times");
+    // Student's t of seven degrees: beyond three standard errors 2 times of 100.
+    assert!(inside >= 190 && worst < 3.0, "{inside} {worst}");
+}
