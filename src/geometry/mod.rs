@@ -1,10 +1,14 @@
 //! What mesh and moments both stand on: triangles by index, error-free arithmetic, exact signs.
 
+mod cross;
 pub mod eft;
 mod exact;
 mod facets;
 mod predicates;
+mod tree;
 
+pub use cross::{Meeting, meeting, meeting_point, meeting_sharing, unfolded};
 pub use exact::{RationalPoint, exact_volume_sign};
 pub use facets::{Corners, IndexedFacets, LooseFacets, RecordFacets, Select};
 pub use predicates::{Point, Position, is_flat, plane_side, ray_crossing, turn_2d};
+pub use tree::BoxTree;

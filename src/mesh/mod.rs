@@ -19,4 +19,5 @@ pub(crate) use families::Part;
 pub(crate) use shells::Shell;
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};
+pub(crate) use wedge::strictly_inside;
 pub use weld::MOST_TRIANGLES;

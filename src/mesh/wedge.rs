@@ -73,6 +73,21 @@ fn places(a: &Point, b: &Point) -> std::cmp::Ordering {
     axes.fold(std::cmp::Ordering::Equal, std::cmp::Ordering::then)
 }
 
+/// Whether the half-plane of `p` about low → high lies strictly inside the wedge that is swept by
+/// turning the half-plane of `from` ahead to that of `to`. A wedge of no angle, or of a whole
+/// turn, holds none.
+pub(crate) fn strictly_inside(
+    low: &Point,
+    high: &Point,
+    from: &Point,
+    to: &Point,
+    p: &Point,
+) -> bool {
+    half(low, high, from, p) != 0
+        && half(low, high, from, to) != 0
+        && compare_angle(low, high, from, p, to).is_lt()
+}
+
 /// Compares the angles of two apexes about low → high, each counted from the reference apex.
 fn compare_angle(low: &Point, high: &Point, r: &Point, a: &Point, b: &Point) -> std::cmp::Ordering {
     let (ha, hb) = (half(low, high, r, a), half(low, high, r, b));
@@ -157,6 +172,25 @@ mod tests {
                     (quarter(i), quarter(j)) == ([1.0, 0.0, 0.5], [0.0, 1.0, 0.5])
                 })
             );
+        }
+    }
+
+    #[test]
+    fn a_half_plane_inside_a_wedge_is_told() {
+        let (low, high) = ([0.0; 3], [0.0, 0.0, 1.0]);
+        let at = |q: usize| leaf(q, true).apex;
+        for (from, to, p, want) in [
+            (0, 2, 1, true),
+            (0, 2, 3, false),
+            (2, 0, 3, true),
+            (2, 0, 1, false),
+            (0, 3, 2, true),
+            (0, 1, 1, false),
+            (0, 1, 0, false),
+            (1, 1, 2, false),
+        ] {
+            let (from, to, p) = (at(from), at(to), at(p));
+            assert_eq!(strictly_inside(&low, &high, &from, &to, &p), want);
         }
     }
 

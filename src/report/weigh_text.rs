@@ -1,10 +1,10 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{Scale, significant, tensor};
+use super::digits::{self, DEFAULT_DIGITS, Scale, significant, tensor};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
-use super::weigh::{WeighBody, WeighedBody, WeighedFile};
+use super::weigh::{Estimate, WeighBody, WeighedBody, WeighedFile};
 use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
 use crate::masses::Figures;
@@ -86,7 +86,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
     if readable.len() <= IN_FULL {
         for b in &readable {
-            out.push_str(&in_full(&b.id, &b.figures, unit, look));
+            out.push_str(&in_full(&b.id, &b.figures, b.estimate.as_ref(), unit, look));
         }
     } else {
         out.push_str(&format!(
@@ -97,12 +97,35 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     if readable.len() > 1
         && let Some(whole) = &file.whole
     {
-        out.push_str(&in_full("all bodies together", &whole.figures, unit, look));
+        out.push_str(&in_full(
+            "all bodies together",
+            &whole.figures,
+            file.whole_estimate.as_ref(),
+            unit,
+            look,
+        ));
     }
-    out.push_str(
-        "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
-    );
+    if let Some(e) = &file.whole_estimate {
+        out.push_str(&estimated("all bodies together", e));
+    }
+    out.push_str(match file.overlap {
+        "untested" => "\nself-overlap: not tested; surfaces that cut each other would count some space twice (check tests it, --filled counts it once)\n",
+        "none" => "\nself-overlap: none\n",
+        _ => "\nself-overlap: found; each region is counted once\n",
+    });
     out
+}
+
+/// How far off an estimate may be.
+fn estimated(id: &str, e: &Estimate) -> String {
+    format!(
+        "{}: by {}, volume ± {} cm3, centre ± {} mm, if {}\n",
+        crate::text::shown(id),
+        e.method,
+        significant(e.volume_bound_m3 * 1e6, 2),
+        significant(e.centre_bound_m * 1e3, 2),
+        e.condition
+    )
 }
 
 fn refusal(b: &WeighedBody, look: Look) -> String {
@@ -144,6 +167,9 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
             crate::text::shown(&f.advice)
         ));
     }
+    if let Some(e) = &b.estimate {
+        out.push_str(&estimated(&b.id, e));
+    }
     if let Some(n) = &b.nested {
         out.push_str(&format!(
             "   sum {} cm3 · union {} cm3 · void {} cm3\n",
@@ -156,7 +182,14 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 }
 
 /// Centre, tensor, principal moments and axes of one thing.
-fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
+fn in_full(
+    title: &str,
+    f: &Figures,
+    estimate: Option<&Estimate>,
+    unit: LengthUnit,
+    look: Look,
+) -> String {
+    let shown = supported_digits(f, estimate);
     let mut out = format!(
         "\n{}\n",
         look.marked(&crate::text::shown(title), Mark::Heading)
@@ -174,7 +207,7 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
     };
     out.push_str(&format!(
         "{word}  {}   frame: the file's own axes and origin\n",
-        point(centre, unit)
+        estimated_point(centre, estimate, unit)
     ));
     let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
         Some(i) => (i, format!("kg {u}2"), k),
@@ -183,6 +216,7 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
     out.push_str(&matrix(
         &format!("inertia about the {word}, {name}; off-diagonals are the tensor's own, −∫xy"),
         &tensor_si.map(|r| r.map(|x| x * scale)),
+        shown,
     ));
     let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
     if let (Some(moments), Some(axes), Some(radii)) =
@@ -204,8 +238,8 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
             };
             t.row(vec![
                 Cell::text(&(i + 1).to_string()),
-                Cell::figure(significant(moments[i] * scale, 6), moments[i]),
-                Cell::figure(significant(radii[i] / unit.metres(), 6), radii[i]),
+                Cell::figure(significant(moments[i] * scale, shown), moments[i]),
+                Cell::figure(significant(radii[i] / unit.metres(), shown), radii[i]),
                 Cell::text(&axis),
             ]);
         }
@@ -223,14 +257,38 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         out.push_str(&matrix(
             &format!("inertia about {}, {name}", point(&about.point_m, unit)),
             &tensor_si.map(|r| r.map(|x| x * scale)),
+            shown,
         ));
     }
     out
 }
 
+/// Digits that an estimate's relative error supports; three times the volume's, since moments of
+/// a higher order weigh what is far off more.
+fn supported_digits(f: &Figures, estimate: Option<&Estimate>) -> u32 {
+    let relative = f
+        .volume_m3
+        .zip(estimate)
+        .map(|(v, e)| 3.0 * e.volume_bound_m3 / v.abs())
+        .filter(|r| r.is_finite() && *r > 0.0);
+    relative.map_or(DEFAULT_DIGITS, |r| {
+        // The cast saturates.
+        ((-r.log10()).floor() as u32 + 1).clamp(1, DEFAULT_DIGITS)
+    })
+}
+
+fn estimated_point(at_m: &[f64; 3], estimate: Option<&Estimate>, unit: LengthUnit) -> String {
+    let Some(e) = estimate else {
+        return point(at_m, unit);
+    };
+    let off = Some(e.centre_bound_m / unit.metres());
+    let p = at_m.map(|x| digits::figure(x / unit.metres(), off));
+    format!("({}, {}, {}) {}", p[0], p[1], p[2], unit.symbol())
+}
+
 /// A tensor as three aligned rows under its title.
-pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3]) -> String {
-    let (cells, exponent) = tensor(m, 6);
+pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3], shown: u32) -> String {
+    let (cells, exponent) = tensor(m, shown);
     let times = if exponent == 0 {
         String::new()
     } else {
@@ -269,11 +327,14 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
         } else {
             b.id.clone()
         };
-        table.row(cells(&name, &b.figures, unit, scale));
+        table.row(cells(&name, &b.figures, b.estimate.as_ref(), unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => table.total(cells("total", &whole.figures, unit, scale)),
+            Some(whole) => {
+                let estimate = file.whole_estimate.as_ref();
+                table.total(cells("total", &whole.figures, estimate, unit, scale));
+            }
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
@@ -282,19 +343,35 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     table
 }
 
-fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
-    let figure = |x: Option<f64>, k: f64| {
-        x.map_or_else(Cell::empty, |x| Cell::figure(significant(x * k, 6), x * k))
+fn cells(
+    name: &str,
+    f: &Figures,
+    estimate: Option<&Estimate>,
+    unit: LengthUnit,
+    scale: Scale,
+) -> Vec<Cell> {
+    // No more digits than an estimate's own bound supports.
+    let figure = |x: Option<f64>, k: f64, off: Option<f64>| {
+        x.map_or_else(Cell::empty, |x| {
+            Cell::figure(digits::figure(x * k, off.map(|o| o * k)), x * k)
+        })
     };
+    let volume_off = estimate.map(|e| e.volume_bound_m3);
+    let mass_off = volume_off.zip(f.density_kg_m3).map(|(v, d)| v * d);
+    let centre_off = estimate.map(|e| e.centre_bound_m);
     let mut row = vec![
         Cell::text(name),
-        figure(f.volume_m3, 1e6),
-        figure(f.area_m2, 1e4),
+        figure(f.volume_m3, 1e6, volume_off),
+        figure(f.area_m2, 1e4, None),
         f.mass_kg.map_or_else(Cell::empty, |m| {
-            Cell::figure(significant(scale.of(m), 6), scale.of(m))
+            let off = mass_off.map(|o| scale.of(o));
+            Cell::figure(digits::figure(scale.of(m), off), scale.of(m))
         }),
     ];
     match (&f.centroid_m, &f.bounds_m) {
+        (Some(c), _) if centre_off.is_some() => {
+            row.extend(c.map(|x| figure(Some(x), 1.0 / unit.metres(), centre_off)));
+        }
         (Some(c), Some(b)) => {
             let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
             row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
