@@ -4,6 +4,7 @@ mod check;
 mod inputs;
 mod materials;
 mod weigh;
+mod whole;
 
 use std::io::Write;
 use std::path::PathBuf;

@@ -3,7 +3,7 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
-use super::{Answer, Common, gather};
+use super::{Answer, Common, gather, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
@@ -31,6 +31,10 @@ pub struct WeighArgs {
     /// Give the inertia tensor about this point too (bare numbers in the mesh's unit)
     #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
     about: Option<String>,
+    /// Give totals alone, in one reading with little memory: proves that edges cancel, and does not
+    /// see doubled meshes, solids in solids or single shells inside out
+    #[arg(long, conflicts_with = "nested")]
+    whole: bool,
 }
 
 /// Choices of `--nested`.
@@ -62,7 +66,16 @@ pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
-    let mut answers = gather(expand(&args.meshes), |input| {
+    let inputs = expand(&args.meshes);
+    if args.whole {
+        whole::without_picks(&inputs)?;
+    }
+    let mut answers = gather(inputs, |input| {
+        if args.whole {
+            return whole::answer(input, &args.meshes, substance.as_ref(), |unit| {
+                about_point(args.about.as_deref(), unit)
+            });
+        }
         let (bytes, fact) = match open(input, args.meshes.hash) {
             Ok(opened) => opened,
             Err(e) => return (None, Err(e)),
@@ -76,14 +89,16 @@ pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     for one in &answers.each {
         match &one.result {
             Ok(file) => {
-                let all = !file.bodies.as_deref().unwrap_or_default().is_empty()
-                    && file.whole_missing.is_empty();
+                let all = match &file.bodies {
+                    Some(bodies) => !bodies.is_empty() && file.whole_missing.is_empty(),
+                    None => file.whole.is_some(),
+                };
                 exit = exit.max(u8::from(!all));
                 files.push(file.clone());
             }
             Err(e) => {
                 exit = 2;
-                files.push(unread(&one.path, e));
+                files.push(unread(&one.path, e, args.whole));
             }
         }
     }
@@ -154,7 +169,7 @@ fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>>
     Ok(Some([length(x)?, length(y)?, length(z)?]))
 }
 
-fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
+fn unread(path: &std::path::Path, error: &Error, whole: bool) -> WeighedFile {
     WeighedFile {
         path: path.to_string_lossy().into_owned(),
         format: None,
@@ -164,9 +179,11 @@ fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
         error: Some(error.clone()),
         findings: Vec::new(),
         overlap: "untested",
-        bodies: Some(Vec::new()),
+        bodies: (!whole).then(Vec::new),
         whole: None,
         whole_missing: Vec::new(),
+        proved: whole.then_some(None),
+        turned: None,
     }
 }
 
@@ -194,9 +211,9 @@ fn answer(
         .filter(|b| b.refused.is_some())
         .map(|b| b.id.clone())
         .collect();
-    let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
+    let total = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
         [one] => one.figures.clone(),
-        _ => whole(&m.mesh, &chosen, metres, rule, substance, about),
+        _ => together(&m.mesh, &chosen, metres, rule, substance, about),
     });
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
@@ -212,8 +229,10 @@ fn answer(
         },
         overlap: "untested",
         bodies: Some(bodies),
-        whole,
+        whole: total,
         whole_missing: missing,
+        proved: None,
+        turned: None,
     };
     Ok((file, m.warnings.clone(), fact.clone()))
 }
@@ -279,7 +298,7 @@ fn weighed(
 }
 
 /// All bodies together: their moments added about the first one's point, in file order.
-fn whole(
+fn together(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
     metres: f64,

@@ -21,19 +21,14 @@ use rayon::prelude::*;
 
 use super::Moments;
 use crate::geometry::eft::{Fused, Product, Split, Sum, two_diff, two_sum};
-use crate::geometry::{Corners, Select};
+use crate::geometry::{BLOCK, Block, Coordinate, Corners, LANES, Lane, Level, Select};
 
 /// Triangles in one chunk. Part of the definition of the result's bits: a different number would
 /// round differently in the last place.
 pub const CHUNK: usize = 4096;
 
-/// Triangles that are worked on side by side; also part of the definition of the bits.
-const LANES: usize = 8;
-
 /// Compensated sums of one chunk: volume, first (3), second (6: xx yy zz xy xz yz), area.
 const SUMS: usize = 11;
-
-type Lane = [f64; LANES];
 
 /// What one pass over the triangles of a solid yields, in the file's unit.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -74,6 +69,11 @@ impl ChunkSums {
             mine.join(*theirs);
         }
         self.absolute += next.absolute;
+    }
+
+    /// Surface area so far.
+    pub fn area(&self) -> f64 {
+        self.sums[SUMS - 1].value() / 2.0
     }
 
     /// The integrals, with `apex` the point that the sums were taken about.
@@ -129,31 +129,22 @@ pub fn chunk_sums<C: Corners>(
     apex: [f64; 3],
     middle: [f64; 3],
 ) -> ChunkSums {
-    #[cfg(target_arch = "x86_64")]
-    {
-        if std::arch::is_x86_feature_detected!("avx512f") {
-            // SAFETY: the processor has just been asked for the feature.
-            #[allow(unsafe_code)]
-            return unsafe { wide512(facets, select, range, apex, middle) };
-        }
-        if std::arch::is_x86_feature_detected!("avx2") && std::arch::is_x86_feature_detected!("fma")
-        {
-            // SAFETY: the processor has just been asked for both features.
-            #[allow(unsafe_code)]
-            return unsafe { wide256(facets, select, range, apex, middle) };
-        }
+    match Level::of_processor() {
+        // SAFETY: the processor has just been asked for the features.
+        #[cfg(target_arch = "x86_64")]
+        #[allow(unsafe_code)]
+        Level::Wide512 => unsafe { wide512(facets, select, range, apex, middle) },
+        // SAFETY: as above.
+        #[cfg(target_arch = "x86_64")]
+        #[allow(unsafe_code)]
+        Level::Wide256 => unsafe { wide256(facets, select, range, apex, middle) },
+        Level::Fused => kernel::<C, Fused>(facets, select, range, apex, middle),
+        Level::Plain => kernel::<C, Split>(facets, select, range, apex, middle),
     }
-    #[cfg(target_arch = "aarch64")]
-    {
-        // Every aarch64 processor has the fused multiply-add.
-        return kernel::<C, Fused>(facets, select, range, apex, middle);
-    }
-    #[allow(unreachable_code)]
-    kernel::<C, Split>(facets, select, range, apex, middle)
 }
 
 #[cfg(target_arch = "x86_64")]
-#[target_feature(enable = "avx512f,avx2,fma")]
+#[target_feature(enable = "avx512f,avx512dq,avx512vl,avx512bw,avx2,fma")]
 fn wide512<C: Corners>(
     facets: &C,
     select: Select<'_>,
@@ -181,6 +172,53 @@ fn lanes(f: impl Fn(usize) -> f64) -> Lane {
     std::array::from_fn(f)
 }
 
+/// Sums that grow by [`LANES`] triangles at a time.
+pub(crate) struct Running {
+    high: [Lane; SUMS],
+    low: [Lane; SUMS],
+    absolute: Lane,
+}
+
+impl Running {
+    /// Nothing.
+    pub(crate) const ZERO: Self = Self {
+        high: [[0.0; LANES]; SUMS],
+        low: [[0.0; LANES]; SUMS],
+        absolute: [0.0; LANES],
+    };
+
+    /// Adds the triangles `x` (`[corner][axis]`, one lane a triangle), seen from `apex`; `m` leads
+    /// from there to the point of the absolute sum.
+    #[inline(always)]
+    pub(crate) fn add<P: Product>(&mut self, x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) {
+        let terms = terms::<P>(x, apex, m);
+        for (i, term) in terms.sums.iter().enumerate() {
+            for l in 0..LANES {
+                let (s, e) = two_sum(self.high[i][l], term[l]);
+                self.high[i][l] = s;
+                self.low[i][l] += e;
+            }
+        }
+        for l in 0..LANES {
+            self.low[0][l] += terms.volume_low[l];
+            self.absolute[l] += terms.absolute[l];
+        }
+    }
+
+    /// The lanes joined in their order.
+    #[inline(always)]
+    pub(crate) fn finish(&self) -> ChunkSums {
+        let mut out = ChunkSums::ZERO;
+        for i in 0..SUMS {
+            for l in 0..LANES {
+                out.sums[i].join(Sum::from_parts(self.high[i][l], self.low[i][l]));
+            }
+        }
+        out.absolute = self.absolute.iter().sum();
+        out
+    }
+}
+
 #[inline(always)]
 fn kernel<C: Corners, P: Product>(
     facets: &C,
@@ -189,54 +227,39 @@ fn kernel<C: Corners, P: Product>(
     apex: [f64; 3],
     middle: [f64; 3],
 ) -> ChunkSums {
-    let mut high = [[0.0; LANES]; SUMS];
-    let mut low = [[0.0; LANES]; SUMS];
-    let mut absolute = [0.0; LANES];
     // From the apex to the middle of the box.
-    let m = [
-        middle[0] - apex[0],
-        middle[1] - apex[1],
-        middle[2] - apex[2],
-    ];
+    let m = [0, 1, 2].map(|i| middle[i] - apex[i]);
+    // Lanes past the end hold one corner three times: a triangle that adds exactly nothing.
+    match (facets.as_records(), select) {
+        (Some(records), Select::All) => blocks::<f32, P>(range, apex, m, |part, block| {
+            block.records(&records, part, [0.0; 3]);
+        }),
+        _ => blocks::<f64, P>(range, apex, m, |part, block| {
+            block.triangles(facets, select, part, apex);
+        }),
+    }
+}
+
+/// Sums over `range`, laid out by `fill` a block at a time.
+#[inline(always)]
+fn blocks<T: Coordinate, P: Product>(
+    range: std::ops::Range<usize>,
+    apex: [f64; 3],
+    m: [f64; 3],
+    fill: impl Fn(std::ops::Range<usize>, &mut Block<T>),
+) -> ChunkSums {
+    let mut running = Running::ZERO;
+    let mut block = Block::<T>::new();
     let mut at = range.start;
     while at < range.end {
-        // Corner coordinates, one lane a triangle. Lanes past the end hold the apex three times:
-        // a triangle that adds exactly zero to every sum.
-        let mut x = [[[0.0f64; LANES]; 3]; 3];
-        for lane in 0..LANES {
-            let t = if at + lane < range.end {
-                facets.triangle(select.get(at + lane))
-            } else {
-                [apex; 3]
-            };
-            for k in 0..3 {
-                for i in 0..3 {
-                    x[k][i][lane] = t[k][i];
-                }
-            }
+        let end = range.end.min(at + BLOCK);
+        fill(at..end, &mut block);
+        for group in 0..(end - at).div_ceil(LANES) {
+            running.add::<P>(&block.lanes(group), apex, m);
         }
-        let terms = terms::<P>(&x, apex, m);
-        for (i, term) in terms.sums.iter().enumerate() {
-            for l in 0..LANES {
-                let (s, e) = two_sum(high[i][l], term[l]);
-                high[i][l] = s;
-                low[i][l] += e;
-            }
-        }
-        for l in 0..LANES {
-            low[0][l] += terms.volume_low[l];
-            absolute[l] += terms.absolute[l];
-        }
-        at += LANES;
+        at = end;
     }
-    let mut out = ChunkSums::ZERO;
-    for i in 0..SUMS {
-        for l in 0..LANES {
-            out.sums[i].join(Sum::from_parts(high[i][l], low[i][l]));
-        }
-    }
-    out.absolute = absolute.iter().sum();
-    out
+    running.finish()
 }
 
 /// What each of the lanes adds.

@@ -10,6 +10,7 @@ pub mod materials;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;
+mod whole_text;
 mod words;
 
 pub use document::{Document, Failure, InputFact, PROGRAM, Program, to_json};

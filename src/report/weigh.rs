@@ -38,6 +38,12 @@ pub struct WeighedFile {
     pub whole: Option<Figures>,
     /// The bodies for want of which there is no whole.
     pub whole_missing: Vec<String>,
+    /// What was proved of the surface, null for nothing; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub proved: Option<Option<&'static str>>,
+    /// Whether the whole came out negative and was turned; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub turned: Option<bool>,
 }
 
 /// What is said of one body.

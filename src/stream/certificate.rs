@@ -1,0 +1,210 @@
+//! The closedness certificate: do the directed edges of a triangle soup cancel?
+//!
+//! Every vertex is sent to a pseudo-random point (u, w) of the plane over the integers modulo 2⁶⁴,
+//! by its coordinates and a seed. The certificate is the sum of twice the signed areas of the
+//! triangles there. By the shoelace rule that area is a sum over directed edges,
+//! H(a,b) = u(a)·w(b), each minus its reverse, H(b,a): edges that cancel add exactly nothing, in
+//! any order and grouping, so a closed surface always gives zero. One area costs two
+//! multiplications a triangle, where a hash of every edge would cost six. Two such planes with
+//! independent keys make 128 bits.
+//!
+//! **When edges do not cancel.** Let m(a,b) be how often a→b stands more often than b→a. With u and
+//! w independent random functions of the vertex, S = Σ m(a,b)·(u(a)w(b) − u(b)w(a)) over unordered
+//! pairs is linear in the u of any one vertex a, with coefficient L = Σ_b m(a,b)·w(b). Where some
+//! m(a,b) is odd, L is uniform, is divisible by 2^v exactly with chance 2^−(v+1), and then S is zero
+//! with chance at most 2^(v−64); together at most 33·2⁻⁶⁴. Both planes: 33²·2⁻¹²⁸ < 2⁻¹¹⁷. (This is
+//! the lemma of Schwartz, J. ACM 27(4), 1980, and Zippel, EUROSAM 1979, carried to a ring.) Where
+//! every m is divisible by 2^k, the bound is 2^(2k) times that: a hole of a mesh that stands there
+//! a million times over is still found but for a chance of 2⁻⁷⁷.
+//!
+//! **What that rests on.** u and w are not random functions but four and five rounds of multiplication by
+//! odd numbers and folding, keyed by the seed; no theorem says that they behave like random ones. The
+//! tests look for it on structured coordinates (whole numbers, signs, prisms, symmetric holes).
+//! Whoever knows the seed can build an open mesh whose certificate is zero: [`Keys::published`]
+//! defends against chance alone. [`Keys::random`] differs from run to run, so that a file cannot be
+//! made for it; the function is not a cryptographic one all the same. The exact path, which compares
+//! coordinates themselves, has the last word.
+
+use crate::geometry::{Block, LANES};
+
+/// Eight words side by side.
+pub(super) type Words = [u64; LANES];
+
+/// The keys of the two planes.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Keys([PlaneKeys; 2]);
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct PlaneKeys {
+    mask: [u64; 2],
+    /// Odd multipliers.
+    times: [u64; 6],
+}
+
+impl Keys {
+    /// Keys that follow from a seed; slices of one mesh need the same seed.
+    pub fn from_seed(seed: u64) -> Self {
+        // SplitMix64: Steele, Lea and Flood, "Fast splittable pseudorandom number generators",
+        // OOPSLA 2014.
+        let mut state = seed;
+        let mut next = || {
+            state = state.wrapping_add(0x9e37_79b9_7f4a_7c15);
+            let z = (state ^ (state >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
+            let z = (z ^ (z >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
+            z ^ (z >> 31)
+        };
+        Self([(); 2].map(|()| PlaneKeys {
+            mask: [next(), next()],
+            times: [(); 6].map(|()| next() | 1),
+        }))
+    }
+
+    /// The keys of seed 0, the same in every run and on every machine.
+    pub fn published() -> Self {
+        Self::from_seed(0)
+    }
+
+    /// Keys that differ from run to run.
+    pub fn random() -> Self {
+        use std::hash::{BuildHasher, Hasher};
+        let state = std::collections::hash_map::RandomState::new();
+        Self::from_seed(state.build_hasher().finish())
+    }
+}
+
+/// The certificate of some triangles; those of parts add to that of the whole.
+///
+/// Sums are comparable only under the same [`Keys`], and only between coordinates of one width
+/// (f32 of binary STL, f64 of all else): others do not cancel.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Certificate([u64; 2]);
+
+impl Certificate {
+    /// Of no triangles.
+    pub const ZERO: Self = Self([0; 2]);
+
+    /// Of both.
+    #[must_use]
+    pub fn plus(self, other: Self) -> Self {
+        Self([0, 1].map(|p| self.0[p].wrapping_add(other.0[p])))
+    }
+
+    /// Whether the directed edges cancel, but for the chance that the module states.
+    pub fn cancels(self) -> bool {
+        self == Self::ZERO
+    }
+
+    /// Both sums, to be written down.
+    pub fn words(self) -> [u64; 2] {
+        self.0
+    }
+
+    /// From what [`Certificate::words`] gave.
+    pub fn from_words(words: [u64; 2]) -> Self {
+        Self(words)
+    }
+}
+
+/// Certificates of [`LANES`] triangles, side by side.
+#[derive(Clone, Copy)]
+pub(super) struct Running([Words; 2]);
+
+impl Running {
+    pub(super) const ZERO: Self = Self([[0; LANES]; 2]);
+
+    /// Adds the triangles of a group of the block.
+    #[inline(always)]
+    pub(super) fn add<T: Hashed>(&mut self, block: &Block<T>, group: usize, keys: &Keys) {
+        for (sum, keys) in self.0.iter_mut().zip(&keys.0) {
+            let [a, b, c] = [0, 1, 2].map(|corner| T::points(block, corner, group, keys));
+            for l in 0..LANES {
+                // Twice the signed area; exactly zero where two corners are alike.
+                let (bu, bw) = (b.0[l].wrapping_sub(a.0[l]), b.1[l].wrapping_sub(a.1[l]));
+                let (cu, cw) = (c.0[l].wrapping_sub(a.0[l]), c.1[l].wrapping_sub(a.1[l]));
+                let area = bu.wrapping_mul(cw).wrapping_sub(cu.wrapping_mul(bw));
+                sum[l] = sum[l].wrapping_add(area);
+            }
+        }
+    }
+
+    #[inline(always)]
+    pub(super) fn finish(self) -> Certificate {
+        Certificate(self.0.map(|s| s.into_iter().fold(0, u64::wrapping_add)))
+    }
+}
+
+/// Coordinates that can be hashed.
+pub(super) trait Hashed: crate::geometry::Coordinate {
+    /// Points (u, w) of one corner of each triangle of a group.
+    fn points(block: &Block<Self>, corner: usize, group: usize, keys: &PlaneKeys)
+    -> (Words, Words);
+}
+
+impl Hashed for f32 {
+    #[inline(always)]
+    fn points(b: &Block<f32>, corner: usize, group: usize, keys: &PlaneKeys) -> (Words, Words) {
+        let mut out = ([0; LANES], [0; LANES]);
+        for l in 0..LANES {
+            let word = |axis: usize| {
+                let x = b.at[corner][axis][group * LANES + l];
+                u64::from(crate::geometry::Coordinate::canonical(x).to_bits())
+            };
+            (out.0[l], out.1[l]) = last(first(word(0) | word(1) << 32, keys), word(2), keys);
+        }
+        out
+    }
+}
+
+impl Hashed for f64 {
+    #[inline(always)]
+    fn points(b: &Block<f64>, corner: usize, group: usize, keys: &PlaneKeys) -> (Words, Words) {
+        let mut out = ([0; LANES], [0; LANES]);
+        for l in 0..LANES {
+            let word = |axis: usize| {
+                let x = b.at[corner][axis][group * LANES + l];
+                crate::geometry::Coordinate::canonical(x).to_bits()
+            };
+            let t = middle(first(word(0), keys), word(1), keys);
+            // The low half of a round number is all zeros: bring the high one down.
+            let z = word(2) ^ (word(2) >> 32);
+            (out.0[l], out.1[l]) = last(t, z, keys);
+        }
+        out
+    }
+}
+
+#[inline(always)]
+fn fold<const BY: u32>(x: u64) -> u64 {
+    x ^ (x >> BY)
+}
+
+#[inline(always)]
+fn first(word: u64, keys: &PlaneKeys) -> u64 {
+    fold::<32>((word ^ keys.mask[0]).wrapping_mul(keys.times[0]))
+}
+
+#[inline(always)]
+fn middle(t: u64, word: u64, keys: &PlaneKeys) -> u64 {
+    fold::<32>(
+        t.wrapping_add(word ^ keys.mask[1])
+            .wrapping_mul(keys.times[5]),
+    )
+}
+
+#[inline(always)]
+fn last(t: u64, word: u64, keys: &PlaneKeys) -> (u64, u64) {
+    let t = fold::<32>(t.wrapping_add(word.wrapping_mul(keys.times[1])));
+    let t = fold::<29>(t.wrapping_mul(keys.times[2]));
+    // Folding before each: mere multiples of each other would make every area zero.
+    let u = fold::<29>(fold::<32>(t).wrapping_mul(keys.times[3]));
+    let w = fold::<29>(fold::<32>(u).wrapping_mul(keys.times[4]));
+    (u, w)
+}
+
+/// The four words that stand for a vertex of f32.
+#[cfg(test)]
+pub(super) fn points_of(vertex: [f32; 3], keys: &Keys) -> [u64; 4] {
+    let [x, y, z] = vertex.map(|x| u64::from((x + 0.0).to_bits()));
+    let [p, q] = [0, 1].map(|i: usize| last(first(x | y << 32, &keys.0[i]), z, &keys.0[i]));
+    [p.0, p.1, q.0, q.1]
+}
