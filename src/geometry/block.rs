@@ -18,6 +18,10 @@ pub(crate) type Lane = [f64; LANES];
 
 /// A coordinate as it is stored.
 pub(crate) trait Coordinate: Copy + Default + PartialOrd {
+    /// Above every number.
+    const HIGHEST: Self;
+    /// Below every number.
+    const LOWEST: Self;
     /// As f64, exactly.
     fn wide(self) -> f64;
     /// −0 as +0; everything else as it is.
@@ -25,6 +29,8 @@ pub(crate) trait Coordinate: Copy + Default + PartialOrd {
 }
 
 impl Coordinate for f32 {
+    const HIGHEST: Self = Self::INFINITY;
+    const LOWEST: Self = Self::NEG_INFINITY;
     #[inline(always)]
     fn wide(self) -> f64 {
         f64::from(self)
@@ -36,6 +42,8 @@ impl Coordinate for f32 {
 }
 
 impl Coordinate for f64 {
+    const HIGHEST: Self = Self::INFINITY;
+    const LOWEST: Self = Self::NEG_INFINITY;
     #[inline(always)]
     fn wide(self) -> f64 {
         self
@@ -68,25 +76,14 @@ impl<T: Coordinate> Block<T> {
             }
         }
     }
-
-    /// Lanes `LANES·group` and up, as f64.
-    #[inline(always)]
-    pub(crate) fn lanes(&self, group: usize) -> [[Lane; 3]; 3] {
-        let mut x = [[[0.0; LANES]; 3]; 3];
-        for k in 0..3 {
-            for i in 0..3 {
-                for l in 0..LANES {
-                    x[k][i][l] = self.at[k][i][group * LANES + l].wide();
-                }
-            }
-        }
-        x
-    }
 }
 
 impl Block<f32> {
     /// Takes the records of `range`, at most [`BLOCK`], and as many times `pad` as are missing.
-    #[inline(always)]
+    ///
+    /// Never inlined: where it is, compilers fetch the coordinates with gathers, which are slower
+    /// than plain moves.
+    #[inline(never)]
     pub(crate) fn records(
         &mut self,
         facets: &RecordFacets<'_>,
@@ -111,7 +108,7 @@ impl Block<f32> {
 impl Block<f64> {
     /// Takes the positions `range` of the selection, at most [`BLOCK`], and as many times `pad`
     /// as are missing.
-    #[inline(always)]
+    #[inline(never)]
     pub(crate) fn triangles<C: Corners>(
         &mut self,
         facets: &C,

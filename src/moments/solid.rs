@@ -167,16 +167,13 @@ fn wide256<C: Corners>(
     kernel::<C, Fused>(facets, select, range, apex, middle)
 }
 
-#[inline(always)]
-fn lanes(f: impl Fn(usize) -> f64) -> Lane {
-    std::array::from_fn(f)
-}
-
-/// Sums that grow by [`LANES`] triangles at a time.
+/// Sums that grow by a block of triangles at a time.
 pub(crate) struct Running {
     high: [Lane; SUMS],
     low: [Lane; SUMS],
     absolute: Lane,
+    /// What the triangles of the last block have added.
+    terms: [[f64; BLOCK]; TERMS],
 }
 
 impl Running {
@@ -185,28 +182,49 @@ impl Running {
         high: [[0.0; LANES]; SUMS],
         low: [[0.0; LANES]; SUMS],
         absolute: [0.0; LANES],
+        terms: [[0.0; BLOCK]; TERMS],
     };
 
-    /// Adds the triangles `x` (`[corner][axis]`, one lane a triangle), seen from `apex`; `m` leads
-    /// from there to the point of the absolute sum.
+    /// Adds the triangles of a block, seen from `apex`; `m` leads from there to the point of the
+    /// absolute sum.
     #[inline(always)]
-    pub(crate) fn add<P: Product>(&mut self, x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) {
-        let terms = terms::<P>(x, apex, m);
-        for (i, term) in terms.sums.iter().enumerate() {
-            for l in 0..LANES {
-                let (s, e) = two_sum(self.high[i][l], term[l]);
-                self.high[i][l] = s;
-                self.low[i][l] += e;
+    pub(crate) fn add<T: Coordinate, P: Product>(
+        &mut self,
+        block: &Block<T>,
+        apex: [f64; 3],
+        m: [f64; 3],
+    ) {
+        // One loop over plain numbers: this is what compilers turn into vector code best.
+        for l in 0..BLOCK {
+            let mut x = [[0.0; 3]; 3];
+            for k in 0..3 {
+                for i in 0..3 {
+                    x[k][i] = block.at[k][i][l].wide();
+                }
+            }
+            let of = terms_of::<P>(&x, apex, m);
+            for i in 0..TERMS {
+                self.terms[i][l] = of[i];
             }
         }
-        for l in 0..LANES {
-            self.low[0][l] += terms.volume_low[l];
-            self.absolute[l] += terms.absolute[l];
+        for group in 0..BLOCK / LANES {
+            for i in 0..SUMS {
+                for l in 0..LANES {
+                    let (s, e) = two_sum(self.high[i][l], self.terms[i][group * LANES + l]);
+                    self.high[i][l] = s;
+                    self.low[i][l] += e;
+                }
+            }
+        }
+        for group in 0..BLOCK / LANES {
+            for l in 0..LANES {
+                self.low[0][l] += self.terms[VOLUME_LOW][group * LANES + l];
+                self.absolute[l] += self.terms[ABSOLUTE][group * LANES + l];
+            }
         }
     }
 
     /// The lanes joined in their order.
-    #[inline(always)]
     pub(crate) fn finish(&self) -> ChunkSums {
         let mut out = ChunkSums::ZERO;
         for i in 0..SUMS {
@@ -254,98 +272,73 @@ fn blocks<T: Coordinate, P: Product>(
     while at < range.end {
         let end = range.end.min(at + BLOCK);
         fill(at..end, &mut block);
-        for group in 0..(end - at).div_ceil(LANES) {
-            running.add::<P>(&block.lanes(group), apex, m);
-        }
+        running.add::<T, P>(&block, apex, m);
         at = end;
     }
     running.finish()
 }
 
-/// What each of the lanes adds.
-struct Terms {
-    sums: [Lane; SUMS],
-    volume_low: Lane,
-    absolute: Lane,
-}
+/// Terms of one triangle: those of the sums, then what the first one has beyond f64, then that of K.
+const TERMS: usize = SUMS + 2;
+const VOLUME_LOW: usize = SUMS;
+const ABSOLUTE: usize = SUMS + 1;
 
 #[inline(always)]
-fn terms<P: Product>(x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> Terms {
+fn terms_of<P: Product>(x: &[[f64; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> [f64; TERMS] {
     // a, b, c: corners seen from the apex; u = b−a, v = c−a: edges; each with its rounding error.
-    let mut a = [[0.0; LANES]; 3];
-    let mut al = [[0.0; LANES]; 3];
-    let mut b = [[0.0; LANES]; 3];
-    let mut c = [[0.0; LANES]; 3];
-    let mut u = [[0.0; LANES]; 3];
-    let mut ul = [[0.0; LANES]; 3];
-    let mut v = [[0.0; LANES]; 3];
-    let mut vl = [[0.0; LANES]; 3];
+    let mut a = [0.0; 3];
+    let mut al = [0.0; 3];
+    let mut b = [0.0; 3];
+    let mut c = [0.0; 3];
+    let mut u = [0.0; 3];
+    let mut ul = [0.0; 3];
+    let mut v = [0.0; 3];
+    let mut vl = [0.0; 3];
     for i in 0..3 {
-        for l in 0..LANES {
-            (a[i][l], al[i][l]) = two_diff(x[0][i][l], apex[i]);
-            (u[i][l], ul[i][l]) = two_diff(x[1][i][l], x[0][i][l]);
-            (v[i][l], vl[i][l]) = two_diff(x[2][i][l], x[0][i][l]);
-            b[i][l] = x[1][i][l] - apex[i];
-            c[i][l] = x[2][i][l] - apex[i];
-        }
+        (a[i], al[i]) = two_diff(x[0][i], apex[i]);
+        (u[i], ul[i]) = two_diff(x[1][i], x[0][i]);
+        (v[i], vl[i]) = two_diff(x[2][i], x[0][i]);
+        b[i] = x[1][i] - apex[i];
+        c[i] = x[2][i] - apex[i];
     }
     // n = u × v, twice the area vector.
-    let mut n = [[0.0; LANES]; 3];
-    let mut nl = [[0.0; LANES]; 3];
+    let mut n = [0.0; 3];
+    let mut nl = [0.0; 3];
     for i in 0..3 {
         let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-        for l in 0..LANES {
-            let (p, pe) = P::two_prod(u[j][l], v[k][l]);
-            let (q, qe) = P::two_prod(u[k][l], v[j][l]);
-            let (h, e) = two_diff(p, q);
-            n[i][l] = h;
-            nl[i][l] = e
-                + ((pe - qe)
-                    + ((ul[j][l] * v[k][l] + u[j][l] * vl[k][l])
-                        - (ul[k][l] * v[j][l] + u[k][l] * vl[j][l])));
-        }
+        let (p, pe) = P::two_prod(u[j], v[k]);
+        let (q, qe) = P::two_prod(u[k], v[j]);
+        let (h, e) = two_diff(p, q);
+        n[i] = h;
+        nl[i] = e + ((pe - qe) + ((ul[j] * v[k] + u[j] * vl[k]) - (ul[k] * v[j] + u[k] * vl[j])));
     }
     // d = a · n, as a value and its rest.
-    let mut d = [0.0; LANES];
-    let mut dl = [0.0; LANES];
-    for l in 0..LANES {
-        let (p0, e0) = P::two_prod(a[0][l], n[0][l]);
-        let (p1, e1) = P::two_prod(a[1][l], n[1][l]);
-        let (p2, e2) = P::two_prod(a[2][l], n[2][l]);
-        let (s, f0) = two_sum(p0, p1);
-        let (s, f1) = two_sum(s, p2);
-        let rest = (f0 + f1)
-            + ((e0 + e1) + e2)
-            + ((a[0][l] * nl[0][l] + a[1][l] * nl[1][l] + a[2][l] * nl[2][l])
-                + (al[0][l] * n[0][l] + al[1][l] * n[1][l] + al[2][l] * n[2][l]));
-        (d[l], dl[l]) = two_sum(s, rest);
+    let (p0, e0) = P::two_prod(a[0], n[0]);
+    let (p1, e1) = P::two_prod(a[1], n[1]);
+    let (p2, e2) = P::two_prod(a[2], n[2]);
+    let (s, f0) = two_sum(p0, p1);
+    let (s, f1) = two_sum(s, p2);
+    let rest = (f0 + f1)
+        + ((e0 + e1) + e2)
+        + ((a[0] * nl[0] + a[1] * nl[1] + a[2] * nl[2])
+            + (al[0] * n[0] + al[1] * n[1] + al[2] * n[2]));
+    let (d, dl) = two_sum(s, rest);
+    let mut out = [0.0; TERMS];
+    out[0] = d;
+    let mut s = [0.0; 3];
+    for i in 0..3 {
+        s[i] = a[i] + b[i] + c[i];
+        out[1 + i] = d * s[i];
     }
-    let s: [Lane; 3] = std::array::from_fn(|i| lanes(|l| a[i][l] + b[i][l] + c[i][l]));
-    let second = |i: usize, j: usize| {
-        lanes(|l| {
-            d[l] * ((a[i][l] * a[j][l] + b[i][l] * b[j][l])
-                + (c[i][l] * c[j][l] + s[i][l] * s[j][l]))
-        })
-    };
-    let absolute = lanes(|l| (d[l] - (m[0] * n[0][l] + m[1] * n[1][l] + m[2] * n[2][l])).abs());
-    let area = lanes(|l| (n[0][l] * n[0][l] + n[1][l] * n[1][l] + n[2][l] * n[2][l]).sqrt());
-    Terms {
-        sums: [
-            d,
-            lanes(|l| d[l] * s[0][l]),
-            lanes(|l| d[l] * s[1][l]),
-            lanes(|l| d[l] * s[2][l]),
-            second(0, 0),
-            second(1, 1),
-            second(2, 2),
-            second(0, 1),
-            second(0, 2),
-            second(1, 2),
-            area,
-        ],
-        volume_low: dl,
-        absolute,
+    let second = [(0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2)];
+    for k in 0..6 {
+        let (i, j) = second[k];
+        out[4 + k] = d * ((a[i] * a[j] + b[i] * b[j]) + (c[i] * c[j] + s[i] * s[j]));
     }
+    out[10] = (n[0] * n[0] + n[1] * n[1] + n[2] * n[2]).sqrt();
+    out[VOLUME_LOW] = dl;
+    out[ABSOLUTE] = (d - (m[0] * n[0] + m[1] * n[1] + m[2] * n[2])).abs();
+    out
 }
 
 #[cfg(test)]

@@ -25,10 +25,7 @@
 //! made for it; the function is not a cryptographic one all the same. The exact path, which compares
 //! coordinates themselves, has the last word.
 
-use crate::geometry::{Block, LANES};
-
-/// Eight words side by side.
-pub(super) type Words = [u64; LANES];
+use crate::geometry::{BLOCK, Block, Coordinate};
 
 /// The keys of the two planes.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -105,71 +102,55 @@ impl Certificate {
     }
 }
 
-/// Certificates of [`LANES`] triangles, side by side.
-#[derive(Clone, Copy)]
-pub(super) struct Running([Words; 2]);
-
-impl Running {
-    pub(super) const ZERO: Self = Self([[0; LANES]; 2]);
-
-    /// Adds the triangles of a group of the block.
+impl Certificate {
+    /// Adds the triangles of a block.
     #[inline(always)]
-    pub(super) fn add<T: Hashed>(&mut self, block: &Block<T>, group: usize, keys: &Keys) {
-        for (sum, keys) in self.0.iter_mut().zip(&keys.0) {
-            let [a, b, c] = [0, 1, 2].map(|corner| T::points(block, corner, group, keys));
-            for l in 0..LANES {
+    pub(super) fn add<T: Hashed>(&mut self, block: &Block<T>, keys: &Keys) {
+        let mut sums = self.0;
+        // One loop over plain numbers, as for the moments.
+        for l in 0..BLOCK {
+            for p in 0..2 {
+                let keys = &keys.0[p];
+                let (au, aw) = T::point(block, 0, l, keys);
+                let (bu, bw) = T::point(block, 1, l, keys);
+                let (cu, cw) = T::point(block, 2, l, keys);
                 // Twice the signed area; exactly zero where two corners are alike.
-                let (bu, bw) = (b.0[l].wrapping_sub(a.0[l]), b.1[l].wrapping_sub(a.1[l]));
-                let (cu, cw) = (c.0[l].wrapping_sub(a.0[l]), c.1[l].wrapping_sub(a.1[l]));
+                let (bu, bw) = (bu.wrapping_sub(au), bw.wrapping_sub(aw));
+                let (cu, cw) = (cu.wrapping_sub(au), cw.wrapping_sub(aw));
                 let area = bu.wrapping_mul(cw).wrapping_sub(cu.wrapping_mul(bw));
-                sum[l] = sum[l].wrapping_add(area);
+                sums[p] = sums[p].wrapping_add(area);
             }
         }
-    }
-
-    #[inline(always)]
-    pub(super) fn finish(self) -> Certificate {
-        Certificate(self.0.map(|s| s.into_iter().fold(0, u64::wrapping_add)))
+        self.0 = sums;
     }
 }
 
 /// Coordinates that can be hashed.
-pub(super) trait Hashed: crate::geometry::Coordinate {
-    /// Points (u, w) of one corner of each triangle of a group.
-    fn points(block: &Block<Self>, corner: usize, group: usize, keys: &PlaneKeys)
-    -> (Words, Words);
+pub(super) trait Hashed: Coordinate {
+    /// The point (u, w) of a corner of a triangle.
+    fn point(block: &Block<Self>, corner: usize, l: usize, keys: &PlaneKeys) -> (u64, u64);
 }
 
 impl Hashed for f32 {
     #[inline(always)]
-    fn points(b: &Block<f32>, corner: usize, group: usize, keys: &PlaneKeys) -> (Words, Words) {
-        let mut out = ([0; LANES], [0; LANES]);
-        for l in 0..LANES {
-            let word = |axis: usize| {
-                let x = b.at[corner][axis][group * LANES + l];
-                u64::from(crate::geometry::Coordinate::canonical(x).to_bits())
-            };
-            (out.0[l], out.1[l]) = last(first(word(0) | word(1) << 32, keys), word(2), keys);
-        }
-        out
+    fn point(block: &Block<f32>, corner: usize, l: usize, keys: &PlaneKeys) -> (u64, u64) {
+        let [x, y, z] = &block.at[corner];
+        let x = u64::from(x[l].canonical().to_bits());
+        let y = u64::from(y[l].canonical().to_bits());
+        let z = u64::from(z[l].canonical().to_bits());
+        last(first(x | y << 32, keys), z, keys)
     }
 }
 
 impl Hashed for f64 {
     #[inline(always)]
-    fn points(b: &Block<f64>, corner: usize, group: usize, keys: &PlaneKeys) -> (Words, Words) {
-        let mut out = ([0; LANES], [0; LANES]);
-        for l in 0..LANES {
-            let word = |axis: usize| {
-                let x = b.at[corner][axis][group * LANES + l];
-                crate::geometry::Coordinate::canonical(x).to_bits()
-            };
-            let t = middle(first(word(0), keys), word(1), keys);
-            // The low half of a round number is all zeros: bring the high one down.
-            let z = word(2) ^ (word(2) >> 32);
-            (out.0[l], out.1[l]) = last(t, z, keys);
-        }
-        out
+    fn point(block: &Block<f64>, corner: usize, l: usize, keys: &PlaneKeys) -> (u64, u64) {
+        let [x, y, z] = &block.at[corner];
+        let x = x[l].canonical().to_bits();
+        let y = y[l].canonical().to_bits();
+        let z = z[l].canonical().to_bits();
+        // The low half of a round number is all zeros: the high one is brought down.
+        last(middle(first(x, keys), y, keys), fold::<32>(z), keys)
     }
 }
 

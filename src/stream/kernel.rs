@@ -1,8 +1,8 @@
 //! One chunk of triangles: moments, area, box and certificate in a single reading.
 
-use super::certificate::{Certificate, Hashed, Keys, Running as Edges};
+use super::certificate::{Certificate, Hashed, Keys};
 use crate::geometry::eft::{Fused, Product, Split};
-use crate::geometry::{BLOCK, Block, Corners, LANES, Level, RecordFacets, Select};
+use crate::geometry::{BLOCK, Block, Corners, Level, RecordFacets, Select};
 use crate::moments::{ChunkSums, Running};
 
 /// What one chunk adds.
@@ -129,7 +129,7 @@ fn kernel<S: Source, P: Product>(
     keys: &Keys,
 ) -> Part {
     let mut sums = Running::ZERO;
-    let mut edges = Edges::ZERO;
+    let mut certificate = Certificate::ZERO;
     let mut block = Block::<S::Coordinate>::new();
     let mut boxes = Boxes::new();
     let mut at = range.start;
@@ -137,79 +137,55 @@ fn kernel<S: Source, P: Product>(
         let end = range.end.min(at + BLOCK);
         source.fill(at..end, apex, &mut block);
         // Triangles past the end are the apex three times: they add nothing to any of these.
-        for group in 0..(end - at).div_ceil(LANES) {
-            sums.add::<P>(&block.lanes(group), apex, [0.0; 3]);
-        }
-        for group in 0..(end - at).div_ceil(LANES) {
-            edges.add(&block, group, keys);
-        }
+        sums.add::<S::Coordinate, P>(&block, apex, [0.0; 3]);
+        certificate.add(&block, keys);
         boxes.add(&block);
         at = end;
     }
     Part {
         sums: sums.finish(),
-        certificate: edges.finish(),
+        certificate,
         bounds: boxes.finish(),
     }
 }
 
-/// Lanes of the boxes: one vector of f32 on the widest processors.
-const WIDE: usize = 16;
-
-/// Least and greatest coordinates, one box a lane.
+/// Least and greatest coordinates, one box for each place in a block.
 struct Boxes<T> {
-    low: [[T; WIDE]; 3],
-    high: [[T; WIDE]; 3],
-    empty: bool,
+    low: [[T; BLOCK]; 3],
+    high: [[T; BLOCK]; 3],
 }
 
 impl<T: Hashed> Boxes<T> {
     #[inline(always)]
     fn new() -> Self {
         Self {
-            low: [[T::default(); WIDE]; 3],
-            high: [[T::default(); WIDE]; 3],
-            empty: true,
+            low: [[T::HIGHEST; BLOCK]; 3],
+            high: [[T::LOWEST; BLOCK]; 3],
         }
     }
 
     #[inline(always)]
     fn add(&mut self, block: &Block<T>) {
-        if self.empty {
-            self.empty = false;
-            for i in 0..3 {
-                self.low[i].copy_from_slice(&block.at[0][i][..WIDE]);
-                self.high[i].copy_from_slice(&block.at[0][i][..WIDE]);
-            }
-        }
-        for corner in &block.at {
-            for i in 0..3 {
-                let (mut low, mut high) = (self.low[i], self.high[i]);
-                for part in corner[i].chunks_exact(WIDE) {
-                    for l in 0..WIDE {
-                        // As the machine's own minimum, which leaves out what is not a number:
-                        // such chunks are refused by their sums.
-                        low[l] = if part[l] < low[l] { part[l] } else { low[l] };
-                        high[l] = if part[l] > high[l] { part[l] } else { high[l] };
-                    }
-                }
-                (self.low[i], self.high[i]) = (low, high);
+        // What is not a number is left out by these: such chunks are refused by their sums.
+        let less = |a: T, b: T| if a < b { a } else { b };
+        let more = |a: T, b: T| if a > b { a } else { b };
+        for i in 0..3 {
+            for l in 0..BLOCK {
+                let [a, b, c] = [block.at[0][i][l], block.at[1][i][l], block.at[2][i][l]];
+                self.low[i][l] = less(less(a, b), less(c, self.low[i][l]));
+                self.high[i][l] = more(more(a, b), more(c, self.high[i][l]));
             }
         }
     }
 
-    #[inline(always)]
     fn finish(&self) -> [[f64; 3]; 2] {
-        if self.empty {
-            return Part::NOTHING.bounds;
+        let mut out = Part::NOTHING.bounds;
+        for i in 0..3 {
+            for l in 0..BLOCK {
+                out[0][i] = out[0][i].min(self.low[i][l].canonical().wide());
+                out[1][i] = out[1][i].max(self.high[i][l].canonical().wide());
+            }
         }
-        let of = |lanes: &[T; WIDE], pick: fn(f64, f64) -> f64| {
-            let first = lanes[0].canonical().wide();
-            lanes.iter().map(|x| x.canonical().wide()).fold(first, pick)
-        };
-        [
-            [0, 1, 2].map(|i| of(&self.low[i], f64::min)),
-            [0, 1, 2].map(|i| of(&self.high[i], f64::max)),
-        ]
+        out
     }
 }
