@@ -4,11 +4,11 @@
 use std::fmt::Write as _;
 
 /// Three corners, as binary STL holds them.
-pub type Triangle = [[f32; 3]; 3];
+pub(crate) type Triangle = [[f32; 3]; 3];
 
 /// A sphere of `n` rings of `2n` quads around `centre`, less the flat ones: 4n(n−1) triangles,
 /// closed and outward.
-pub fn sphere(n: u32, radius: f64, centre: [f64; 3]) -> impl Iterator<Item = Triangle> {
+pub(crate) fn sphere(n: u32, radius: f64, centre: [f64; 3]) -> impl Iterator<Item = Triangle> {
     let at = move |i: u32, j: u32| -> [f32; 3] {
         let (p, q) = (
             f64::from(i) / f64::from(n) * std::f64::consts::PI,
@@ -32,12 +32,12 @@ pub fn sphere(n: u32, radius: f64, centre: [f64; 3]) -> impl Iterator<Item = Tri
 }
 
 /// Number of triangles of [`sphere`].
-pub fn sphere_count(n: u32) -> u64 {
+pub(crate) fn sphere_count(n: u32) -> u64 {
     4 * u64::from(n) * (u64::from(n) - 1)
 }
 
 /// The smallest `n` whose sphere has at least `triangles`.
-pub fn rings_for(triangles: u64) -> u32 {
+pub(crate) fn rings_for(triangles: u64) -> u32 {
     (2..)
         .find(|&n| sphere_count(n) >= triangles)
         .unwrap_or(u32::MAX)
@@ -45,7 +45,7 @@ pub fn rings_for(triangles: u64) -> u32 {
 
 /// A rod of length 1000 and radius 0.01 in one piece: triangles a hundred thousand times as long
 /// as they are wide. `4n` triangles.
-pub fn slivers(n: u32) -> Vec<Triangle> {
+pub(crate) fn slivers(n: u32) -> Vec<Triangle> {
     let at = |i: u32, z: f32| {
         let a = f64::from(i % n) / f64::from(n) * std::f64::consts::TAU;
         [(0.01 * a.cos()) as f32, (0.01 * a.sin()) as f32, z]
@@ -61,7 +61,7 @@ pub fn slivers(n: u32) -> Vec<Triangle> {
 }
 
 /// In an order that has nothing to do with where they lie; the same in every run.
-pub fn shuffled(mut triangles: Vec<Triangle>) -> Vec<Triangle> {
+pub(crate) fn shuffled(mut triangles: Vec<Triangle>) -> Vec<Triangle> {
     let mut state = 0x2545_f491_4f6c_dd1du64;
     for i in (1..triangles.len()).rev() {
         state ^= state << 13;
@@ -73,7 +73,7 @@ pub fn shuffled(mut triangles: Vec<Triangle>) -> Vec<Triangle> {
 }
 
 /// One record of binary STL.
-pub fn record(t: &Triangle) -> [u8; 50] {
+pub(crate) fn record(t: &Triangle) -> [u8; 50] {
     let mut out = [0; 50];
     for (k, x) in t.iter().flatten().enumerate() {
         out[12 + 4 * k..16 + 4 * k].copy_from_slice(&x.to_le_bytes());
@@ -82,14 +82,14 @@ pub fn record(t: &Triangle) -> [u8; 50] {
 }
 
 /// The bytes before the records.
-pub fn header(count: u64) -> Vec<u8> {
+pub(crate) fn header(count: u64) -> Vec<u8> {
     let mut out = vec![0; 80];
     out.extend((count as u32).to_le_bytes());
     out
 }
 
 /// As binary STL.
-pub fn binary_stl(triangles: &[Triangle]) -> Vec<u8> {
+pub(crate) fn binary_stl(triangles: &[Triangle]) -> Vec<u8> {
     let mut out = header(triangles.len() as u64);
     out.reserve(50 * triangles.len());
     for t in triangles {
@@ -99,7 +99,7 @@ pub fn binary_stl(triangles: &[Triangle]) -> Vec<u8> {
 }
 
 /// As text STL.
-pub fn text_stl(triangles: &[Triangle]) -> Vec<u8> {
+pub(crate) fn text_stl(triangles: &[Triangle]) -> Vec<u8> {
     let mut out = String::from("solid made\n");
     for t in triangles {
         out.push_str("  facet normal 0.000000e+00 0.000000e+00 0.000000e+00\n    outer loop\n");
@@ -113,7 +113,7 @@ pub fn text_stl(triangles: &[Triangle]) -> Vec<u8> {
 }
 
 /// As OBJ with shared vertices, one named piece an entry.
-pub fn obj(pieces: &[(String, Vec<Triangle>)]) -> Vec<u8> {
+pub(crate) fn obj(pieces: &[(String, Vec<Triangle>)]) -> Vec<u8> {
     let mut out = String::new();
     let mut known = std::collections::HashMap::new();
     for (name, triangles) in pieces {
@@ -137,7 +137,7 @@ pub fn obj(pieces: &[(String, Vec<Triangle>)]) -> Vec<u8> {
 }
 
 /// `count` spheres side by side, of about `triangles` each.
-pub fn row_of_spheres(count: u32, triangles: u64) -> Vec<(String, Vec<Triangle>)> {
+pub(crate) fn row_of_spheres(count: u32, triangles: u64) -> Vec<(String, Vec<Triangle>)> {
     let n = rings_for(triangles);
     (0..count)
         .map(|i| {
@@ -148,11 +148,11 @@ pub fn row_of_spheres(count: u32, triangles: u64) -> Vec<(String, Vec<Triangle>)
 }
 
 /// `count` spheres in one another, about one centre, of about `triangles` each.
-pub fn nested_spheres(count: u32, triangles: u64) -> Vec<Triangle> {
+pub(crate) fn nested_spheres(count: u32, triangles: u64) -> Vec<Triangle> {
     let n = rings_for(triangles);
     (1..=count)
         .flat_map(|i| {
-            let inward = i % 2 == 1 && i < count;
+            let inward = (count - i) % 2 == 1;
             sphere(n, f64::from(i), [0.5; 3]).map(
                 move |[a, b, c]| {
                     if inward { [a, c, b] } else { [a, b, c] }

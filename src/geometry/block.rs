@@ -83,6 +83,10 @@ impl Block<f32> {
     ///
     /// Never inlined: where it is, compilers fetch the coordinates with gathers, which are slower
     /// than plain moves.
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
     #[inline(never)]
     pub(crate) fn records(
         &mut self,
@@ -108,6 +112,10 @@ impl Block<f32> {
 impl Block<f64> {
     /// Takes the positions `range` of the selection, at most [`BLOCK`], and as many times `pad`
     /// as are missing.
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
     #[inline(never)]
     pub(crate) fn triangles<C: Corners>(
         &mut self,

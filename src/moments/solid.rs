@@ -187,6 +187,10 @@ impl Running {
 
     /// Adds the triangles of a block, seen from `apex`; `m` leads from there to the point of the
     /// absolute sum.
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
     #[inline(always)]
     pub(crate) fn add<T: Coordinate, P: Product>(
         &mut self,

@@ -104,6 +104,10 @@ impl Certificate {
 
 impl Certificate {
     /// Adds the triangles of a block.
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
     #[inline(always)]
     pub(super) fn add<T: Hashed>(&mut self, block: &Block<T>, keys: &Keys) {
         let mut sums = self.0;

@@ -178,6 +178,10 @@ impl<T: Hashed> Boxes<T> {
         }
     }
 
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
     fn finish(&self) -> [[f64; 3]; 2] {
         let mut out = Part::NOTHING.bounds;
         for i in 0..3 {

@@ -167,7 +167,10 @@ pub fn of_stream(mut stream: impl Read + Send, keys: &Keys) -> Result<(Totals, u
             })
         };
         let read = || match last {
-            true => Ok(next.clear()),
+            true => {
+                next.clear();
+                Ok(())
+            }
             false => fill(&mut stream, &mut next, wanted(after)),
         };
         let (worked, filled) = rayon::join(work, read);
