@@ -11,6 +11,7 @@
 #![warn(missing_docs)]
 
 pub mod assembly;
+pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;
 pub mod error;

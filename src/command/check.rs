@@ -7,12 +7,12 @@ use super::{Answer, Common, gather};
 use crate::error::{Error, Result};
 use crate::mesh::{Body, Mesh};
 use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
-use crate::report::{self, InputFact};
+use crate::report::{self, InputFact, path_hex};
 use crate::soundness::{self, Finding, TESTED};
 
 /// Arguments of `check`.
 #[derive(Args, Clone, Debug)]
-pub struct CheckArgs {
+pub(super) struct CheckArgs {
     #[command(flatten)]
     meshes: MeshArgs,
     /// List up to N places of each finding
@@ -21,7 +21,7 @@ pub struct CheckArgs {
 }
 
 /// Runs the command.
-pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
     let answers = gather(expand(&args.meshes), |input| check_file(input, args));
     let mut files = Vec::new();
     let mut exit = 0;
@@ -44,13 +44,14 @@ pub fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
         body,
         common,
         report::check_text::render,
-        |b| report::check_text::csv(b),
+        report::check_text::csv,
     )
 }
 
 fn unread(path: &std::path::Path, error: &Error) -> CheckedFile {
     CheckedFile {
         path: path.to_string_lossy().into_owned(),
+        path_hex: path_hex(path),
         format: None,
         triangles: None,
         unit: None,
@@ -94,6 +95,7 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         && !file_findings.iter().any(Finding::is_unsound);
     let file = CheckedFile {
         path: input.path.to_string_lossy().into_owned(),
+        path_hex: path_hex(&input.path),
         format: Some(m.format),
         triangles: Some(m.mesh.soup.triangles.count() as u64),
         unit: Some(m.unit.symbol()),

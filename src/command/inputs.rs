@@ -1,6 +1,5 @@
 //! Which meshes a command is about: files, folders, standard input, bodies picked with `#`.
 
-use std::io::Read;
 use std::path::{Path, PathBuf};
 
 use clap::Args;
@@ -14,22 +13,22 @@ use crate::report::InputFact;
 
 /// Options that say how meshes are read.
 #[derive(Args, Clone, Debug)]
-pub struct MeshArgs {
+pub(super) struct MeshArgs {
     /// Mesh files, folders of them, or - for standard input; FILE#BODY picks a body
     #[arg(required = true, value_name = "MESH")]
-    pub meshes: Vec<PathBuf>,
+    pub(super) meshes: Vec<PathBuf>,
     /// Length unit of the meshes: mm, cm, m, in, ft [default: the file's own, else mm, and said]
     #[arg(long, value_name = "UNIT", value_parser = parse_unit)]
-    pub unit: Option<LengthUnit>,
+    pub(super) unit: Option<LengthUnit>,
     /// Format, where the bytes do not tell: stl or obj
     #[arg(long, value_name = "FORMAT", value_parser = parse_family)]
-    pub format: Option<Family>,
+    pub(super) format: Option<Family>,
     /// Look into sub-folders too
     #[arg(long)]
-    pub deep: bool,
+    pub(super) deep: bool,
     /// Give the SHA-256 of each input
     #[arg(long)]
-    pub hash: bool,
+    pub(super) hash: bool,
 }
 
 fn parse_unit(text: &str) -> Result<LengthUnit, String> {
@@ -51,30 +50,30 @@ fn parse_family(text: &str) -> Result<Family, String> {
 
 /// One thing to read.
 #[derive(Clone, Debug)]
-pub struct Input {
+pub(super) struct Input {
     /// The file; `-` is standard input.
-    pub path: PathBuf,
+    pub(super) path: PathBuf,
     /// The body that was picked with `#`.
-    pub pick: Option<String>,
+    pub(super) pick: Option<String>,
 }
 
 /// A mesh that was read.
-pub struct ReadMesh {
+pub(super) struct ReadMesh {
     /// Welded, with its bodies.
-    pub mesh: Mesh,
+    pub(super) mesh: Mesh,
     /// Name of the format in JSON.
-    pub format: &'static str,
+    pub(super) format: &'static str,
     /// The unit of its coordinates.
-    pub unit: LengthUnit,
+    pub(super) unit: LengthUnit,
     /// Whether that was assumed.
-    pub unit_assumed: bool,
+    pub(super) unit_assumed: bool,
     /// What the reader passed over, and the assumed unit.
-    pub warnings: Vec<Warning>,
+    pub(super) warnings: Vec<Warning>,
 }
 
 /// The inputs that the arguments name, folders opened and sorted. An input that cannot be is an
 /// error in its place; the others go on.
-pub fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
+pub(super) fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
     let mut out = Vec::new();
     for name in &args.meshes {
         if name.is_dir() {
@@ -108,7 +107,7 @@ pub fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
 }
 
 /// Splits at the last `#`, unless a file of the whole name exists.
-pub fn split_pick(name: &Path) -> (PathBuf, Option<String>) {
+pub(super) fn split_pick(name: &Path) -> (PathBuf, Option<String>) {
     if name.exists() {
         return (name.to_path_buf(), None);
     }
@@ -149,7 +148,7 @@ fn meshes_in(folder: &Path, deep: bool) -> Result<Vec<PathBuf>> {
 }
 
 /// Opens an input and says what it is.
-pub fn open(input: &Input, hash: bool) -> Result<(Bytes, InputFact)> {
+pub(super) fn open(input: &Input, hash: bool) -> Result<(Bytes, InputFact)> {
     let bytes = if input.path.as_os_str() == "-" {
         Bytes::from_stdin()?
     } else {
@@ -164,33 +163,15 @@ pub fn open(input: &Input, hash: bool) -> Result<(Bytes, InputFact)> {
 }
 
 /// SHA-256 as lower-case hexadecimal.
-pub fn digest(bytes: &[u8]) -> String {
+pub(super) fn digest(bytes: &[u8]) -> String {
     Sha256::digest(bytes)
         .iter()
         .map(|b| format!("{b:02x}"))
         .collect()
 }
 
-/// SHA-256 of a file that is read in pieces.
-pub fn digest_file(path: &Path) -> std::io::Result<String> {
-    let mut file = std::fs::File::open(path)?;
-    let mut hasher = Sha256::new();
-    let mut block = vec![0u8; 1 << 16];
-    loop {
-        let n = file.read(&mut block)?;
-        if n == 0 {
-            return Ok(hasher
-                .finalize()
-                .iter()
-                .map(|b| format!("{b:02x}"))
-                .collect());
-        }
-        hasher.update(&block[..n]);
-    }
-}
-
 /// Reads and welds one mesh.
-pub fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
+pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
     let kind = format::detect(&bytes, &input.path, args.format)?;
     let soup = format::read(bytes, &input.path, args.format)?;
     let (unit, unit_assumed, warnings) = said(soup.unit, &soup.notes, input, args);
@@ -244,7 +225,7 @@ pub fn said(
 ///
 /// # Errors
 /// `unknown-name` with the names that there are.
-pub fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'a Body)>> {
+pub(super) fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'a Body)>> {
     let all = mesh.bodies().iter().enumerate();
     let Some(pick) = &input.pick else {
         return Ok(all.collect());

@@ -9,7 +9,7 @@ use crate::report::materials::{MaterialRow, MaterialsBody, csv, render};
 
 /// Arguments of `materials`.
 #[derive(Args, Clone, Debug)]
-pub struct MaterialsArgs {
+pub(super) struct MaterialsArgs {
     /// Only materials with this word in their id, name or an alias
     word: Option<String>,
 }
@@ -18,7 +18,7 @@ pub struct MaterialsArgs {
 ///
 /// # Errors
 /// `unknown-name` where the word matches nothing.
-pub fn run(args: &MaterialsArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &MaterialsArgs, common: &Common) -> Result<Answer> {
     let table = Table::standard();
     let found = match &args.word {
         None => table.all().iter().collect(),

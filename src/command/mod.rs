@@ -1,8 +1,11 @@
 //! One file a command: arguments in, a library call, a report out. No geometry here.
 
+mod balance;
 mod check;
 mod inputs;
 mod materials;
+mod meshes;
+mod schema;
 mod weigh;
 mod whole;
 
@@ -14,6 +17,7 @@ use rayon::prelude::*;
 use serde::Serialize;
 
 use crate::error::{Error, Kind, Result, Warning};
+use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::table::Look;
 use crate::report::{Document, Failure, InputFact, PROGRAM, to_json};
 use inputs::Input;
@@ -35,7 +39,7 @@ struct Cli {
 
 /// Options that every command takes.
 #[derive(Args, Clone, Debug, Default)]
-pub struct Common {
+pub(crate) struct Common {
     /// Print one JSON document (SI units)
     #[arg(long, global = true)]
     json: bool,
@@ -56,8 +60,12 @@ enum Command {
     Check(check::CheckArgs),
     /// Give volume, area, centroid, mass and inertia of each body
     Weigh(weigh::WeighArgs),
+    /// Give mass, balance point and inertia of an assembly, and judge its limits
+    Balance(balance::BalanceArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
+    /// Print the JSON Schema of the assembly file
+    Schema,
     /// Print shell completions
     Completions {
         /// The shell they are for
@@ -68,7 +76,7 @@ enum Command {
 }
 
 /// What a command has to say.
-pub struct Answer {
+pub(crate) struct Answer {
     exit: u8,
     text: String,
     warnings: Vec<Warning>,
@@ -91,7 +99,9 @@ pub fn main() -> u8 {
     let result = match &cli.command {
         Command::Check(args) => check::run(args, &cli.common),
         Command::Weigh(args) => weigh::run(args, &cli.common),
+        Command::Balance(args) => balance::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
+        Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {
             let mut text = Vec::new();
             clap_complete::generate(*shell, &mut Cli::command(), "bismar", &mut text);
@@ -352,4 +362,22 @@ impl<T> Gathered<T> {
             errors,
         })
     }
+}
+
+/// A point as the options write it: three lengths parted by commas; bare numbers in `unit`. In m.
+fn point(text: &str, unit: LengthUnit) -> Result<[f64; 3]> {
+    let parts: Vec<&str> = text.split(',').collect();
+    let [x, y, z] = parts[..] else {
+        return Err(Error::new(
+            Kind::Usage,
+            format!("--about: \"{text}\" is not three lengths"),
+            "write three lengths parted by commas, such as 0,0,120",
+        ));
+    };
+    let length = |part: &str| {
+        Quantity::parse(part.trim(), Dimension::Length, Some(unit))
+            .map(|q| q.value)
+            .map_err(|e| Error::new(e.kind, format!("--about: {}", e.message), e.advice))
+    };
+    Ok([length(x)?, length(y)?, length(z)?])
 }

@@ -3,20 +3,20 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
-use super::{Answer, Common, gather, whole};
+use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule};
 use crate::moments::Moments;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
-use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile};
-use crate::report::{self, InputFact};
+use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
+use crate::report::{self, InputFact, path_hex};
 use crate::soundness;
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
-pub struct WeighArgs {
+pub(super) struct WeighArgs {
     #[command(flatten)]
     meshes: MeshArgs,
     /// Density of the solid, such as "7850 kg/m3 ± 1 %" or "2.70 g/cm3"
@@ -62,7 +62,7 @@ impl From<Nested> for NestedRule {
 ///
 /// # Errors
 /// Of the options; faults of inputs stand in the answer.
-pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
+pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
@@ -120,7 +120,7 @@ pub fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
         body,
         common,
         report::weigh_text::render,
-        |b| report::weigh_text::csv(b),
+        report::weigh_text::csv,
     )
 }
 
@@ -152,26 +152,13 @@ fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
 
 /// The point of `--about`, m.
 fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>> {
-    let Some(text) = text else { return Ok(None) };
-    let parts: Vec<&str> = text.split(',').collect();
-    let [x, y, z] = parts[..] else {
-        return Err(Error::new(
-            Kind::Usage,
-            format!("--about: \"{text}\" is not three lengths"),
-            "write three lengths parted by commas, such as 0,0,120",
-        ));
-    };
-    let length = |part: &str| {
-        Quantity::parse(part.trim(), Dimension::Length, Some(unit))
-            .map(|q| q.value)
-            .map_err(|e| Error::new(e.kind, format!("--about: {}", e.message), e.advice))
-    };
-    Ok(Some([length(x)?, length(y)?, length(z)?]))
+    text.map(|text| point(text, unit)).transpose()
 }
 
 fn unread(path: &std::path::Path, error: &Error, whole: bool) -> WeighedFile {
     WeighedFile {
         path: path.to_string_lossy().into_owned(),
+        path_hex: path_hex(path),
         format: None,
         triangles: None,
         unit: None,
@@ -212,11 +199,18 @@ fn answer(
         .map(|b| b.id.clone())
         .collect();
     let total = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
-        [one] => one.figures.clone(),
-        _ => together(&m.mesh, &chosen, metres, rule, substance, about),
+        [one] => Whole {
+            figures: one.figures.clone(),
+            uncertainty: None,
+        },
+        _ => Whole {
+            figures: together(&m.mesh, &chosen, metres, rule, substance, about),
+            uncertainty: None,
+        },
     });
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
+        path_hex: path_hex(&input.path),
         format: Some(m.format),
         triangles: Some(m.mesh.soup.triangles.count() as u64),
         unit: Some(m.unit.symbol()),

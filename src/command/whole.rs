@@ -13,8 +13,8 @@ use crate::masses::{Figures, Substance};
 use crate::mesh::{ReaderNote, each};
 use crate::moments::SolidIntegrals;
 use crate::quantity::LengthUnit;
-use crate::report::InputFact;
-use crate::report::weigh::WeighedFile;
+use crate::report::weigh::{WeighedFile, Whole};
+use crate::report::{InputFact, path_hex};
 use crate::stream::{self, Keys, Totals};
 
 /// Refuses inputs that pick a body: the whole knows none.
@@ -221,14 +221,18 @@ fn tell(
             moments: totals.solid.moments.weighted(sign),
             ..totals.solid
         };
-        whole = Some(Figures {
-            // K about the middle of the box is not known after one reading.
-            condition: None,
-            ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
+        whole = Some(Whole {
+            figures: Figures {
+                // K about the middle of the box is not known after one reading.
+                condition: None,
+                ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
+            },
+            uncertainty: None,
         });
     }
     let file = WeighedFile {
         path: path.clone(),
+        path_hex: path_hex(&input.path),
         format: Some(read.format.name()),
         triangles: Some(totals.triangles),
         unit: Some(unit.symbol()),

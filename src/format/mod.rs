@@ -1,6 +1,5 @@
 //! One file a file format: bytes in, [`Soup`](crate::mesh::Soup) out, errors with their place.
 
-mod bytes;
 mod chunk;
 mod kinds;
 mod number;
@@ -10,7 +9,7 @@ pub mod stl;
 use std::fmt;
 use std::path::Path;
 
-pub use bytes::Bytes;
+pub use crate::bytes::Bytes;
 pub use number::MAX_COORDINATE;
 
 use crate::error::{Error, Kind, Result};

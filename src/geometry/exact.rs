@@ -23,7 +23,7 @@ pub fn exact_volume_sign(facets: &impl Corners, select: Select<'_>) -> i8 {
     let smallest = (0..n)
         .flat_map(|i| facets.triangle(select.get(i)).into_iter().flatten())
         .filter(|x| *x != 0.0)
-        .map(|x| lowest_bit(x))
+        .map(lowest_bit)
         .min()
         .unwrap_or(0);
     let whole = |x: f64| -> BigInt {

@@ -28,7 +28,7 @@ pub fn turn_2d(a: &Point, b: &Point, c: &Point, u: usize, v: usize) -> i8 {
 }
 
 /// Whether three corners lie on one line, exactly.
-#[inline]
+#[inline(always)]
 pub fn is_flat(t: &[Point; 3]) -> bool {
     let [a, b, c] = t;
     let (u, v) = (

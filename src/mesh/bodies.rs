@@ -314,7 +314,7 @@ fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<R
     let mut home: Vec<usize> = (0..group.len()).collect();
     for a in 0..group.len() {
         if depth[a] % 2 == 1 {
-            let even = inside[a].iter().filter(|&&b| depth[b] % 2 == 0);
+            let even = inside[a].iter().filter(|&&b| depth[b].is_multiple_of(2));
             home[a] = even
                 .copied()
                 .max_by_key(|&b| (depth[b], usize::MAX - b))

@@ -4,6 +4,7 @@ use rayon::prelude::*;
 
 use super::buckets::{Buckets, hash2, random_seed};
 use super::union::Sets;
+use super::words::Words;
 
 /// One triangle's passage along an edge.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -18,9 +19,6 @@ pub(crate) struct Half {
     pub(crate) forward: bool,
 }
 
-/// Passages packed for sorting: low, high, 2·triangle + forward.
-type Packed = (u32, u32, u32);
-
 /// Of an edge of which only one passage is known yet.
 const NONE: u32 = u32::MAX;
 /// Of an edge that is not one passage each way by two triangles of one name.
@@ -34,27 +32,30 @@ pub(crate) fn match_edges(
     corners: &[[u32; 3]],
     name_of: &(dyn Fn(u32) -> u32 + Sync),
     sets: &Sets,
+    scratch: Words,
 ) -> Vec<Half> {
     let seed = random_seed();
-    let buckets = Buckets::<Packed>::fill(corners.len(), 3, |range, push| {
-        for t in range {
-            for (low, high, forward) in passages(corners[t]) {
-                let packed = (low, high, (t as u32) << 1 | u32::from(forward));
-                push(hash2(seed, u64::from(low), u64::from(high)), packed);
-            }
-        }
-    });
+    let buckets = Buckets::<3>::fill(
+        corners.len(),
+        Some(scratch),
+        |t| {
+            let [a, b, c] = corners[t];
+            let whole = a != b && b != c && c != a;
+            whole.then(|| [(a, b), (b, c), (c, a)].map(|(a, b)| packed(a, b, t as u32)))
+        },
+        |item| hash2(seed, u64::from(item[0]), u64::from(item[1])),
+    );
     let mut odd: Vec<Half> = (0..buckets.count())
         .into_par_iter()
         .fold(
             || (EdgeTable::default(), Vec::new()),
             |(mut table, mut odd), b| {
                 table.clear(buckets.len(b));
-                for &(low, high, passage) in buckets.segments(b).flat_map(|s| s.1) {
+                buckets.each(b, |&[low, high, passage]| {
                     table.see(low, high, passage, name_of);
-                }
+                });
                 if table.settle(sets) {
-                    for &(low, high, passage) in buckets.segments(b).flat_map(|s| s.1) {
+                    buckets.each(b, |&[low, high, passage]| {
                         if table.is_irregular(low, high) {
                             let forward = passage & 1 == 1;
                             odd.push(Half {
@@ -64,7 +65,7 @@ pub(crate) fn match_edges(
                                 forward,
                             });
                         }
-                    }
+                    });
                 }
                 (table, odd)
             },
@@ -78,14 +79,10 @@ pub(crate) fn match_edges(
     odd
 }
 
-/// The passages of a triangle, none where it has collapsed.
+/// The passage a → b of a triangle: low, high, 2·triangle + forward.
 #[inline(always)]
-pub(crate) fn passages(c: [u32; 3]) -> impl Iterator<Item = (u32, u32, bool)> {
-    let whole = c[0] != c[1] && c[1] != c[2] && c[2] != c[0];
-    [(c[0], c[1]), (c[1], c[2]), (c[2], c[0])]
-        .into_iter()
-        .filter(move |_| whole)
-        .map(|(a, b)| if a < b { (a, b, true) } else { (b, a, false) })
+fn packed(a: u32, b: u32, triangle: u32) -> [u32; 3] {
+    [a.min(b), a.max(b), triangle << 1 | u32::from(a < b)]
 }
 
 struct Edge {
@@ -169,12 +166,23 @@ impl EdgeTable {
     /// Joins across plain edges; says whether there are others.
     fn settle(&mut self, sets: &Sets) -> bool {
         let mut others = false;
-        for e in &mut self.edges {
-            if e.second < IRREGULAR {
-                sets.join(e.first >> 1, e.second >> 1);
-            } else {
-                e.second = IRREGULAR;
-                others = true;
+        // Neighbours in a shuffled file are far apart. Looking many up at once, before any is
+        // joined, lets the processor wait for all of them together.
+        const AT_ONCE: usize = 64;
+        let mut above = [(0u32, 0u32); AT_ONCE];
+        for block in self.edges.chunks_mut(AT_ONCE) {
+            let mut n = 0;
+            for e in block {
+                if e.second < IRREGULAR {
+                    above[n] = (sets.above(e.first >> 1), sets.above(e.second >> 1));
+                    n += 1;
+                } else {
+                    e.second = IRREGULAR;
+                    others = true;
+                }
+            }
+            for &(x, y) in &above[..n] {
+                sets.join(x, y);
             }
         }
         others

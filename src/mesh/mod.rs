@@ -11,6 +11,7 @@ mod tangle;
 mod union;
 mod wedge;
 mod weld;
+mod words;
 
 pub(crate) use bodies::Part;
 pub use bodies::{Body, Mesh, NestedRule, Refusal};

@@ -94,13 +94,14 @@ fn winding(hits: impl Iterator<Item = Position>) -> Option<i64> {
     Some(total)
 }
 
-/// The first of the vertices that lie furthest along +x: its ray meets the fewest triangles.
+/// The vertex that lies furthest along +x (then +y, then +z, so that the order of the file decides
+/// nothing): its ray meets the fewest triangles.
 fn foremost(f: &impl Corners, shell: &Shell) -> Point {
     let select = shell.members.select();
     let mut best = f.triangle(shell.first as usize)[0];
     for i in 0..shell.count {
         for p in f.triangle(select.get(i)) {
-            if p[0] > best[0] {
+            if p > best {
                 best = p;
             }
         }

@@ -97,7 +97,7 @@ impl Shells {
 
     /// Welds the soup and finds its shells.
     pub(crate) fn of(soup: &Soup) -> Result<Self> {
-        let corners = weld(&soup.triangles)?;
+        let (corners, scratch) = weld(&soup.triangles)?;
         let n = corners.len();
         let names = (soup.names.len() > 1).then(|| {
             let mut names = vec![0u32; n];
@@ -108,7 +108,7 @@ impl Shells {
         });
         let name_of = |t: u32| names.as_ref().map_or(0, |n| n[t as usize]);
         let mut sets = Sets::new(n);
-        let odd = match_edges(&corners, &name_of, &sets);
+        let odd = match_edges(&corners, &name_of, &sets, scratch);
         let mut duplicates = Duplicates::among(&odd, &corners, &name_of);
         let mut restored: Vec<u32> = Vec::new();
         if !odd.is_empty() {
@@ -178,8 +178,14 @@ impl Shells {
                     .copied()
                     .filter(|&t| sets.find(t) == first)
                     .collect(),
+                // The whole file is measured from its first vertex, as a single reading of it is,
+                // even where its first triangles have collapsed.
+                first: if matches!(members, Members::All) {
+                    0
+                } else {
+                    first
+                },
                 members,
-                first,
             })
             .collect();
         let drafts = join_names(drafts);

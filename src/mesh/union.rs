@@ -13,6 +13,12 @@ impl Sets {
         Self((0..n as u32).into_par_iter().map(AtomicU32::new).collect())
     }
 
+    /// A member of the same set that is no greater.
+    #[inline(always)]
+    pub(crate) fn above(&self, x: u32) -> u32 {
+        self.0[x as usize].load(Ordering::Relaxed)
+    }
+
     /// The same sets once more.
     pub(crate) fn copy(&self) -> Self {
         Self(

@@ -1,23 +1,26 @@
 //! Exact welding: corners whose coordinates are the same bits (−0 taken as 0) are one vertex.
 
-use std::sync::atomic::{AtomicU32, Ordering};
-
 use rayon::prelude::*;
 
 use super::Triangles;
 use super::buckets::{Buckets, hash2, random_seed};
+use super::words::Words;
 use crate::error::{Error, Kind, Result};
 
 /// Most triangles that the exact path audits: corners are numbered in 32 bits.
 pub const MOST_TRIANGLES: usize = (u32::MAX / 3) as usize;
 
-/// Vertex numbers after welding, three a triangle.
+/// Vertex numbers after welding, three a triangle, and the memory that the work was done in.
 ///
 /// A vertex's number is that of the first place, in file order, where its coordinates stand: a
 /// corner (3·triangle + corner) where corners are not shared, a row of the vertex list where they
 /// are.
-pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
-    if triangles.count() > MOST_TRIANGLES {
+pub(crate) fn weld(triangles: &Triangles) -> Result<(Vec<[u32; 3]>, Words)> {
+    let vertices = match triangles {
+        Triangles::Indexed { vertices, .. } => vertices.len(),
+        _ => 0,
+    };
+    if triangles.count() > MOST_TRIANGLES || vertices > MOST_TRIANGLES * 3 - 1 {
         return Err(Error::new(
             Kind::TooLarge,
             format!(
@@ -30,106 +33,98 @@ pub(crate) fn weld(triangles: &Triangles) -> Result<Vec<[u32; 3]>> {
     Ok(match triangles {
         Triangles::Records(r) => {
             let facets = r.facets();
-            weld_corners(triangles.count(), |t| {
-                facets.raw(t).map(|p| {
-                    // −0 + 0 is +0; every other value keeps its bits.
-                    let b = p.map(|x| (x + 0.0).to_bits());
-                    [u64::from(b[0]) | u64::from(b[1]) << 32, u64::from(b[2])]
-                })
+            first_places(triangles.count(), |t| {
+                let corner = 3 * t as u32;
+                let [p, q, r] = facets.raw(t).map(|p| p.map(bits32));
+                [
+                    [p[0], p[1], p[2], corner],
+                    [q[0], q[1], q[2], corner + 1],
+                    [r[0], r[1], r[2], corner + 2],
+                ]
             })
         }
-        Triangles::Loose(list) => weld_corners(list.len(), |t| list[t].map(key64)),
+        Triangles::Loose(list) => first_places(list.len(), |t| {
+            let corner = 3 * t as u32;
+            let [p, q, r] = list[t];
+            [
+                words64(p, corner),
+                words64(q, corner + 1),
+                words64(r, corner + 2),
+            ]
+        }),
         Triangles::Indexed { vertices, corners } => {
-            let first = weld_points(vertices.len(), |v| key64(vertices[v]));
-            corners
+            let (first, scratch) =
+                first_places(vertices.len(), |v| [words64(vertices[v], v as u32)]);
+            let corners = corners
                 .par_iter()
-                .map(|c| c.map(|v| first[v as usize]))
-                .collect()
+                .map(|c| c.map(|v| first[v as usize][0]))
+                .collect();
+            (corners, scratch)
         }
     })
 }
 
-fn key64(p: [f64; 3]) -> [u64; 3] {
-    p.map(|x| (x + 0.0).to_bits())
+/// −0 + 0 is +0; every other value keeps its bits.
+#[inline(always)]
+fn bits32(x: f32) -> u32 {
+    (x + 0.0).to_bits()
 }
 
-/// A key that welding compares: the coordinate bits.
-trait Key: Copy + Default + Eq + Send + Sync {
-    fn hash(self, seed: u64) -> u64;
+/// The bits of three coordinates, then the place.
+#[inline(always)]
+fn words64(p: [f64; 3], place: u32) -> [u32; 7] {
+    let b = p.map(|x| (x + 0.0).to_bits());
+    let (low, high) = (b.map(|x| x as u32), b.map(|x| (x >> 32) as u32));
+    [low[0], high[0], low[1], high[1], low[2], high[2], place]
 }
 
-impl Key for [u64; 2] {
-    #[inline(always)]
-    fn hash(self, seed: u64) -> u64 {
-        hash2(seed, self[0], self[1])
+/// For each place, the first place of the same key. An item is its key's words, then its place.
+/// Items of one key are all in one bucket, in order, so each bucket can be done alone.
+fn first_places<const W: usize, const M: usize>(
+    n: usize,
+    items: impl Fn(usize) -> [[u32; W]; M] + Sync,
+) -> (Vec<[u32; M]>, Words) {
+    let seed = random_seed();
+    let mut buckets = Buckets::<W>::fill(n, None, |i| Some(items(i)), |item| hash(seed, item));
+    buckets.rewrite(Table::default, |table: &mut Table<W>, len, segments| {
+        table.clear(len);
+        for segment in segments {
+            segment.each(|item| table.first(item));
+        }
+    });
+    (buckets.last_words(n), buckets.into_scratch())
+}
+
+/// Hash of an item's key.
+#[inline(always)]
+fn hash<const W: usize>(seed: u64, item: &[u32; W]) -> u64 {
+    let pair = |i: usize| u64::from(item[i]) | u64::from(item[i + 1]) << 32;
+    let mut h = seed;
+    let mut i = 0;
+    while i + 3 < W - 1 {
+        h = hash2(h, pair(i), pair(i + 2));
+        i += 4;
+    }
+    match W - 1 - i {
+        3 => hash2(h, pair(i), u64::from(item[i + 2])),
+        2 => hash2(h, pair(i), 0),
+        1 => hash2(h, u64::from(item[i]), 0),
+        _ => h,
     }
 }
 
-impl Key for [u64; 3] {
-    #[inline(always)]
-    fn hash(self, seed: u64) -> u64 {
-        hash2(hash2(seed, self[0], self[1]), self[2], 1)
-    }
-}
-
-fn weld_corners<K: Key>(n: usize, keys: impl Fn(usize) -> [K; 3] + Sync) -> Vec<[u32; 3]> {
-    let seed = random_seed();
-    let buckets = Buckets::<(K, u32)>::fill(n, 3, |range, push| {
-        for t in range {
-            for (k, key) in keys(t).into_iter().enumerate() {
-                push(key.hash(seed), (key, (3 * t + k) as u32));
-            }
-        }
-    });
-    let out: Vec<AtomicU32> = (0..3 * n)
-        .into_par_iter()
-        .map(|_| AtomicU32::new(0))
-        .collect();
-    first_places(&buckets, &out);
-    out.par_chunks_exact(3)
-        .map(|c| [0, 1, 2].map(|k: usize| c[k].load(Ordering::Relaxed)))
-        .collect()
-}
-
-fn weld_points<K: Key>(n: usize, key: impl Fn(usize) -> K + Sync) -> Vec<u32> {
-    let seed = random_seed();
-    let buckets = Buckets::<(K, u32)>::fill(n, 1, |range, push| {
-        for v in range {
-            let k = key(v);
-            push(k.hash(seed), (k, v as u32));
-        }
-    });
-    let out: Vec<AtomicU32> = (0..n).into_par_iter().map(|_| AtomicU32::new(0)).collect();
-    first_places(&buckets, &out);
-    out.into_iter().map(AtomicU32::into_inner).collect()
-}
-
-/// For each place, the first place of the same key. Places of one key are all in one bucket, in
-/// order, so each bucket can be done alone.
-fn first_places<K: Key>(buckets: &Buckets<(K, u32)>, out: &[AtomicU32]) {
-    (0..buckets.count())
-        .into_par_iter()
-        .for_each_init(Table::default, |table, b| {
-            table.clear(buckets.len(b));
-            for (_, segment) in buckets.segments(b) {
-                for &(key, place) in segment {
-                    out[place as usize].store(table.first(key, place), Ordering::Relaxed);
-                }
-            }
-        });
-}
-
-/// Open addressing with the key beside its first place.
-struct Table<K> {
-    slots: Vec<(K, u32)>,
+/// Open addressing: keys with their first places.
+struct Table<const W: usize> {
+    slots: Vec<[u32; W]>,
     used: usize,
     seed: u64,
 }
 
-/// Marks an empty slot; no place has this number, since triangles are limited to a third of it.
+/// Marks an empty slot; no place has this number, since triangles are limited to a third of it
+/// and vertices of one file to as many.
 const EMPTY: u32 = u32::MAX;
 
-impl<K> Default for Table<K> {
+impl<const W: usize> Default for Table<W> {
     fn default() -> Self {
         Self {
             slots: Vec::new(),
@@ -139,47 +134,48 @@ impl<K> Default for Table<K> {
     }
 }
 
-impl<K: Key> Table<K> {
+impl<const W: usize> Table<W> {
     fn clear(&mut self, items: usize) {
         // Most meshes have six corners to a vertex; the table grows where one has fewer.
         let size = (items / 2).next_power_of_two().max(16);
         self.slots.clear();
-        self.slots.resize(size, (K::default(), EMPTY));
+        self.slots.resize(size, [EMPTY; W]);
         self.used = 0;
     }
 
+    /// The first place of the item's key; the item's own where it is the first.
     #[inline(always)]
-    fn first(&mut self, key: K, place: u32) -> u32 {
+    fn first(&mut self, item: &[u32; W]) -> u32 {
         let mask = self.slots.len() - 1;
-        let mut at = key.hash(self.seed) as usize & mask;
+        let mut at = hash(self.seed, item) as usize & mask;
         loop {
-            let slot = self.slots[at];
-            if slot.1 == EMPTY {
+            let slot = &self.slots[at];
+            if slot[W - 1] == EMPTY {
                 break;
             }
-            if slot.0 == key {
-                return slot.1;
+            if slot[..W - 1] == item[..W - 1] {
+                return slot[W - 1];
             }
             at = (at + 1) & mask;
         }
-        self.slots[at] = (key, place);
+        self.slots[at] = *item;
         self.used += 1;
         if self.used * 2 > self.slots.len() {
             self.grow();
         }
-        place
+        item[W - 1]
     }
 
     #[cold]
     fn grow(&mut self) {
         let size = self.slots.len() * 2;
-        let old = std::mem::replace(&mut self.slots, vec![(K::default(), EMPTY); size]);
-        for (key, place) in old.into_iter().filter(|s| s.1 != EMPTY) {
-            let mut at = key.hash(self.seed) as usize & (size - 1);
-            while self.slots[at].1 != EMPTY {
+        let old = std::mem::replace(&mut self.slots, vec![[EMPTY; W]; size]);
+        for item in old.into_iter().filter(|s| s[W - 1] != EMPTY) {
+            let mut at = hash(self.seed, &item) as usize & (size - 1);
+            while self.slots[at][W - 1] != EMPTY {
                 at = (at + 1) & (size - 1);
             }
-            self.slots[at] = (key, place);
+            self.slots[at] = item;
         }
     }
 }
@@ -205,7 +201,7 @@ mod tests {
                 let key = p.map(|x| (x + 0.0).to_bits());
                 want.push(*seen.entry(key).or_insert(i as u32));
             }
-            let got = weld(&Triangles::Loose(list)).unwrap();
+            let (got, _) = weld(&Triangles::Loose(list)).unwrap();
             prop_assert_eq!(got.concat(), want);
         }
     }

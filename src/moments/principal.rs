@@ -70,7 +70,7 @@ pub fn principal(tensor: &Matrix3<f64>) -> Principal {
     let third = first.cross(&second);
     Principal {
         moments,
-        axes: [first, second, third].map(|a| [a.x, a.y, a.z]),
+        axes: [first, second, third].map(|a| [a.x + 0.0, a.y + 0.0, a.z + 0.0]),
         free,
     }
 }
@@ -160,7 +160,7 @@ mod tests {
             prop_assert!(p.moments[0] <= p.moments[1] && p.moments[1] <= p.moments[2]);
             for axis in &p.axes[..2] {
                 let largest = axis.iter().fold(0.0f64, |m, x| m.max(x.abs()));
-                prop_assert!(axis.iter().any(|x| *x == largest));
+                prop_assert!(axis.contains(&largest));
             }
         }
     }

@@ -339,9 +339,11 @@ fn terms_of<P: Product>(x: &[[f64; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> [f64;
         let (i, j) = second[k];
         out[4 + k] = d * ((a[i] * a[j] + b[i] * b[j]) + (c[i] * c[j] + s[i] * s[j]));
     }
-    out[10] = (n[0] * n[0] + n[1] * n[1] + n[2] * n[2]).sqrt();
+    // The area vector rounded once: of a long thin facet the first part alone is off by far more.
+    let w = [n[0] + nl[0], n[1] + nl[1], n[2] + nl[2]];
+    out[10] = (w[0] * w[0] + w[1] * w[1] + w[2] * w[2]).sqrt();
     out[VOLUME_LOW] = dl;
-    out[ABSOLUTE] = (d - (m[0] * n[0] + m[1] * n[1] + m[2] * n[2])).abs();
+    out[ABSOLUTE] = (d - (m[0] * w[0] + m[1] * w[1] + m[2] * w[2])).abs();
     out
 }
 

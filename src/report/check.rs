@@ -15,8 +15,11 @@ pub struct CheckBody {
 /// What is said of one file.
 #[derive(Clone, Debug, Serialize)]
 pub struct CheckedFile {
-    /// As given.
+    /// As given; lossy where it is not UTF-8.
     pub path: String,
+    /// The path's bytes in hexadecimal, where it is not UTF-8.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub path_hex: Option<String>,
     /// Name of the format; null where it could not be read.
     pub format: Option<&'static str>,
     /// Triangles, after polygons have been cut.

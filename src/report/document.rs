@@ -38,13 +38,7 @@ pub struct InputFact {
 impl InputFact {
     /// Of an input at `path`.
     pub fn new(path: &Path, bytes: Option<u64>, sha256: Option<String>) -> Self {
-        let path_hex = path.to_str().is_none().then(|| {
-            path.as_os_str()
-                .as_encoded_bytes()
-                .iter()
-                .map(|b| format!("{b:02x}"))
-                .collect()
-        });
+        let path_hex = path_hex(path);
         Self {
             path: path.to_string_lossy().into_owned(),
             path_hex,
@@ -52,6 +46,17 @@ impl InputFact {
             sha256,
         }
     }
+}
+
+/// The bytes of a path that is not UTF-8, in hexadecimal.
+pub fn path_hex(path: &Path) -> Option<String> {
+    path.to_str().is_none().then(|| {
+        path.as_os_str()
+            .as_encoded_bytes()
+            .iter()
+            .map(|b| format!("{b:02x}"))
+            .collect()
+    })
 }
 
 /// A document: the common head, then what the command adds.

@@ -1,5 +1,6 @@
 //! What people and programs read. Renderers compute nothing: they print what results hold.
 
+pub mod balance;
 pub mod check;
 pub mod check_text;
 pub mod digits;
@@ -13,5 +14,5 @@ pub mod weigh_text;
 mod whole_text;
 mod words;
 
-pub use document::{Document, Failure, InputFact, PROGRAM, Program, to_json};
+pub use document::{Document, Failure, InputFact, PROGRAM, Program, path_hex, to_json};
 pub use footer::{CAUTION, footer};

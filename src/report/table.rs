@@ -291,7 +291,7 @@ impl Table {
         let mut out = String::new();
         let titles = self.columns.iter().map(|c| c.title.clone()).collect();
         self.line(&mut out, titles, widths, look, &|_| Mark::Heading);
-        if self.columns.iter().any(|c| c.unit.is_some()) {
+        if self.columns.iter().any(|c| !c.unit_text().is_empty()) {
             let units = self.columns.iter().map(Column::unit_text).collect();
             self.line(&mut out, units, widths, look, &|_| Mark::Dim);
         }

@@ -16,8 +16,11 @@ pub struct WeighBody {
 /// What is said of one file.
 #[derive(Clone, Debug, Serialize)]
 pub struct WeighedFile {
-    /// As given.
+    /// As given; lossy where it is not UTF-8.
     pub path: String,
+    /// The path's bytes in hexadecimal, where it is not UTF-8.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub path_hex: Option<String>,
     /// Name of the format; null where it could not be read.
     pub format: Option<&'static str>,
     /// Triangles, after polygons have been cut.
@@ -35,7 +38,7 @@ pub struct WeighedFile {
     /// Its bodies; null where only the whole was asked for.
     pub bodies: Option<Vec<WeighedBody>>,
     /// All bodies together; null where one of them cannot be weighed.
-    pub whole: Option<Figures>,
+    pub whole: Option<Whole>,
     /// The bodies for want of which there is no whole.
     pub whole_missing: Vec<String>,
     /// What was proved of the surface, null for nothing; absent where bodies were asked for.
@@ -44,6 +47,16 @@ pub struct WeighedFile {
     /// Whether the whole came out negative and was turned; absent where bodies were asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub turned: Option<bool>,
+}
+
+/// All bodies of a file together.
+#[derive(Clone, Debug, Serialize)]
+pub struct Whole {
+    /// Volume, mass, centres, inertia.
+    #[serde(flatten)]
+    pub figures: Figures,
+    /// How far the figures may be off; null where it was not computed.
+    pub uncertainty: Option<()>,
 }
 
 /// What is said of one body.

@@ -5,7 +5,7 @@ use super::digits::{Scale, significant, tensor};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh::{WeighBody, WeighedBody, WeighedFile};
-use super::words::{box_size, file_heading, kind_word, point, unit_of};
+use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
 use crate::masses::Figures;
 use crate::quantity::LengthUnit;
@@ -26,7 +26,7 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
             .iter()
             .flatten()
             .map(|b| &b.figures)
-            .chain(&f.whole)
+            .chain(f.whole.as_ref().map(|w| &w.figures))
             .any(|f| f.mass_kg.is_some())
     });
     if weighed {
@@ -51,7 +51,10 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     }
     let unit = unit_of(file.unit);
     let bodies = file.bodies.as_deref().unwrap_or_default();
-    let first = bodies.first().map(|b| &b.figures).or(file.whole.as_ref());
+    let first = bodies
+        .first()
+        .map(|b| &b.figures)
+        .or(file.whole.as_ref().map(|w| &w.figures));
     out.push_str(&substance(first));
     if file.bodies.is_none() {
         out.push_str(&super::whole_text::render(file, unit, look));
@@ -91,7 +94,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     if readable.len() > 1
         && let Some(whole) = &file.whole
     {
-        out.push_str(&in_full("all bodies together", whole, unit, look));
+        out.push_str(&in_full("all bodies together", &whole.figures, unit, look));
     }
     out.push_str(
         "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
@@ -206,7 +209,7 @@ pub(super) fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) ->
         ]);
         let free = f.axes_free.as_deref().unwrap_or_default();
         for i in 0..3 {
-            let axis = axes[i].map(|x| format!("{:+.5}", x + 0.0)).join(" ");
+            let axis = direction(&axes[i]);
             let axis = if free.contains(&i) {
                 format!("{axis} (free)")
             } else {
@@ -273,7 +276,7 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => table.total(cells("total", whole, unit, scale)),
+            Some(whole) => table.total(cells("total", &whole.figures, unit, scale)),
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
@@ -309,8 +312,12 @@ pub(super) fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> 
             Cell::figure(significant(scale.of(m), 6), scale.of(m))
         }),
     ];
-    for k in 0..3 {
-        row.push(figure(f.centroid_m.map(|c| c[k] / unit.metres()), 1.0));
+    match (&f.centroid_m, &f.bounds_m) {
+        (Some(c), Some(b)) => {
+            let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
+            row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
+        }
+        _ => row.extend([Cell::empty(), Cell::empty(), Cell::empty()]),
     }
     row.push(
         f.bounds_m
@@ -356,7 +363,13 @@ pub fn csv(body: &WeighBody) -> Result<String> {
             (b.id.as_str(), refused, Some(&b.figures))
         });
         let whole = file.bodies.is_none() && file.error.is_none();
-        let whole = whole.then(|| ("", super::whole_text::refusal(file), file.whole.as_ref()));
+        let whole = whole.then(|| {
+            (
+                "",
+                super::whole_text::refusal(file),
+                file.whole.as_ref().map(|w| &w.figures),
+            )
+        });
         let unknown = Figures::unknown(None);
         for (id, refused, figures) in bodies.chain(whole) {
             let f = figures.unwrap_or(&unknown);

@@ -2,7 +2,7 @@
 
 use super::digits::Scale;
 use super::table::{Look, Mark};
-use super::weigh::WeighedFile;
+use super::weigh::{WeighedFile, Whole};
 use super::weigh_text::{cells, columns, in_full};
 use crate::quantity::LengthUnit;
 
@@ -18,7 +18,7 @@ pub(super) fn refusal(file: &WeighedFile) -> &'static str {
 /// The totals of a file, and what was proved of it.
 pub(super) fn render(file: &WeighedFile, unit: LengthUnit, look: Look) -> String {
     let mut out = String::from("\n");
-    if let Some(whole) = &file.whole {
+    if let Some(Whole { figures: whole, .. }) = &file.whole {
         let scale = Scale::for_mass(whole.mass_kg.unwrap_or(0.0).abs());
         let mut table = columns("all together", unit, scale);
         table.row(cells("total", whole, unit, scale));

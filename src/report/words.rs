@@ -7,7 +7,7 @@ use crate::soundness::FindingKind;
 use crate::text::shown;
 
 /// The unit of a symbol; mm where there is none.
-pub fn unit_of(symbol: Option<&str>) -> LengthUnit {
+pub(super) fn unit_of(symbol: Option<&str>) -> LengthUnit {
     [
         LengthUnit::Mm,
         LengthUnit::Cm,
@@ -21,7 +21,7 @@ pub fn unit_of(symbol: Option<&str>) -> LengthUnit {
 }
 
 /// Path, format, size and unit of a file.
-pub fn file_heading(
+pub(super) fn file_heading(
     path: &str,
     format: Option<&str>,
     triangles: Option<u64>,
@@ -42,20 +42,83 @@ pub fn file_heading(
 }
 
 /// Size of a box, such as `600 × 400 × 80`.
-pub fn box_size(bounds_m: &[[f64; 3]; 2], unit: LengthUnit) -> String {
-    [0, 1, 2]
-        .map(|k| significant(length_in(bounds_m[1][k] - bounds_m[0][k], unit), 6))
-        .join(" × ")
+pub(super) fn box_size(bounds_m: &[[f64; 3]; 2], unit: LengthUnit) -> String {
+    let sides = [0, 1, 2].map(|k| length_in(bounds_m[1][k] - bounds_m[0][k], unit));
+    column(&sides).map(|s| trimmed(&s)).join(" × ")
 }
 
-/// A point, such as `(1.5, 0, −3) mm`.
-pub fn point(at_m: &[f64; 3], unit: LengthUnit) -> String {
-    let p = at_m.map(|x| significant(length_in(x, unit), 6));
+/// A point, such as `(1.5, 0, -3) mm`.
+pub(super) fn point(at_m: &[f64; 3], unit: LengthUnit) -> String {
+    let p = column(&at_m.map(|x| length_in(x, unit))).map(|s| trimmed(&s));
     format!("({}, {}, {}) {}", p[0], p[1], p[2], unit.symbol())
 }
 
+/// Three lengths to the same decimal place, the largest with six digits or, where that is far,
+/// tenths of a thousandth of the unit: what is below the largest one's rounding shows as zero.
+fn column(x: &[f64; 3]) -> [String; 3] {
+    let largest = x.iter().fold(0.0f64, |m, v| m.max(v.abs()));
+    if !largest.is_finite() || largest >= 1e9 || (largest < 1e-3 && largest > 0.0) {
+        return x.map(|v| significant(v, 6));
+    }
+    let decimals = (5 - largest.max(1e-3).log10().floor() as i32).clamp(0, 9) as usize;
+    x.map(|v| format!("{v:.decimals$}"))
+}
+
+/// The three coordinates of a point in table cells: to six digits of the largest length about it,
+/// so that rounding dust shows as zero.
+pub(super) fn coordinates(at_m: &[f64; 3], size_m: f64, unit: LengthUnit) -> [(String, f64); 3] {
+    let p = at_m.map(|x| length_in(x, unit));
+    let scale = p
+        .iter()
+        .fold(length_in(size_m, unit), |m, x| m.max(x.abs()));
+    let shown = column(&[scale, scale, scale]);
+    let decimals = shown[0].split_once('.').map_or(0, |(_, d)| d.len());
+    p.map(|x| {
+        if shown[0].contains('e') {
+            return (significant(x, 6), x);
+        }
+        let text = format!("{x:.decimals$}");
+        let zero = text.bytes().all(|b| matches!(b, b'-' | b'0' | b'.'));
+        (
+            if zero {
+                text.trim_start_matches('-').to_owned()
+            } else {
+                text
+            },
+            x,
+        )
+    })
+}
+
+/// A direction as its three components, to five places.
+pub(super) fn direction(axis: &[f64; 3]) -> String {
+    axis.map(|x| {
+        let text = format!("{x:+.5}");
+        if text == "-0.00000" {
+            "+0.00000".to_owned()
+        } else {
+            text
+        }
+    })
+    .join(" ")
+}
+
+/// Without the zeros behind the point that say nothing, and without a negative zero.
+fn trimmed(text: &str) -> String {
+    let text = if text.contains('.') && !text.contains('e') {
+        text.trim_end_matches('0').trim_end_matches('.')
+    } else {
+        text
+    };
+    if text == "-0" {
+        "0".to_owned()
+    } else {
+        text.to_owned()
+    }
+}
+
 /// What a finding counts, in words.
-pub fn kind_word(kind: FindingKind, count: u64) -> &'static str {
+pub(super) fn kind_word(kind: FindingKind, count: u64) -> &'static str {
     let one = count == 1;
     match kind {
         FindingKind::Hole if one => "hole",

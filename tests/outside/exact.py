@@ -30,8 +30,10 @@ def compare(tally, what, got, m):
     worst = max(abs(Fraction(got["volume_inertia_m5"][i][j]) - exact[i][j])
                 for i in range(3) for j in range(3))
     tally.check(what, "inertia", worst, 1e-13 * norm * condition)
-    # K itself is a float sum of as many terms.
-    tally.check(what, "condition", abs(got["condition"] / condition - 1), 1e-9)
+    # K itself is a float sum of as many terms. Concave polygons are fans here, whose terms partly
+    # cancel: the program's own triangles may give a smaller K, never a larger one, nor one below V.
+    tally.check(what, "condition", max(0, got["condition"] / condition - 1), 1e-9)
+    tally.check(what, "condition's least", max(0, 1 - got["condition"]), 1e-9)
 
 
 class Recorded:

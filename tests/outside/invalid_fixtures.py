@@ -11,13 +11,14 @@ def write(root, cube):
     entries = []
 
     def bad(name, data, kinds, line=None, byte=None):
-        """`line`: where the fault stands; `byte`: [first, last] offsets that name it."""
+        """`line`: where the fault stands (or [first, last]); `byte`: [first, last] offsets that name it."""
         path = root / "invalid" / name
         path.parent.mkdir(parents=True, exist_ok=True)
         if data is not None:
             path.write_bytes(data)
         entries.append({"path": f"invalid/{name}", "check_exit": 2, "weigh_exit": 2,
-                        "error": {"kinds": kinds, "line": line, "byte": byte},
+                        "error": {"kinds": kinds, "line": [line, line] if isinstance(line, int) else line,
+                                  "byte": byte},
                         "source": "counted by hand"})
 
     whole = stl_binary(cube)
@@ -48,7 +49,9 @@ def write(root, cube):
     bad("infinity-ascii.stl", with_line(11, "      vertex 0 inf 0"), ["not-finite"], line=11)
     bad("overflow-ascii.stl", with_line(11, "      vertex 0 1e999 0"), ["not-finite"], line=11)
     bad("word-for-number-ascii.stl", with_line(12, "      vertex 0 ten 0"), ["bad-number"], line=12)
-    bad("two-coordinates-ascii.stl", with_line(13, "      vertex 0 10"), ["bad-number"], line=13)
+    bad("two-coordinates-ascii.stl", with_line(13, "      vertex 0 10"), ["bad-number"],
+        # The third number is missed where line 13 ends, or where line 14 has a word instead.
+        line=[13, 14])
     head = "\n".join(text[:10]) + "\n      vertex 10.0 -1.2e"
     bad("cut-mid-number-ascii.stl", head.encode(), ["truncated", "bad-number"], line=11)
     head = "\n".join(text[:13])

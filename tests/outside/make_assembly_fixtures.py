@@ -47,7 +47,7 @@ def bad(name, text, *faults):
     for kinds, piece in faults:
         lines = [i for i, l in enumerate(text.splitlines(), 1) if piece and piece in l]
         assert len(lines) == (1 if piece else 0), (name, piece, lines)
-        errors.append({"kinds": kinds, "line": lines[0] if lines else None})
+        errors.append({"kinds": kinds, "line": [lines[0]] * 2 if lines else None})
     entry(name, text, 2, errors=errors)
 
 

@@ -176,7 +176,11 @@ def solids():
                "closed form of the polygon: n/2 sin(2 pi/n) R^2 h; " + EXACT)
     c = [(0, 0), (30, 0), (30, 30), (20, 30), (20, 10), (10, 10), (10, 30), (0, 30)]
     faces = prism(c[2:] + c[:2], 0, 5)
-    simple("polygon-concave.obj", obj([("channel", faces)]), fans(faces), "channel",
+    # For area and K the ends are cut into rectangles: a fan's triangles would overlap.
+    ends = [[(x, y, z) for x, y in (q if z else q[::-1])] for z in (0, 5) for q in (
+        [(0, 0), (30, 0), (30, 10), (0, 10)], [(0, 10), (10, 10), (10, 30), (0, 30)],
+        [(20, 10), (30, 10), (30, 30), (20, 30)])]
+    simple("polygon-concave.obj", obj([("channel", faces)]), fans(faces[2:] + ends), "channel",
            "closed form: (30*30 - 10*20) * 5; a fan from the first corner leaves the outline",
            Fraction(3500))
     outer, inner = box(), flipped(box((2, 2, 2), (8, 8, 8)))
@@ -289,7 +293,7 @@ def defects():
     crack = fans(halves[0] + halves[1])
     fixture("crack-one-ulp.stl", stl_binary(crack), 20, None,
             "counted by hand: two rings of four edges, one ulp (2^-21 mm) apart", 1, 1,
-            [finding("crack", "blocks", 1)])
+            [finding("crack", "blocks", 1)], may=["hole"])
     a, b = (0, 0, 0), (10, 0, 0)
     fixture("degenerate-two-corners-alike.stl", stl_binary(CUBE + [[a, b, b]]), 13,
             [body("degenerate-two-corners-alike", None, CUBE, V, findings=["degenerate"],

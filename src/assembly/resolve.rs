@@ -1,0 +1,418 @@
+//! The assembly against its meshes: every thing with its mass moments where it stands.
+
+use std::collections::{HashMap, HashSet};
+use std::path::PathBuf;
+
+use nalgebra::{Matrix3, Vector3};
+use serde::Serialize;
+
+use super::assign::{self, Used};
+use super::choose::{Bodies, Choice};
+use super::expand::{self, Instance, What};
+use super::expect::{self, Expectation};
+use super::file::{Part, Substance};
+use super::load::{Input, Loaded};
+use super::source::MeshFiles;
+use super::{listed, notes, sum};
+use crate::error::{Error, Kind, Warning};
+use crate::moments::Moments;
+
+/// Where a mass comes from.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize)]
+#[serde(rename_all = "lowercase")]
+pub enum Basis {
+    /// Volume of the mesh times density.
+    Computed,
+    /// The scale; the mesh says how it is spread.
+    Measured,
+    /// Stated for a bought-in item.
+    Stated,
+}
+
+/// What a mass is the mass of.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Source {
+    /// Bodies of a mesh file.
+    Mesh {
+        /// As typed.
+        file: String,
+        /// The body's id where it is one, else the name that took them, else none.
+        body: Option<String>,
+        /// Ids of all of them.
+        bodies: Vec<String>,
+    },
+    /// A bought-in item.
+    Item,
+}
+
+/// The mass of one body of a part, where it stands in the assembly.
+#[derive(Clone, Debug)]
+pub struct Piece {
+    /// Its material; none where a measured part names none, and for items.
+    pub material: Option<Substance>,
+    /// kg, kg m, kg m², in the assembly's axes.
+    pub moments: Moments,
+}
+
+/// One thing that stands in the assembly, weighed.
+#[derive(Clone, Debug)]
+pub struct Weighed {
+    /// Such as `boom/nozzle#2`.
+    pub path: String,
+    /// Paths of its groups, outermost first.
+    pub groups: Vec<String>,
+    /// Where its mass comes from.
+    pub source: Source,
+    /// What that mass rests on.
+    pub basis: Basis,
+    /// Its bodies, or the item itself.
+    pub pieces: Vec<Piece>,
+    /// Their sum.
+    pub moments: Moments,
+    /// m³, of the mesh.
+    pub volume: Option<f64>,
+    /// Measured mass / volume, kg/m³.
+    pub implied_density: Option<f64>,
+    /// Box along the assembly's axes, m.
+    pub bounds: [[f64; 3]; 2],
+}
+
+/// All of it.
+#[derive(Clone, Debug)]
+pub struct Resolved {
+    /// What could be weighed, in file order.
+    pub weighed: Vec<Weighed>,
+    /// Parts against the figures that they must have.
+    pub expectations: Vec<Expectation>,
+    /// Bodies that cannot be weighed; where there are any, there is no total.
+    pub refused: Vec<Error>,
+    /// What was assumed or looks odd.
+    pub warnings: Vec<Warning>,
+    /// The assembly files, then the meshes.
+    pub inputs: Vec<Input>,
+}
+
+/// Weighs every thing of an assembly.
+///
+/// # Errors
+/// All faults found in the light of the meshes: one that cannot be read, a body that is not
+/// there, a part without a material. A body that cannot be weighed is among `refused`.
+pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, Vec<Error>> {
+    let instances = expand::expand(&loaded.file);
+    let mut work = Work::default();
+    for instance in &instances {
+        if let What::Part(part) = instance.what {
+            work.choice.choose(instance, part, meshes);
+        }
+    }
+    if !work.choice.errors.is_empty() {
+        return Err(work.choice.errors);
+    }
+    let mut out = Resolved {
+        weighed: Vec::with_capacity(instances.len()),
+        expectations: Vec::new(),
+        refused: Vec::new(),
+        warnings: loaded.warnings.clone(),
+        inputs: loaded.inputs.clone(),
+    };
+    for instance in &instances {
+        let weighed = match instance.what {
+            What::Item(item) => {
+                let mass = item.shape.moments(item.mass.value);
+                let half = item.shape.half_extent(&instance.placement.turn);
+                let at = instance.placement.at;
+                let moments = mass.placed(&instance.placement);
+                Some(Weighed {
+                    path: instance.path.clone(),
+                    groups: instance.groups.to_vec(),
+                    source: Source::Item,
+                    basis: Basis::Stated,
+                    pieces: vec![Piece {
+                        material: None,
+                        moments,
+                    }],
+                    moments,
+                    volume: None,
+                    implied_density: None,
+                    bounds: [(at - half).into(), (at + half).into()],
+                })
+            }
+            What::Part(part) => work.part(instance, part, &mut out),
+        };
+        out.weighed.extend(weighed);
+    }
+    if !work.errors.is_empty() {
+        return Err(work.errors);
+    }
+    work.choice.unused_bodies(&mut out.warnings);
+    notes::unused_rules(loaded, &work.used, &mut out.warnings);
+    notes::table_tolerances(&mut out);
+    for path in &work.choice.order {
+        out.inputs.extend(meshes.input(path));
+    }
+    Ok(out)
+}
+
+/// What is kept while an assembly is resolved. Entries are known by their address: they live as
+/// long as the loaded file, and a repeat is the same entry.
+#[derive(Default)]
+struct Work {
+    choice: Choice,
+    /// Boxes by entry and turn: repeats that stand alike need no second look at the vertices.
+    boxes: HashMap<(*const Part, [u64; 9]), [[f64; 3]; 2]>,
+    /// Which entry put which body where.
+    stands: HashMap<(PathBuf, String, [u64; 12]), (*const Part, String)>,
+    used: Used,
+    /// Entries whose warnings have been given.
+    said: HashSet<*const Part>,
+    errors: Vec<Error>,
+}
+
+impl Work {
+    /// Weighs a part where it stands; `None` where it cannot be, which is then said.
+    fn part(
+        &mut self,
+        instance: &Instance<'_>,
+        part: &Part,
+        out: &mut Resolved,
+    ) -> Option<Weighed> {
+        let key: *const Part = part;
+        let first = self.said.insert(key);
+        let bodies = self.choice.of(part)?.clone();
+        let mut refused = false;
+        for body in &bodies {
+            let figures = body.figures();
+            let volume = figures.moments.zeroth;
+            let why = match &figures.refused {
+                Some(r) => Some((r.message.clone(), r.advice.clone())),
+                None if !(volume > 0.0 && volume.is_finite()) => Some((
+                    format!("its volume is {volume:e} m³"),
+                    "check the mesh".to_string(),
+                )),
+                None => None,
+            };
+            let Some((why, advice)) = why else { continue };
+            refused = true;
+            if first {
+                let message = format!(
+                    "part `{}`: body `{}` of `{}` cannot be weighed: {why}",
+                    instance.path, figures.id, part.mesh.typed
+                );
+                let mut error = instance.error(Kind::NotClosed, message, advice);
+                error.line = Some(part.mesh.line);
+                out.refused.push(error);
+            }
+        }
+        if refused {
+            return None;
+        }
+        let materials = self.materials(instance, part, &bodies)?;
+        let volume = sum::sum(bodies.iter().map(|b| b.figures().moments.zeroth));
+        // Mass moments in the mesh file's axes. Without densities the measured mass is spread
+        // evenly over the volume.
+        let computed: Vec<Moments> = bodies
+            .iter()
+            .zip(&materials)
+            .map(|(body, material)| {
+                let density = material.as_ref().map_or(1.0, |m| m.density.value);
+                body.figures().moments.weighted(density)
+            })
+            .collect();
+        let computed_mass = sum::sum(computed.iter().map(|m| m.zeroth));
+        let known = materials.iter().all(Option::is_some);
+        let factor = part.measured.map_or(1.0, |m| m.value / computed_mass);
+        if let (Some(measured), true, true) = (part.measured, known, first) {
+            let table = computed_mass / volume;
+            let spread = sum::sum(materials.iter().zip(&bodies).map(|(m, b)| {
+                let tolerance = m.as_ref().and_then(|m| m.density.tolerance);
+                tolerance.map_or(0.0, |t| t.amount) * b.figures().moments.zeroth / volume
+            }));
+            out.warnings.extend(notes::odd_density(
+                instance,
+                part,
+                measured.value / volume,
+                table,
+                spread,
+            ));
+        }
+        self.twice(instance, part, &bodies, &mut out.warnings);
+        let own = sum::total(computed.iter());
+        if let Some(expect) = &part.expect {
+            let figures = expect::Figures {
+                volume,
+                mass: if known {
+                    computed_mass
+                } else {
+                    computed_mass * factor
+                },
+                centre: own.centre(),
+                bounds: around(bodies.iter().map(|b| b.figures().bounds)),
+            };
+            for row in expect::judge(instance.path.as_str(), expect, &figures) {
+                // Repeats are the same mesh: what is told of the first is not told again.
+                let same = |e: &Expectation| e.quantity == row.quantity && e.value == row.value;
+                if first || !out.expectations.iter().any(same) {
+                    out.expectations.push(row);
+                }
+            }
+        }
+        let pieces: Vec<Piece> = materials
+            .into_iter()
+            .zip(&computed)
+            .map(|(material, moments)| Piece {
+                material,
+                moments: moments.weighted(factor).placed(&instance.placement),
+            })
+            .collect();
+        let moments = match pieces.as_slice() {
+            [one] => one.moments,
+            _ => sum::total(pieces.iter().map(|p| &p.moments)),
+        };
+        let ids: Vec<String> = bodies.iter().map(|b| b.figures().id.clone()).collect();
+        let body = match ids.as_slice() {
+            [one] => Some(one.clone()),
+            _ => part.mesh.body.clone(),
+        };
+        let bounds = self.bounds(instance, part, &bodies);
+        Some(Weighed {
+            path: instance.path.clone(),
+            groups: instance.groups.to_vec(),
+            source: Source::Mesh {
+                file: part.mesh.typed.clone(),
+                body,
+                bodies: ids,
+            },
+            basis: if part.measured.is_some() {
+                Basis::Measured
+            } else {
+                Basis::Computed
+            },
+            pieces,
+            moments,
+            volume: Some(volume),
+            implied_density: part.measured.map(|m| m.value / volume),
+            bounds,
+        })
+    }
+
+    /// The material of each body of a part. All `None` only for a measured part that names none.
+    fn materials(
+        &mut self,
+        instance: &Instance<'_>,
+        part: &Part,
+        bodies: &Bodies,
+    ) -> Option<Vec<Option<Substance>>> {
+        let mut materials = Vec::with_capacity(bodies.len());
+        let mut without = Vec::new();
+        let mut fault = false;
+        for body in bodies {
+            match assign::material_of(instance, body.figures(), &mut self.used) {
+                Ok(material) => {
+                    if material.is_none() {
+                        without.push(body.figures().id.as_str());
+                    }
+                    materials.push(material);
+                }
+                Err(assign::Ambiguous(message)) => {
+                    fault = true;
+                    self.errors.push(instance.error(
+                        Kind::AmbiguousName,
+                        format!("part `{}`: {message}", instance.path),
+                        "write `material` on the part, or make the rules agree",
+                    ));
+                }
+            }
+        }
+        let spread_evenly = part.measured.is_some() && without.len() == bodies.len();
+        if !without.is_empty() && !spread_evenly {
+            fault = true;
+            let advice = "write `material` on the part, or an [[assign]] whose `body` or `part` \
+                          matches; `bismar materials` lists the table";
+            self.errors.push(instance.error(
+                Kind::UnknownName,
+                format!(
+                    "part `{}` has no material for {}",
+                    instance.path,
+                    match without.len() {
+                        1 => format!("body {}", listed(&without)),
+                        n => format!("{n} bodies: {}", listed(&without)),
+                    }
+                ),
+                advice,
+            ));
+        }
+        (!fault).then_some(materials)
+    }
+
+    fn bounds(&mut self, instance: &Instance<'_>, part: &Part, bodies: &Bodies) -> [[f64; 3]; 2] {
+        let turn = &instance.placement.turn;
+        let mut bits = [0; 9];
+        for (bit, x) in bits.iter_mut().zip(turn.iter()) {
+            *bit = x.to_bits();
+        }
+        let turned = *self.boxes.entry((part, bits)).or_insert_with(|| {
+            let as_is = *turn == Matrix3::identity();
+            around(bodies.iter().map(|b| match as_is {
+                true => b.figures().bounds,
+                false => b.bounds_turned(turn),
+            }))
+        });
+        turned.map(|corner| (Vector3::from(corner) + instance.placement.at).into())
+    }
+
+    /// Warns where another entry puts the same body in the same place: it is then counted twice.
+    fn twice(
+        &mut self,
+        instance: &Instance<'_>,
+        part: &Part,
+        bodies: &Bodies,
+        warnings: &mut Vec<Warning>,
+    ) {
+        let mut bits = [0; 12];
+        let p = &instance.placement;
+        for (bit, x) in bits.iter_mut().zip(p.turn.iter().chain(p.at.iter())) {
+            // −0 is 0.
+            *bit = (x + 0.0).to_bits();
+        }
+        let mut twice: Vec<(String, String)> = Vec::new();
+        for body in bodies {
+            let id = body.figures().id.clone();
+            let key = (part.mesh.path.clone(), id.clone(), bits);
+            match self.stands.get(&key) {
+                Some((other, path)) if !std::ptr::eq(*other, part) => {
+                    twice.push((id, path.clone()));
+                }
+                Some(_) => {}
+                None => {
+                    self.stands.insert(key, (part, instance.path.clone()));
+                }
+            }
+        }
+        if let Some((_, other)) = twice.first() {
+            let ids: Vec<&str> = twice.iter().map(|(id, _)| id.as_str()).collect();
+            warnings.push(notes::warning(
+                instance,
+                "counted-twice",
+                format!(
+                    "`{}` and `{other}` put the same bodies in the same place, and both are \
+                     counted: {}",
+                    instance.path,
+                    listed(&ids)
+                ),
+                "take one of them out, name single bodies with #, or write `count` if there are two",
+            ));
+        }
+    }
+}
+
+/// The box around boxes, m.
+pub(super) fn around(boxes: impl Iterator<Item = [[f64; 3]; 2]>) -> [[f64; 3]; 2] {
+    boxes.fold(
+        [[f64::INFINITY; 3], [f64::NEG_INFINITY; 3]],
+        |[lo, hi], [l, h]| {
+            let least = std::array::from_fn(|n| lo[n].min(l[n]));
+            let greatest = std::array::from_fn(|n| hi[n].max(h[n]));
+            [least, greatest]
+        },
+    )
+}

@@ -1,0 +1,203 @@
+//! The published schema says what the reader reads.
+
+use std::collections::{BTreeMap, BTreeSet};
+use std::path::Path;
+
+use super::*;
+use crate::assembly::reader::Shared;
+use crate::assembly::{load, read, tree};
+
+/// A file in which every table stands.
+const FULL: &str = r#"
+[assembly]
+name = "all of it"
+unit = "mm"
+[[assign]]
+body = "frame*"
+part = "*"
+material = "own"
+[material.own]
+density = "7850 kg/m3 ± 1 %"
+source = "a mill sheet"
+note = "rolled"
+[[part]]
+name = "frame"
+mesh = "frame.obj#frame"
+unit = "cm"
+material = "own"
+at = [0, "1 cm", 120]
+turn = { axis = [0, 0, 1], angle = "90 deg" }
+mirror = "x"
+measured = "6.31 kg ± 5 g"
+each = "independent"
+expect = { volume = "1 cm3", mass = "1 kg ± 50 %", size = [1, 2, 3], centre = [0, 0, 0] }
+[[part]]
+name = "second"
+mesh = "frame.obj"
+places = [[0, 0, 0], [1, 0, 0]]
+[[item]]
+name = "box"
+mass = "1 kg"
+at = [0, 0, 0]
+turn = { axis = "z", angle = "90 deg" }
+box = [1, 2, 3]
+count = 2
+each = "shared"
+[[item]]
+name = "roll"
+mass = "1 kg"
+cylinder = { radius = 1, height = 2 }
+[[item]]
+name = "ball"
+mass = "1 kg"
+sphere = 3
+places = [[0, 0, 0]]
+[[item]]
+name = "motor"
+mass = "1 kg"
+inertia = { xx = "1 kg m2", yy = "1 kg m2", zz = "1 kg m2", xy = "0.1 kg m2", xz = "0.1 kg m2", yz = "0.1 kg m2" }
+[[group]]
+name = "boom"
+at = [0, 0, 0]
+turn = { axis = "y", angle = "5 deg" }
+mirror = [1, 0, 0]
+count = 2
+include = "inner.toml"
+[[group.part]]
+mesh = "frame.obj#frame"
+[[group.item]]
+name = "nut"
+mass = "1 g"
+[[group.group]]
+name = "tip"
+places = [[0, 0, 0]]
+[[limit]]
+name = "all"
+mass = { from = "1 kg", to = "2 kg" }
+centre.x = { from = 1, to = 2 }
+centre.y = { from = 1 }
+centre.z = { to = 2 }
+"#;
+
+fn bench() -> Bench {
+    let bench = Bench::new().mesh("frame.obj", vec![block("frame", [0.0; 3], [1.0; 3])]);
+    bench.put(
+        "inner.toml",
+        "[assembly]\nunit = \"m\"\n[[item]]\nname = \"x\"\nmass = \"1 kg\"\n",
+    );
+    bench
+}
+
+/// The keys of each object of the schema, found by the titles of the reader's tables.
+fn published() -> BTreeMap<String, BTreeSet<String>> {
+    let schema = schema();
+    let mut tables = BTreeMap::new();
+    let mut note = |name: &str, object: &serde_json::Value| {
+        if let Some(properties) = object["properties"].as_object() {
+            assert_eq!(object["additionalProperties"], false, "{name}");
+            tables.insert(name.to_string(), properties.keys().cloned().collect());
+        }
+    };
+    note("AssemblyFile", &schema);
+    for (name, object) in schema["$defs"].as_object().unwrap() {
+        note(name, object);
+    }
+    tables
+}
+
+#[test]
+fn keys_of_reader_and_schema_agree() {
+    let bench = bench();
+    let path = bench.dir.path().join("it.toml");
+    let (entries, faults) = tree::parse(FULL, false);
+    let mut shared = Shared::new(&path, faults);
+    read::file(&mut shared, &entries.unwrap(), &mut load::Loader::default());
+    assert_eq!(shared.take_faults(), []);
+    let names = [
+        ("assembly file", vec!["AssemblyFile"]),
+        ("assembly", vec!["Head"]),
+        ("assign", vec!["Assign"]),
+        ("material", vec!["Material"]),
+        ("part", vec!["Part"]),
+        ("turn", vec!["Turn"]),
+        ("expect", vec!["Expect"]),
+        ("item", vec!["Item"]),
+        ("cylinder", vec!["Cylinder"]),
+        ("inertia", vec!["Inertia"]),
+        ("group", vec!["Group"]),
+        ("limit", vec!["Limit"]),
+        ("centre of a limit", vec!["Centre"]),
+        ("band of a limit", vec!["Band", "MassBand"]),
+    ];
+    let published = published();
+    let read = shared.known();
+    assert_eq!(read.len(), names.len(), "{:?}", read.keys());
+    let mut seen = 0;
+    for (table, objects) in names {
+        let keys: BTreeSet<String> = read[table].iter().map(|k| k.to_string()).collect();
+        for object in objects {
+            assert_eq!(keys, published[object], "{table} and {object}");
+            seen += 1;
+        }
+    }
+    assert_eq!(seen, published.len(), "{:?}", published.keys());
+}
+
+#[test]
+fn the_schema_takes_the_full_file_and_refuses_a_slip() {
+    let mut value: serde_json::Value = toml::from_str(FULL).unwrap();
+    let validator = jsonschema::validator_for(&schema()).unwrap();
+    let faults: Vec<String> = validator
+        .iter_errors(&value)
+        .map(|e| e.to_string())
+        .collect();
+    assert_eq!(faults, Vec::<String>::new());
+    value["part"][0]["masss"] = "1 kg".into();
+    assert!(!validator.is_valid(&value));
+}
+
+/// The committed schema is the current one. `UPDATE_SCHEMAS=1` rewrites it.
+#[test]
+fn the_committed_schema_is_current() {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("schemas/assembly.schema.json");
+    let text = serde_json::to_string_pretty(&schema()).unwrap() + "\n";
+    if std::env::var_os("UPDATE_SCHEMAS").is_some() {
+        std::fs::create_dir_all(path.parent().unwrap()).unwrap();
+        std::fs::write(&path, &text).unwrap();
+    }
+    let committed = std::fs::read_to_string(&path).unwrap_or_default();
+    assert!(
+        committed == text,
+        "run the tests with UPDATE_SCHEMAS=1 and commit {}",
+        path.display()
+    );
+}
+
+/// The same file as JSON means the same.
+#[test]
+fn json_of_the_same_shape() {
+    let mut bench = bench();
+    bench.put("it.toml", FULL);
+    let value: serde_json::Value = toml::from_str(FULL).unwrap();
+    bench.put("it.json", &serde_json::to_string_pretty(&value).unwrap());
+    bench.put("bare", &value.to_string());
+    let (toml, _) = bench.balance("it.toml").unwrap();
+    for name in ["it.json", "bare"] {
+        let (json, _) = bench.balance(name).unwrap();
+        let sorted = |b: &Balance| {
+            let mut rows: Vec<_> = b
+                .parts
+                .iter()
+                .map(|p| (p.path.clone(), p.mass_kg))
+                .collect();
+            rows.sort_by(|a, b| a.0.cmp(&b.0));
+            rows
+        };
+        assert_eq!(sorted(&toml), sorted(&json));
+        near(
+            toml.total.as_ref().unwrap().mass_kg,
+            json.total.unwrap().mass_kg,
+        );
+        assert_eq!(json.limits.len(), 4);
+    }
+}

@@ -1,0 +1,121 @@
+//! Mesh files as an assembly asks for them: read once each, kept, hashed.
+
+use std::collections::BTreeMap;
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use nalgebra::Matrix3;
+
+use super::inputs::digest;
+use crate::assembly::{BodyFigures, Input, MeshBody, MeshFiles, Refusal};
+use crate::error::{Error, Result};
+use crate::format::{self, Bytes};
+use crate::mesh::{Body, Mesh};
+use crate::quantity::LengthUnit;
+
+/// Reads mesh files for an assembly.
+#[derive(Default)]
+pub(super) struct Files {
+    read: BTreeMap<(PathBuf, &'static str), Vec<Arc<dyn MeshBody>>>,
+    inputs: BTreeMap<PathBuf, Input>,
+}
+
+struct Placed {
+    mesh: Arc<Mesh>,
+    body: Body,
+    metres: f64,
+    figures: BodyFigures,
+}
+
+impl MeshBody for Placed {
+    fn figures(&self) -> &BodyFigures {
+        &self.figures
+    }
+
+    fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {
+        self.mesh
+            .bounds_turned(&self.body, turn)
+            .map(|p| p.map(|x| x * self.metres))
+    }
+}
+
+impl MeshFiles for Files {
+    fn bodies(&mut self, path: &Path, unit: LengthUnit) -> Result<Vec<Arc<dyn MeshBody>>, Error> {
+        let key = (path.to_path_buf(), unit.symbol());
+        if let Some(bodies) = self.read.get(&key) {
+            return Ok(bodies.clone());
+        }
+        let bytes = Bytes::open(path)?;
+        self.inputs.insert(
+            path.to_path_buf(),
+            Input {
+                path: path.to_string_lossy().into_owned(),
+                bytes: bytes.len() as u64,
+                sha256: Some(digest(&bytes)),
+            },
+        );
+        let soup = format::read(bytes, path, None)?;
+        // Formats that state their unit are believed before the assembly's word for all.
+        let metres = soup.unit.unwrap_or(unit).metres();
+        let stem = path
+            .file_stem()
+            .map_or("body".into(), |s| s.to_string_lossy());
+        let mesh = Arc::new(Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?);
+        let bodies: Vec<Arc<dyn MeshBody>> = mesh
+            .bodies()
+            .iter()
+            .map(|body| {
+                let placed = Placed {
+                    figures: figures(&mesh, body, metres),
+                    body: body.clone(),
+                    mesh: Arc::clone(&mesh),
+                    metres,
+                };
+                Arc::new(placed) as Arc<dyn MeshBody>
+            })
+            .collect();
+        self.read.insert(key, bodies.clone());
+        Ok(bodies)
+    }
+
+    fn input(&mut self, path: &Path) -> Option<Input> {
+        self.inputs.get(path).cloned()
+    }
+}
+
+fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
+    let solid = mesh.solid(body, None);
+    let moments = match &solid {
+        Ok(s) => s.moments.scaled(metres),
+        Err(_) => crate::moments::Moments::zero(nalgebra::Vector3::zeros()),
+    };
+    BodyFigures {
+        id: body.id.clone(),
+        name: body.name.clone(),
+        joined: body.joined.clone(),
+        materials: body.materials.clone(),
+        moments,
+        area: mesh.area(body) * metres * metres,
+        bounds: body.bounds.map(|p| p.map(|x| x * metres)),
+        condition: solid
+            .as_ref()
+            .ok()
+            .and_then(|s| s.condition())
+            .unwrap_or(f64::INFINITY),
+        refused: solid.err().map(|r| Refusal {
+            kind: r.kind.to_owned(),
+            message: match r.kind {
+                "not-closed" => format!(
+                    "it is not closed: {} open edges in {} boundary loop{}",
+                    r.open_edges,
+                    r.loops,
+                    if r.loops == 1 { "" } else { "s" }
+                ),
+                "duplicate" => "facets stand twice in it and cannot be dropped".to_owned(),
+                "nested-solid" => "a solid lies within its solid".to_owned(),
+                _ => "it holds no volume".to_owned(),
+            },
+            advice: r.advice,
+        }),
+    }
+}
