@@ -180,11 +180,7 @@ impl Shells {
                     .collect(),
                 // The whole file is measured from its first vertex, as a single reading of it is,
                 // even where its first triangles have collapsed.
-                first: if matches!(members, Members::All) {
-                    0
-                } else {
-                    first
-                },
+                first: if matches!(members, Members::All) { 0 } else { first },
                 members,
             })
             .collect();
