@@ -25,6 +25,7 @@ pub mod moments;
 pub mod quantity;
 pub mod report;
 pub mod soundness;
+pub mod stream;
 pub mod text;
 
 pub use error::{Error, Kind, Result, Warning};

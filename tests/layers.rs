@@ -13,6 +13,7 @@ const ROWS: &[&[&str]] = &[
     &["moments"],
     &["mesh"],
     &["format"],
+    &["stream"],
     &["soundness"],
     &["masses", "material"],
     &["limits"],

@@ -7,7 +7,7 @@ use sha2::{Digest, Sha256};
 
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Family};
-use crate::mesh::{Body, Mesh};
+use crate::mesh::{Body, Mesh, ReaderNote};
 use crate::quantity::LengthUnit;
 use crate::report::InputFact;
 
@@ -174,28 +174,7 @@ pub(super) fn digest(bytes: &[u8]) -> String {
 pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
     let kind = format::detect(&bytes, &input.path, args.format)?;
     let soup = format::read(bytes, &input.path, args.format)?;
-    let shown = input.path.to_string_lossy().into_owned();
-    let mut warnings: Vec<Warning> = soup
-        .notes
-        .iter()
-        .map(|n| Warning {
-            kind: n.kind.to_owned(),
-            message: n.message.clone(),
-            path: Some(shown.clone()),
-            line: n.line,
-            advice: n.advice.to_owned(),
-        })
-        .collect();
-    let stated = args.unit.or(soup.unit);
-    if stated.is_none() {
-        warnings.push(Warning {
-            kind: "unit-assumed".to_owned(),
-            message: "the file states no length unit; mm is assumed".to_owned(),
-            path: Some(shown),
-            line: None,
-            advice: "say --unit mm, cm, m, in or ft".to_owned(),
-        });
-    }
+    let (unit, unit_assumed, warnings) = said(soup.unit, &soup.notes, input, args);
     let stem = input
         .path
         .file_stem()
@@ -205,10 +184,41 @@ pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadM
     Ok(ReadMesh {
         mesh,
         format: kind.name(),
-        unit: stated.unwrap_or_default(),
-        unit_assumed: stated.is_none(),
+        unit,
+        unit_assumed,
         warnings,
     })
+}
+
+/// The unit of a mesh, whether it was assumed, and the warnings: of the reader, and of that.
+pub(super) fn said(
+    own: Option<LengthUnit>,
+    notes: &[ReaderNote],
+    input: &Input,
+    args: &MeshArgs,
+) -> (LengthUnit, bool, Vec<Warning>) {
+    let shown = input.path.to_string_lossy().into_owned();
+    let mut warnings: Vec<Warning> = notes
+        .iter()
+        .map(|n| Warning {
+            kind: n.kind.to_owned(),
+            message: n.message.clone(),
+            path: Some(shown.clone()),
+            line: n.line,
+            advice: n.advice.to_owned(),
+        })
+        .collect();
+    let stated = args.unit.or(own);
+    if stated.is_none() {
+        warnings.push(Warning {
+            kind: "unit-assumed".to_owned(),
+            message: "the file states no length unit; mm is assumed".to_owned(),
+            path: Some(shown),
+            line: None,
+            advice: "say --unit mm, cm, m, in or ft".to_owned(),
+        });
+    }
+    (stated.unwrap_or_default(), stated.is_none(), warnings)
 }
 
 /// The bodies that a pick means: all of that name, or the one with that id.

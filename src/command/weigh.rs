@@ -3,7 +3,7 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
-use super::{Answer, Common, gather, point};
+use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
@@ -36,6 +36,10 @@ pub(super) struct WeighArgs {
     /// Give the inertia tensor about this point too (bare numbers in the mesh's unit)
     #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
     about: Option<String>,
+    /// Give totals alone, in one reading with little memory: proves that edges cancel, and does not
+    /// see doubled meshes, solids in solids or single shells inside out
+    #[arg(long, conflicts_with = "nested")]
+    whole: bool,
 }
 
 /// Choices of `--nested`.
@@ -67,7 +71,16 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
-    let mut answers = gather(expand(&args.meshes), |input| {
+    let inputs = expand(&args.meshes);
+    if args.whole {
+        whole::without_picks(&inputs)?;
+    }
+    let mut answers = gather(inputs, |input| {
+        if args.whole {
+            return whole::answer(input, &args.meshes, substance.as_ref(), |unit| {
+                about_point(args.about.as_deref(), unit)
+            });
+        }
         let (bytes, fact) = match open(input, args.meshes.hash) {
             Ok(opened) => opened,
             Err(e) => return (None, Err(e)),
@@ -81,14 +94,16 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     for one in &answers.each {
         match &one.result {
             Ok(file) => {
-                let all = !file.bodies.as_deref().unwrap_or_default().is_empty()
-                    && file.whole_missing.is_empty();
+                let all = match &file.bodies {
+                    Some(bodies) => !bodies.is_empty() && file.whole_missing.is_empty(),
+                    None => file.whole.is_some(),
+                };
                 exit = exit.max(u8::from(!all));
                 files.push(file.clone());
             }
             Err(e) => {
                 exit = 2;
-                files.push(unread(&one.path, e));
+                files.push(unread(&one.path, e, args.whole));
             }
         }
     }
@@ -145,7 +160,7 @@ fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>>
     text.map(|text| point(text, unit)).transpose()
 }
 
-fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
+fn unread(path: &std::path::Path, error: &Error, whole: bool) -> WeighedFile {
     WeighedFile {
         path: path.to_string_lossy().into_owned(),
         path_hex: path_hex(path),
@@ -156,10 +171,12 @@ fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
         error: Some(error.clone()),
         findings: Vec::new(),
         overlap: "untested",
-        bodies: Some(Vec::new()),
+        bodies: (!whole).then(Vec::new),
         whole: None,
         whole_estimate: None,
         whole_missing: Vec::new(),
+        proved: whole.then_some(None),
+        turned: None,
     }
 }
 
@@ -198,12 +215,12 @@ fn answer(
         .filter(|b| b.refused.is_some())
         .map(|b| b.id.clone())
         .collect();
-    let (whole, whole_estimate) = if !missing.is_empty() || bodies.is_empty() {
+    let (total, whole_estimate) = if !missing.is_empty() || bodies.is_empty() {
         (None, None)
     } else if let [one] = &bodies[..] {
         (Some(one.figures.clone()), one.estimate)
     } else {
-        let sum = whole(&m.mesh, &chosen, metres, rule, substance, about);
+        let sum = together(&m.mesh, &chosen, metres, rule, substance, about);
         if args.filled {
             let (f, e) = whole_filled(&m.mesh, &chosen, metres, &sum, substance, about);
             (Some(f), e)
@@ -230,12 +247,14 @@ fn answer(
             Some(_) => "counted-once",
         },
         bodies: Some(bodies),
-        whole: whole.map(|figures| Whole {
+        whole: total.map(|figures| Whole {
             figures,
             uncertainty: None,
         }),
         whole_estimate,
         whole_missing: missing,
+        proved: None,
+        turned: None,
     };
     Ok((file, m.warnings.clone(), fact.clone()))
 }
@@ -365,7 +384,7 @@ fn whole_filled(
 
 /// All bodies together: their moments added about the first one's point, in file order. Where
 /// nested solids count once, a body inside one of them adds nothing.
-fn whole(
+fn together(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
     metres: f64,

@@ -56,7 +56,11 @@ fn containers_in(f: &impl Corners, shells: &[&Shell]) -> Vec<Vec<usize>> {
             for i in k * BLOCK..shells[b].count.min((k + 1) * BLOCK) {
                 let t = f.triangle(select.get(i));
                 grid.near(&t, |a, p| {
-                    if a != b && encloses(shells[b], shells[a]) {
+                    let under = |k: usize| {
+                        t[0][k].min(t[1][k]).min(t[2][k]) <= p[k]
+                            && p[k] <= t[0][k].max(t[1][k]).max(t[2][k])
+                    };
+                    if under(1) && under(2) && a != b && encloses(shells[b], shells[a]) {
                         match ray_crossing(p, &t) {
                             Position::Misses => {}
                             hit => hits.push((a, b, hit)),
@@ -158,6 +162,7 @@ fn compare(p: &Point, q: &Point) -> std::cmp::Ordering {
 /// Points sorted into square cells of the (y, z) plane.
 struct Grid {
     low: [f64; 2],
+    high: [f64; 2],
     per_unit: [f64; 2],
     side: usize,
     cells: BTreeMap<usize, Vec<(usize, Point)>>,
@@ -181,6 +186,7 @@ impl Grid {
         });
         let mut grid = Self {
             low,
+            high,
             per_unit,
             side,
             cells: BTreeMap::new(),
@@ -206,6 +212,15 @@ impl Grid {
             let high = t[0][k + 1].max(t[1][k + 1]).max(t[2][k + 1]);
             (self.row(k, low), self.row(k, high))
         };
+        // Most triangles of most meshes cover none of the points.
+        let outside = |k: usize| {
+            let low = t[0][k + 1].min(t[1][k + 1]).min(t[2][k + 1]);
+            let high = t[0][k + 1].max(t[1][k + 1]).max(t[2][k + 1]);
+            high < self.low[k] || low > self.high[k]
+        };
+        if outside(0) || outside(1) {
+            return;
+        }
         let ((y0, y1), (z0, z1)) = (span(0), span(1));
         for y in y0..=y1 {
             for (_, points) in self.cells.range(y * self.side + z0..=y * self.side + z1) {

@@ -44,6 +44,12 @@ pub struct WeighedFile {
     pub whole_estimate: Option<Estimate>,
     /// The bodies for want of which there is no whole.
     pub whole_missing: Vec<String>,
+    /// What was proved of the surface, null for nothing; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub proved: Option<Option<&'static str>>,
+    /// Whether the whole came out negative and was turned; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub turned: Option<bool>,
 }
 
 /// All bodies of a file together.

@@ -25,7 +25,9 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
         f.bodies
             .iter()
             .flatten()
-            .any(|b| b.figures.mass_kg.is_some())
+            .map(|b| &b.figures)
+            .chain(f.whole.as_ref().map(|w| &w.figures))
+            .any(|f| f.mass_kg.is_some())
     });
     if weighed {
         out.push_str(&format!("{CAUTION}\n"));
@@ -49,19 +51,14 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     }
     let unit = unit_of(file.unit);
     let bodies = file.bodies.as_deref().unwrap_or_default();
-    let first = bodies.first().map(|b| &b.figures);
-    if let Some(density) = first.and_then(|f| f.density_kg_m3) {
-        let name = first
-            .and_then(|f| f.material.as_deref())
-            .map_or(String::new(), |m| format!("{m}, "));
-        out.push_str(&format!(
-            "material: {name}{} kg/m3, solid\n",
-            significant(density, 6)
-        ));
-    } else {
-        out.push_str(
-            "no density given: volume figures only (--density or --material gives masses)\n",
-        );
+    let first = bodies
+        .first()
+        .map(|b| &b.figures)
+        .or(file.whole.as_ref().map(|w| &w.figures));
+    out.push_str(&substance(first));
+    if file.bodies.is_none() {
+        out.push_str(&super::whole_text::render(file, unit, look));
+        return out;
     }
     out.push('\n');
     out.push_str(&table(file, unit).render(look));
@@ -128,6 +125,22 @@ fn estimated(id: &str, e: &Estimate) -> String {
     )
 }
 
+/// What the figures are of.
+fn substance(first: Option<&Figures>) -> String {
+    let Some(first) = first else {
+        return String::new();
+    };
+    let Some(density) = first.density_kg_m3 else {
+        return "no density given: volume figures only (--density or --material gives masses)\n"
+            .to_owned();
+    };
+    let name = first
+        .material
+        .as_deref()
+        .map_or(String::new(), |m| format!("{m}, "));
+    format!("material: {name}{} kg/m3, solid\n", significant(density, 6))
+}
+
 fn refusal(b: &WeighedBody, look: Look) -> String {
     let Some(r) = &b.refused else {
         return String::new();
@@ -182,7 +195,7 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 }
 
 /// Centre, tensor, principal moments and axes of one thing.
-fn in_full(
+pub(super) fn in_full(
     title: &str,
     f: &Figures,
     estimate: Option<&Estimate>,
@@ -310,17 +323,7 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
         .filter_map(|b| b.figures.mass_kg)
         .fold(0.0f64, |m, x| m.max(x.abs()));
     let scale = Scale::for_mass(heaviest);
-    let u = unit.symbol();
-    let mut table = Table::new(vec![
-        Column::text("id", "body"),
-        Column::figures("volume_cm3", "volume", "cm3"),
-        Column::figures("area_cm2", "area", "cm2"),
-        Column::figures("mass", "mass", scale.symbol),
-        Column::figures("x", "centre x", u),
-        Column::figures("y", "y", u),
-        Column::figures("z", "z", u),
-        Column::text("size", &format!("box, {u}")),
-    ]);
+    let mut table = columns("body", unit, scale);
     for b in bodies {
         let name = if b.refused.is_some() {
             format!("{} (refused)", b.id)
@@ -343,7 +346,22 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     table
 }
 
-fn cells(
+/// The table of figures, still empty.
+pub(super) fn columns(what: &str, unit: LengthUnit, scale: Scale) -> Table {
+    let u = unit.symbol();
+    Table::new(vec![
+        Column::text("id", what),
+        Column::figures("volume_cm3", "volume", "cm3"),
+        Column::figures("area_cm2", "area", "cm2"),
+        Column::figures("mass", "mass", scale.symbol),
+        Column::figures("x", "centre x", u),
+        Column::figures("y", "y", u),
+        Column::figures("z", "z", u),
+        Column::text("size", &format!("box, {u}")),
+    ])
+}
+
+pub(super) fn cells(
     name: &str,
     f: &Figures,
     estimate: Option<&Estimate>,
@@ -417,8 +435,21 @@ pub fn csv(body: &WeighBody) -> Result<String> {
     columns.extend(keys.iter().map(|k| Column::figures(k, k, "")));
     let mut table = Table::new(columns);
     for file in &body.files {
-        for b in file.bodies.iter().flatten() {
-            let f = &b.figures;
+        let bodies = file.bodies.iter().flatten().map(|b| {
+            let refused = b.refused.as_ref().map_or("", |r| r.kind);
+            (b.id.as_str(), refused, Some(&b.figures))
+        });
+        let whole = file.bodies.is_none() && file.error.is_none();
+        let whole = whole.then(|| {
+            (
+                "",
+                super::whole_text::refusal(file),
+                file.whole.as_ref().map(|w| &w.figures),
+            )
+        });
+        let unknown = Figures::unknown(None);
+        for (id, refused, figures) in bodies.chain(whole) {
+            let f = figures.unwrap_or(&unknown);
             let i = |a: usize, b: usize| f.inertia_kg_m2.map(|t| t[a][b]);
             let c = |k: usize| f.centroid_m.map(|c| c[k]);
             let size = |k: usize| f.bounds_m.map(|b| b[1][k] - b[0][k]);
@@ -440,11 +471,7 @@ pub fn csv(body: &WeighBody) -> Result<String> {
                 size(1),
                 size(2),
             ];
-            let mut row = vec![
-                Cell::text(&file.path),
-                Cell::text(&b.id),
-                Cell::text(b.refused.as_ref().map_or("", |r| r.kind)),
-            ];
+            let mut row = vec![Cell::text(&file.path), Cell::text(id), Cell::text(refused)];
             row.extend(figures.map(|x| x.map_or_else(Cell::empty, |x| Cell::figure("", x))));
             table.row(row);
         }
