@@ -9,12 +9,10 @@ use std::sync::atomic::AtomicU32;
 
 use rayon::prelude::*;
 
-use super::words::Words;
-
 /// Items in buckets: `W` words each.
 pub(crate) struct Buckets<const W: usize> {
     /// Chunk after chunk; in a chunk, bucket after bucket.
-    items: Words,
+    items: Vec<u32>,
     /// For each chunk, where in it each bucket starts, and the end.
     starts: Vec<u32>,
     /// The bucket of each item, in source order, chunk after chunk.
@@ -31,13 +29,13 @@ const ITEMS_A_BUCKET: usize = 32_768;
 
 impl<const W: usize> Buckets<W> {
     /// Sorts the items of sources `0..n` into buckets: `M` of each source, or none. `scratch` is
-    /// memory that an earlier run gave back.
+    /// memory that an earlier run gave back, or none.
     pub(crate) fn fill<const M: usize>(
         n: usize,
-        scratch: Option<Words>,
+        scratch: Vec<u32>,
         items_of: impl Fn(usize) -> Option<[[u32; W]; M]> + Sync,
-        hash: impl Fn(&[u32; W]) -> u64 + Sync,
     ) -> Self {
+        let hash = Hash::<W>::default();
         let bits = (n.saturating_mul(M) / ITEMS_A_BUCKET)
             .next_power_of_two()
             .trailing_zeros()
@@ -48,10 +46,14 @@ impl<const W: usize> Buckets<W> {
         let sources = (count * 48 / M).clamp(8192, 1 << 18);
         let chunks = n.div_ceil(sources);
         let room = sources * M;
-        let mut items = Words::reuse(scratch, chunks * room * W);
+        let mut items = scratch;
+        if items.len() < chunks * room * W {
+            // Zeroed memory costs nothing before it is touched.
+            items = vec![0; chunks * room * W];
+        }
         let mut tags = vec![0u16; chunks * room];
         let mut starts = vec![0u32; chunks * (count + 1)];
-        items.as_mut_slice()[..chunks * room * W]
+        items[..chunks * room * W]
             .as_chunks_mut::<W>()
             .0
             .par_chunks_mut(room.max(1))
@@ -63,7 +65,7 @@ impl<const W: usize> Buckets<W> {
                 let mut used = 0;
                 for items in range.clone().filter_map(&items_of) {
                     for item in &items {
-                        let tag = (hash(item) >> (64 - bits)) as u16;
+                        let tag = (hash.of(item) >> (64 - bits)) as u16;
                         tags[used] = tag;
                         used += 1;
                         starts[tag as usize + 1] += 1;
@@ -94,12 +96,12 @@ impl<const W: usize> Buckets<W> {
     }
 
     /// The memory, for the next run.
-    pub(crate) fn into_scratch(self) -> Words {
+    pub(crate) fn into_scratch(self) -> Vec<u32> {
         self.items
     }
 
     fn all(&self) -> &[[u32; W]] {
-        self.items.as_slice().as_chunks::<W>().0
+        self.items.as_chunks::<W>().0
     }
 
     /// Number of buckets.
@@ -140,7 +142,7 @@ impl<const W: usize> Buckets<W> {
         work: impl Fn(&mut S, usize, &mut dyn Iterator<Item = Cells<'_, W>>) + Sync + Send,
     ) {
         let (count, room) = (self.count, self.room);
-        let (starts, cells) = (&self.starts, as_atomic(self.items.as_mut_slice()));
+        let (starts, cells) = (&self.starts, as_atomic(&mut self.items));
         let chunks = starts.len() / (count + 1);
         (0..count).into_par_iter().for_each_init(start, |state, b| {
             let mut segments = (0..chunks).map(|k| {
@@ -201,24 +203,35 @@ fn as_atomic(words: &mut [u32]) -> &[AtomicU32] {
     unsafe { &*(std::ptr::from_mut(words) as *const [AtomicU32]) }
 }
 
-/// A 64-bit hash of two words: folded multiplication. Results never depend on it; `seed` is drawn
-/// anew for each run so that no file can be built to collide.
-#[inline(always)]
-pub(crate) fn hash2(seed: u64, a: u64, b: u64) -> u64 {
-    let fold = |x: u64, y: u64| {
-        let p = u128::from(x) * u128::from(y);
-        (p as u64) ^ ((p >> 64) as u64)
-    };
-    let h = fold(a ^ seed, b ^ 0x9e37_79b9_7f4a_7c15);
-    fold(h ^ 0xd6e8_feb8_6659_fd93, seed | 1)
+/// A hash drawn at random from a strongly universal family: the multilinear one, k₀ + Σ kᵢwᵢ
+/// mod 2⁶⁴, of which the top bits are taken (Lemire & Kaser, "Strongly universal string hashing is
+/// fast", Computer Journal 57, 2014). Results never depend on it, and no file can be built to
+/// collide, since its keys differ from run to run.
+#[derive(Clone, Copy, Debug)]
+pub(crate) struct Hash<const W: usize>([u64; W]);
+
+impl<const W: usize> Default for Hash<W> {
+    fn default() -> Self {
+        use std::hash::{BuildHasher, Hasher};
+        let draw = || {
+            std::collections::hash_map::RandomState::new()
+                .build_hasher()
+                .finish()
+        };
+        Self(std::array::from_fn(|_| draw()))
+    }
 }
 
-/// A seed that differs from run to run.
-pub(crate) fn random_seed() -> u64 {
-    use std::hash::{BuildHasher, Hasher};
-    std::collections::hash_map::RandomState::new()
-        .build_hasher()
-        .finish()
+impl<const W: usize> Hash<W> {
+    /// Of the first W − 1 words of an item; the last is not part of its key.
+    #[inline(always)]
+    pub(crate) fn of(&self, item: &[u32; W]) -> u64 {
+        let mut h = self.0[W - 1];
+        for (k, w) in self.0.iter().zip(&item[..W - 1]) {
+            h = h.wrapping_add(k.wrapping_mul(u64::from(*w)));
+        }
+        h
+    }
 }
 
 #[cfg(test)]
@@ -228,22 +241,16 @@ mod tests {
     #[test]
     fn every_item_is_in_its_bucket_and_in_order() {
         let n = 100_000;
-        let seed = random_seed();
-        let mut b = Buckets::<2>::fill(
-            n,
-            None,
-            |i| {
-                Some([
-                    [i as u32 % 777, 2 * i as u32],
-                    [i as u32 % 555, 2 * i as u32 + 1],
-                ])
-            },
-            |item| hash2(seed, u64::from(item[0]), 0),
-        );
+        let mut b = Buckets::<3>::fill(n, Vec::new(), |i| {
+            Some([
+                [i as u32 % 777, 0, 2 * i as u32],
+                [i as u32 % 555, 1, 2 * i as u32 + 1],
+            ])
+        });
         let mut seen = 0;
         for bucket in 0..b.count() {
             let mut items = Vec::new();
-            b.each(bucket, |i| items.push(i[1]));
+            b.each(bucket, |i| items.push(i[2]));
             assert!(items.is_sorted());
             assert_eq!(items.len(), b.len(bucket));
             seen += items.len();
@@ -253,7 +260,7 @@ mod tests {
             || (),
             |(), _, segments| {
                 for s in segments {
-                    s.each(|item| item[0] + item[1]);
+                    s.each(|item| item[0] + item[2]);
                 }
             },
         );

@@ -2,9 +2,8 @@
 
 use rayon::prelude::*;
 
-use super::buckets::{Buckets, hash2, random_seed};
+use super::buckets::{Buckets, Hash};
 use super::union::Sets;
-use super::words::Words;
 
 /// One triangle's passage along an edge.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -32,19 +31,13 @@ pub(crate) fn match_edges(
     corners: &[[u32; 3]],
     name_of: &(dyn Fn(u32) -> u32 + Sync),
     sets: &Sets,
-    scratch: Words,
+    scratch: Vec<u32>,
 ) -> Vec<Half> {
-    let seed = random_seed();
-    let buckets = Buckets::<3>::fill(
-        corners.len(),
-        Some(scratch),
-        |t| {
-            let [a, b, c] = corners[t];
-            let whole = a != b && b != c && c != a;
-            whole.then(|| [(a, b), (b, c), (c, a)].map(|(a, b)| packed(a, b, t as u32)))
-        },
-        |item| hash2(seed, u64::from(item[0]), u64::from(item[1])),
-    );
+    let buckets = Buckets::<3>::fill(corners.len(), scratch, |t| {
+        let [a, b, c] = corners[t];
+        let whole = a != b && b != c && c != a;
+        whole.then(|| [(a, b), (b, c), (c, a)].map(|(a, b)| packed(a, b, t as u32)))
+    });
     let mut odd: Vec<Half> = (0..buckets.count())
         .into_par_iter()
         .fold(
@@ -94,6 +87,7 @@ struct Edge {
 
 #[derive(Default)]
 struct EdgeTable {
+    hash: Hash<3>,
     slots: Vec<u32>,
     edges: Vec<Edge>,
 }
@@ -110,8 +104,8 @@ impl EdgeTable {
     #[inline(always)]
     fn place(&self, low: u32, high: u32) -> usize {
         let mask = self.slots.len() - 1;
-        let h = (u64::from(low) << 32 | u64::from(high)).wrapping_mul(0x9e37_79b9_7f4a_7c15);
-        let mut at = (h >> 32) as usize & mask;
+        let mut at =
+            (self.hash.of(&[low, high, 0]) >> (64 - self.slots.len().trailing_zeros())) as usize;
         loop {
             let slot = self.slots[at];
             if slot == NONE {
@@ -181,7 +175,10 @@ impl EdgeTable {
                     others = true;
                 }
             }
-            for &(x, y) in &above[..n] {
+            for pair in &mut above[..n] {
+                *pair = (sets.above(pair.0), sets.above(pair.1));
+            }
+            for &(x, y) in above[..n].iter().filter(|(x, y)| x != y) {
                 sets.join(x, y);
             }
         }

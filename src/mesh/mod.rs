@@ -12,7 +12,6 @@ mod tangle;
 mod union;
 mod wedge;
 mod weld;
-mod words;
 
 pub use bodies::{Body, Mesh, NestedRule, Refusal};
 pub(crate) use families::Part;

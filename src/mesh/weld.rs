@@ -3,8 +3,7 @@
 use rayon::prelude::*;
 
 use super::Triangles;
-use super::buckets::{Buckets, hash2, random_seed};
-use super::words::Words;
+use super::buckets::{Buckets, Hash};
 use crate::error::{Error, Kind, Result};
 
 /// Most triangles that the exact path audits: corners are numbered in 32 bits.
@@ -15,7 +14,7 @@ pub const MOST_TRIANGLES: usize = (u32::MAX / 3) as usize;
 /// A vertex's number is that of the first place, in file order, where its coordinates stand: a
 /// corner (3·triangle + corner) where corners are not shared, a row of the vertex list where they
 /// are.
-pub(crate) fn weld(triangles: &Triangles) -> Result<(Vec<[u32; 3]>, Words)> {
+pub(crate) fn weld(triangles: &Triangles) -> Result<(Vec<[u32; 3]>, Vec<u32>)> {
     let vertices = match triangles {
         Triangles::Indexed { vertices, .. } => vertices.len(),
         _ => 0,
@@ -83,9 +82,8 @@ fn words64(p: [f64; 3], place: u32) -> [u32; 7] {
 fn first_places<const W: usize, const M: usize>(
     n: usize,
     items: impl Fn(usize) -> [[u32; W]; M] + Sync,
-) -> (Vec<[u32; M]>, Words) {
-    let seed = random_seed();
-    let mut buckets = Buckets::<W>::fill(n, None, |i| Some(items(i)), |item| hash(seed, item));
+) -> (Vec<[u32; M]>, Vec<u32>) {
+    let mut buckets = Buckets::<W>::fill(n, Vec::new(), |i| Some(items(i)));
     buckets.rewrite(Table::default, |table: &mut Table<W>, len, segments| {
         table.clear(len);
         for segment in segments {
@@ -95,29 +93,11 @@ fn first_places<const W: usize, const M: usize>(
     (buckets.last_words(n), buckets.into_scratch())
 }
 
-/// Hash of an item's key.
-#[inline(always)]
-fn hash<const W: usize>(seed: u64, item: &[u32; W]) -> u64 {
-    let pair = |i: usize| u64::from(item[i]) | u64::from(item[i + 1]) << 32;
-    let mut h = seed;
-    let mut i = 0;
-    while i + 3 < W - 1 {
-        h = hash2(h, pair(i), pair(i + 2));
-        i += 4;
-    }
-    match W - 1 - i {
-        3 => hash2(h, pair(i), u64::from(item[i + 2])),
-        2 => hash2(h, pair(i), 0),
-        1 => hash2(h, u64::from(item[i]), 0),
-        _ => h,
-    }
-}
-
 /// Open addressing: keys with their first places.
 struct Table<const W: usize> {
     slots: Vec<[u32; W]>,
     used: usize,
-    seed: u64,
+    hash: Hash<W>,
 }
 
 /// Marks an empty slot; no place has this number, since triangles are limited to a third of it
@@ -129,7 +109,7 @@ impl<const W: usize> Default for Table<W> {
         Self {
             slots: Vec::new(),
             used: 0,
-            seed: random_seed(),
+            hash: Hash::default(),
         }
     }
 }
@@ -143,11 +123,18 @@ impl<const W: usize> Table<W> {
         self.used = 0;
     }
 
+    /// Where to look for the item first.
+    #[inline(always)]
+    fn place(&self, item: &[u32; W]) -> usize {
+        // The top bits are the random ones; the table has at least sixteen slots.
+        (self.hash.of(item) >> (64 - self.slots.len().trailing_zeros())) as usize
+    }
+
     /// The first place of the item's key; the item's own where it is the first.
     #[inline(always)]
     fn first(&mut self, item: &[u32; W]) -> u32 {
         let mask = self.slots.len() - 1;
-        let mut at = hash(self.seed, item) as usize & mask;
+        let mut at = self.place(item);
         loop {
             let slot = &self.slots[at];
             if slot[W - 1] == EMPTY {
@@ -171,7 +158,7 @@ impl<const W: usize> Table<W> {
         let size = self.slots.len() * 2;
         let old = std::mem::replace(&mut self.slots, vec![[EMPTY; W]; size]);
         for item in old.into_iter().filter(|s| s[W - 1] != EMPTY) {
-            let mut at = hash(self.seed, &item) as usize & (size - 1);
+            let mut at = self.place(&item);
             while self.slots[at][W - 1] != EMPTY {
                 at = (at + 1) & (size - 1);
             }
