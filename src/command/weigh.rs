@@ -12,7 +12,7 @@ use crate::moments::Moments;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness;
+use crate::soundness::{self, Finding, FindingKind, Severity};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -62,6 +62,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
+    args.meshes.judge()?;
     let mut answers = gather(expand(&args.meshes), |input| {
         let (bytes, fact) = match open(input, args.meshes.hash) {
             Ok(opened) => opened,
@@ -171,9 +172,13 @@ fn answer(
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<WeighedBody> = chosen
         .iter()
-        .map(|&(i, body)| WeighedBody {
-            findings: std::mem::take(&mut audit.bodies[i]),
-            ..weighed(&m.mesh, body, metres, rule, substance, about)
+        .map(|&(i, body)| {
+            let mut out = weighed(&m.mesh, body, metres, rule, substance, about);
+            out.findings = std::mem::take(&mut audit.bodies[i]);
+            if let Some(refused) = &mut out.refused {
+                advise_joining(refused, &out.findings, m.unit);
+            }
+            out
         })
         .collect();
     let missing: Vec<String> = bodies
@@ -191,6 +196,13 @@ fn answer(
             uncertainty: None,
         },
     });
+    let mass = whole.as_ref().and_then(|w| w.figures.mass_kg);
+    audit.file.extend(soundness::unit_suspect(
+        &m.mesh,
+        m.unit,
+        m.unit_assumed,
+        mass,
+    ));
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
         path_hex: path_hex(&input.path),
@@ -269,6 +281,21 @@ fn weighed(
         estimate: None,
         facets: None,
         uncertainty: None,
+    }
+}
+
+/// Of a body that only cracks keep open, the refusal names the distance that closes it.
+fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit) {
+    let mut blocks = findings.iter().filter(|f| f.severity == Severity::Blocks);
+    let (Some(crack), None) = (blocks.next(), blocks.next()) else {
+        return;
+    };
+    if let (FindingKind::Crack, Some(join)) = (crack.kind, crack.join_m) {
+        refused.advice = format!(
+            "the surface is cracked: stitch it in the model and export again, or weigh it with --join \"{} {}\"",
+            soundness::rounded_up(join / unit.metres()),
+            unit.symbol()
+        );
     }
 }
 
