@@ -179,6 +179,58 @@ fn broken(mut m: Vec<Facet>, what: Break, t: usize) -> (Vec<Facet>, Kinds) {
     (m, want)
 }
 
+#[test]
+fn a_cracked_body_is_weighed_as_its_refusal_says() {
+    let run = |arguments: &[&str]| {
+        let out = std::process::Command::new(env!("CARGO_BIN_EXE_bismar"))
+            .args(arguments)
+            .arg("fixtures/crack-one-ulp.stl")
+            .current_dir(env!("CARGO_MANIFEST_DIR"))
+            .output()
+            .unwrap();
+        let json: serde_json::Value = serde_json::from_slice(&out.stdout).unwrap();
+        (out.status.code().unwrap(), json)
+    };
+    let (exit, json) = run(&["weigh", "--json"]);
+    assert_eq!(exit, 1);
+    let advice = json["files"][0]["bodies"][0]["refused"]["advice"]
+        .as_str()
+        .unwrap();
+    let distance = advice
+        .split("--join \"")
+        .nth(1)
+        .unwrap()
+        .split('"')
+        .next()
+        .unwrap();
+    // The rims are 2^-21 mm apart, the spacing of 32-bit numbers from 4 to 8.
+    let (exit, json) = run(&["check", "--json"]);
+    let join = json["files"][0]["bodies"][0]["findings"][0]["join_m"]
+        .as_f64()
+        .unwrap();
+    assert!(
+        exit == 1 && (join / (2f64.powi(-21) * 1e-3) - 1.0).abs() < 1e-11,
+        "{join}"
+    );
+    let (exit, json) = run(&["weigh", "--json", "--join", distance]);
+    let body = &json["files"][0]["bodies"][0];
+    assert_eq!(exit, 0);
+    assert!((body["volume_m3"].as_f64().unwrap() - 1e-6).abs() < 1e-19);
+    assert_eq!(body["findings"][0]["kind"], "crack");
+    assert!(
+        json["warnings"]
+            .as_array()
+            .unwrap()
+            .iter()
+            .any(|w| w["kind"] == "joined")
+    );
+    // A little less leaves it open, in whatever unit it is said.
+    for less in ["4.768e-7", "4.768e-10 m"] {
+        let (exit, _) = run(&["weigh", "--json", "--join", less]);
+        assert_eq!(exit, 1, "{less}");
+    }
+}
+
 /// What metamorphic tests do to a mesh.
 fn moved(facets: &[Facet], axis: [f64; 3], angle: f64, by: [f64; 3]) -> Vec<Facet> {
     let axis = nalgebra::Unit::new_normalize(nalgebra::Vector3::from(axis));

@@ -99,7 +99,8 @@ impl Boundary {
     }
 }
 
-/// Sets of small numbers for one thread; the name of a set is its least member.
+/// Sets of small numbers for one thread; the name of a set is its least member, unless it was hung
+/// below another.
 pub(crate) struct Merge(Vec<u32>);
 
 impl Merge {
@@ -122,5 +123,10 @@ impl Merge {
         let (low, high) = (x.min(y), x.max(y));
         self.0[high as usize] = low;
         low
+    }
+
+    /// Makes one set of the sets of these names, under the second.
+    pub(crate) fn hang(&mut self, below: u32, name: u32) {
+        self.0[below as usize] = name;
     }
 }

@@ -1,6 +1,7 @@
 //! Cracks: open edges that cancel once near vertices are joined, and the distance that it takes.
 
 use std::collections::HashMap;
+use std::sync::atomic::{AtomicUsize, Ordering};
 
 use rayon::prelude::*;
 
@@ -14,6 +15,13 @@ pub(crate) const WIDEST: f64 = 1e-3;
 /// The farthest that two vertices of a crack may lie apart, as a share of the shortest open edge
 /// at either: joining along a crack brings its two rims together, and must not shrink a rim.
 pub(crate) const OF_EDGE: f64 = 0.5;
+
+/// Boundaries of more edges are not searched: a surface torn everywhere is no export to be mended,
+/// and the search must stay within a small multiple of the file's memory. All loops are holes then.
+const MOST_EDGES: usize = 4_000_000;
+/// So are they where each vertex has more neighbours than this, on the average, that a crack could
+/// join it with: that is a heap of surfaces.
+const NEIGHBOURS: usize = 8;
 
 /// One seam: open edges that hang together and close when joined.
 #[derive(Clone, Debug, PartialEq)]
@@ -37,6 +45,9 @@ pub(crate) fn cracks(boundary: &Boundary) -> Vec<Crack> {
 
 /// Pairs of vertices that may face each other across a crack, nearest first.
 fn near_pairs(boundary: &Boundary) -> Vec<(f64, u32, u32)> {
+    if boundary.edges.len() > MOST_EDGES {
+        return Vec::new();
+    }
     let mut reach = vec![boundary.diagonal() * WIDEST; boundary.points.len()];
     for e in &boundary.edges {
         let most = boundary.length(e) * OF_EDGE;
@@ -45,21 +56,42 @@ fn near_pairs(boundary: &Boundary) -> Vec<(f64, u32, u32)> {
         }
     }
     let near = Near::new(&boundary.points);
+    let room = Room::new(boundary.points.len());
     let mut pairs: Vec<(f64, u32, u32)> = (0..boundary.points.len() as u32)
         .into_par_iter()
         .flat_map_iter(|i| {
             let mut of_one = Vec::new();
             near.ball(&boundary.points[i as usize], reach[i as usize], |j, d| {
-                // More neighbours than any seam brings together are a heap, not a crack.
-                if i < j && d < reach[i as usize].min(reach[j as usize]) && of_one.len() < 256 {
+                if i < j && d < reach[i as usize].min(reach[j as usize]) && room.one_more() {
                     of_one.push((d, i, j));
                 }
             });
             of_one
         })
         .collect();
+    if room.is_exceeded() {
+        return Vec::new();
+    }
     pairs.par_sort_unstable_by(|a, b| a.0.total_cmp(&b.0).then((a.1, a.2).cmp(&(b.1, b.2))));
     pairs
+}
+
+/// A limit on what is gathered by several threads. Whether it is exceeded does not depend on their
+/// order, since what is counted is never taken back.
+pub(super) struct Room(AtomicUsize, usize);
+
+impl Room {
+    pub(super) fn new(vertices: usize) -> Self {
+        Self(AtomicUsize::new(0), vertices * NEIGHBOURS + 4096)
+    }
+
+    pub(super) fn one_more(&self) -> bool {
+        self.0.fetch_add(1, Ordering::Relaxed) < self.1
+    }
+
+    pub(super) fn is_exceeded(&self) -> bool {
+        self.0.load(Ordering::Relaxed) > self.1
+    }
 }
 
 /// Vertices made one step by step, with what is left of the boundary.
@@ -132,20 +164,15 @@ impl<'a> Seams<'a> {
         if g != h {
             self.left[group as usize] = self.left[g as usize] + self.left[h as usize];
         }
-        // The edges of both get new names; the many keep theirs where they can.
-        let (few, many) = if self.edges_at[a as usize].len() < self.edges_at[b as usize].len() {
-            (a, b)
-        } else {
-            (b, a)
-        };
-        let few_keep_name = few < many;
-        let renamed = if few_keep_name { many } else { few };
+        // The cluster of fewer edges takes the other's name, so that none is renamed often.
+        let few = self.edges_at[a as usize].len() < self.edges_at[b as usize].len();
+        let (name, renamed) = if few { (b, a) } else { (a, b) };
         let edges = std::mem::take(&mut self.edges_at[renamed as usize]);
         for &e in &edges {
             self.count(e, -1);
         }
-        // An edge between the two now shrinks to nothing, whichever list it is taken from.
-        let name = self.clusters.join(a, b);
+        // An edge between the two has shrunk to nothing now.
+        self.clusters.hang(renamed, name);
         for &e in &edges {
             self.count(e, 1);
         }

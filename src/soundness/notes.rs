@@ -49,7 +49,7 @@ impl Look<'_> {
                     Severity::Notes,
                     count,
                     places,
-                    None,
+                    Some((0.0, EffectIs::Exact)),
                     "surfaces touch at a single vertex: harmless to the volume; part them or join them along a face",
                 ),
             );
@@ -109,7 +109,7 @@ impl Look<'_> {
                         Severity::Notes,
                         count,
                         places,
-                        None,
+                        Some((0.0, EffectIs::Exact)),
                         "the file states normals that point away from the side that the corners turn about; the corners were believed: export again with normals that agree",
                     ),
                 );

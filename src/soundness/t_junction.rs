@@ -4,6 +4,7 @@ use std::collections::HashMap;
 
 use rayon::prelude::*;
 
+use super::crack::Room;
 use crate::geometry::{Point, turn_2d};
 use crate::mesh::Boundary;
 use crate::mesh::near::{Near, length};
@@ -102,7 +103,9 @@ fn junctions(boundary: &Boundary, rest: &[u32]) -> Vec<Junction> {
     let near = Near::new(&points);
     let far = points.iter().flatten().fold(0.0f64, |m, x| m.max(x.abs()));
     let beside = BESIDE * boundary.diagonal().max(far);
-    rest.par_iter()
+    let room = Room::new(points.len());
+    let found = rest
+        .par_iter()
         .flat_map_iter(|&i| {
             let e = &boundary.edges[i as usize];
             let (p, q) = (
@@ -114,9 +117,10 @@ fn junctions(boundary: &Boundary, rest: &[u32]) -> Vec<Junction> {
             let mut on = Vec::new();
             near.segment(p, q, reach, |place| {
                 let vertex = listed[place as usize];
-                if vertex != e.from && vertex != e.to && on.len() < 65_536 {
+                if vertex != e.from && vertex != e.to {
                     let x = &boundary.points[vertex as usize];
-                    on.extend(inside(p, q, x, reach).map(|(along, exact)| Junction {
+                    let found = inside(p, q, x, reach).filter(|_| room.one_more());
+                    on.extend(found.map(|(along, exact)| Junction {
                         vertex,
                         edge: i,
                         along,
@@ -127,7 +131,12 @@ fn junctions(boundary: &Boundary, rest: &[u32]) -> Vec<Junction> {
             on.sort_by_key(|j| j.vertex);
             on
         })
-        .collect()
+        .collect();
+    // A heap of edges upon edges is no surface whose corners were left out.
+    if room.is_exceeded() {
+        return Vec::new();
+    }
+    found
 }
 
 /// Where x lies along p–q, if strictly inside it and at most `reach` beside it; and whether it
