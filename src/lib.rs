@@ -11,6 +11,7 @@
 #![warn(missing_docs)]
 
 pub mod assembly;
+pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;
 pub mod error;
@@ -24,6 +25,7 @@ pub mod moments;
 pub mod quantity;
 pub mod report;
 pub mod soundness;
+pub mod stream;
 pub mod text;
 
 pub use error::{Error, Kind, Result, Warning};

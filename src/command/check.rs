@@ -8,7 +8,7 @@ use crate::error::{Error, Result};
 use crate::mesh::{Body, Mesh};
 use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Finding, TESTED};
+use crate::soundness::{self, Finding, FindingKind, Overlap, TESTED, TESTED_WITH_OVERLAP};
 
 /// Arguments of `check`.
 #[derive(Args, Clone, Debug)]
@@ -18,6 +18,27 @@ pub(super) struct CheckArgs {
     /// List up to N places of each finding
     #[arg(long, value_name = "N", default_value_t = 10)]
     places: usize,
+    /// Skip the test for surfaces that cut each other
+    #[arg(long)]
+    no_overlap: bool,
+}
+
+impl CheckArgs {
+    fn overlap(&self) -> Overlap {
+        if self.no_overlap {
+            Overlap::Skipped
+        } else {
+            Overlap::Tested
+        }
+    }
+
+    fn tested(&self) -> &'static [FindingKind] {
+        if self.no_overlap {
+            TESTED
+        } else {
+            TESTED_WITH_OVERLAP
+        }
+    }
 }
 
 /// Runs the command.
@@ -34,7 +55,7 @@ pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
             }
             Err(e) => {
                 exit = 2;
-                files.push(unread(&one.path, e));
+                files.push(unread(&one.path, e, args));
             }
         }
     }
@@ -49,7 +70,7 @@ pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
     )
 }
 
-fn unread(path: &std::path::Path, error: &Error) -> CheckedFile {
+fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFile {
     CheckedFile {
         path: path.to_string_lossy().into_owned(),
         path_hex: path_hex(path),
@@ -59,7 +80,7 @@ fn unread(path: &std::path::Path, error: &Error) -> CheckedFile {
         unit_assumed: false,
         bounds_m: None,
         sound: None,
-        tested: TESTED.to_vec(),
+        tested: args.tested().to_vec(),
         findings: Vec::new(),
         error: Some(error.clone()),
         bodies: Vec::new(),
@@ -79,7 +100,7 @@ fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Che
 
 fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Result<Checked> {
     let metres = m.unit.metres();
-    let mut audit = soundness::audit(&m.mesh, metres, args.places);
+    let mut audit = soundness::audit(&m.mesh, metres, args.places, args.overlap());
     audit.file.extend(soundness::unit_suspect(
         &m.mesh,
         m.unit,
@@ -109,7 +130,7 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         unit_assumed: m.unit_assumed,
         bounds_m: m.mesh.bounds().map(|b| b.map(|p| p.map(|x| x * metres))),
         sound: Some(sound),
-        tested: soundness::tested(&m.mesh),
+        tested: soundness::tested(&m.mesh, args.tested()),
         findings: file_findings,
         error: None,
         bodies,

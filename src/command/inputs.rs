@@ -7,7 +7,7 @@ use sha2::{Digest, Sha256};
 
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Family};
-use crate::mesh::{Body, Joined, Mesh};
+use crate::mesh::{Body, Joined, Mesh, ReaderNote};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::InputFact;
 use crate::soundness::rounded_up;
@@ -192,47 +192,25 @@ pub(super) fn digest(bytes: &[u8]) -> String {
 pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
     let kind = format::detect(&bytes, &input.path, args.format)?;
     let soup = format::read(bytes, &input.path, args.format)?;
-    let shown = input.path.to_string_lossy().into_owned();
-    let mut warnings: Vec<Warning> = soup
-        .notes
-        .iter()
-        .map(|n| Warning {
-            kind: n.kind.to_owned(),
-            message: n.message.clone(),
-            path: Some(shown.clone()),
-            line: n.line,
-            advice: n.advice.to_owned(),
-        })
-        .collect();
-    let stated = args.unit.or(soup.unit);
-    if stated.is_none() {
-        warnings.push(Warning {
-            kind: "unit-assumed".to_owned(),
-            message: "the file states no length unit; mm is assumed".to_owned(),
-            path: Some(shown),
-            line: None,
-            advice: "say --unit mm, cm, m, in or ft".to_owned(),
-        });
-    }
+    let (unit, unit_assumed, mut warnings) = said(soup.unit, &soup.notes, input, args);
     let stem = input
         .path
         .file_stem()
         .map_or("body".into(), |s| s.to_string_lossy());
     let stem = if stem == "-" { "body".into() } else { stem };
-    let unit = stated.unwrap_or_default();
     let mut mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
     if let Some(text) = &args.join {
         let distance = join_distance(text, unit)? / unit.metres();
         mesh = mesh
             .join(distance, &stem)
             .map_err(|e| e.in_file(&input.path))?;
-        warnings.extend(mesh.joined().map(|j| said(j, unit, &input.path)));
+        warnings.extend(mesh.joined().map(|j| joined_said(j, unit, &input.path)));
     }
     Ok(ReadMesh {
         mesh,
         format: kind.name(),
         unit,
-        unit_assumed: stated.is_none(),
+        unit_assumed,
         warnings,
     })
 }
@@ -255,7 +233,7 @@ pub(super) fn join_distance(text: &str, unit: LengthUnit) -> Result<f64> {
 }
 
 /// What joining did, in words.
-fn said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
+fn joined_said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
     let (within, sign) = (rounded_up(joined.distance), unit.symbol());
     let message = match joined.vertices {
         0 => format!("no two vertices on open edges lie within {within} {sign}: none was joined"),
@@ -274,6 +252,37 @@ fn said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
             "stitch the surface in the model and export again, so that nothing has to be joined"
                 .to_owned(),
     }
+}
+
+/// The unit of a mesh, whether it was assumed, and the warnings: of the reader, and of that.
+pub(super) fn said(
+    own: Option<LengthUnit>,
+    notes: &[ReaderNote],
+    input: &Input,
+    args: &MeshArgs,
+) -> (LengthUnit, bool, Vec<Warning>) {
+    let shown = input.path.to_string_lossy().into_owned();
+    let mut warnings: Vec<Warning> = notes
+        .iter()
+        .map(|n| Warning {
+            kind: n.kind.to_owned(),
+            message: n.message.clone(),
+            path: Some(shown.clone()),
+            line: n.line,
+            advice: n.advice.to_owned(),
+        })
+        .collect();
+    let stated = args.unit.or(own);
+    if stated.is_none() {
+        warnings.push(Warning {
+            kind: "unit-assumed".to_owned(),
+            message: "the file states no length unit; mm is assumed".to_owned(),
+            path: Some(shown),
+            line: None,
+            advice: "say --unit mm, cm, m, in or ft".to_owned(),
+        });
+    }
+    (stated.unwrap_or_default(), stated.is_none(), warnings)
 }
 
 /// The bodies that a pick means: all of that name, or the one with that id.

@@ -7,6 +7,7 @@ mod materials;
 mod meshes;
 mod schema;
 mod weigh;
+mod whole;
 
 use std::io::Write;
 use std::path::PathBuf;

@@ -3,16 +3,18 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
-use super::{Answer, Common, gather, point};
+use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule};
 use crate::moments::Moments;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
-use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
+use crate::report::weigh::{
+    Estimate, NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole,
+};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Finding, FindingKind, Severity};
+use crate::soundness::{self, Filled, Finding, FindingKind, Overlap, Severity};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -28,9 +30,16 @@ pub(super) struct WeighArgs {
     /// How to count a solid that lies within a solid
     #[arg(long, value_name = "RULE")]
     nested: Option<Nested>,
+    /// Count each region once where surfaces overlap, with an error figure
+    #[arg(long, conflicts_with = "nested")]
+    filled: bool,
     /// Give the inertia tensor about this point too (bare numbers in the mesh's unit)
     #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
     about: Option<String>,
+    /// Give totals alone, in one reading with little memory: proves that edges cancel, and does not
+    /// see doubled meshes, solids in solids or single shells inside out
+    #[arg(long, conflicts_with_all = ["nested", "join"])]
+    whole: bool,
 }
 
 /// Choices of `--nested`.
@@ -63,7 +72,16 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
     args.meshes.judge()?;
-    let mut answers = gather(expand(&args.meshes), |input| {
+    let inputs = expand(&args.meshes);
+    if args.whole {
+        whole::without_picks(&inputs)?;
+    }
+    let mut answers = gather(inputs, |input| {
+        if args.whole {
+            return whole::answer(input, &args.meshes, substance.as_ref(), |unit| {
+                about_point(args.about.as_deref(), unit)
+            });
+        }
         let (bytes, fact) = match open(input, args.meshes.hash) {
             Ok(opened) => opened,
             Err(e) => return (None, Err(e)),
@@ -77,14 +95,16 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     for one in &answers.each {
         match &one.result {
             Ok(file) => {
-                let all = !file.bodies.as_deref().unwrap_or_default().is_empty()
-                    && file.whole_missing.is_empty();
+                let all = match &file.bodies {
+                    Some(bodies) => !bodies.is_empty() && file.whole_missing.is_empty(),
+                    None => file.whole.is_some(),
+                };
                 exit = exit.max(u8::from(!all));
                 files.push(file.clone());
             }
             Err(e) => {
                 exit = 2;
-                files.push(unread(&one.path, e));
+                files.push(unread(&one.path, e, args.whole));
             }
         }
     }
@@ -141,7 +161,7 @@ fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>>
     text.map(|text| point(text, unit)).transpose()
 }
 
-fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
+fn unread(path: &std::path::Path, error: &Error, whole: bool) -> WeighedFile {
     WeighedFile {
         path: path.to_string_lossy().into_owned(),
         path_hex: path_hex(path),
@@ -152,9 +172,12 @@ fn unread(path: &std::path::Path, error: &Error) -> WeighedFile {
         error: Some(error.clone()),
         findings: Vec::new(),
         overlap: "untested",
-        bodies: Some(Vec::new()),
+        bodies: (!whole).then(Vec::new),
         whole: None,
+        whole_estimate: None,
         whole_missing: Vec::new(),
+        proved: whole.then_some(None),
+        turned: None,
     }
 }
 
@@ -167,13 +190,24 @@ fn answer(
 ) -> Result<(WeighedFile, Vec<Warning>, InputFact)> {
     let metres = m.unit.metres();
     let about = about_point(args.about.as_deref(), m.unit)?;
-    let rule = args.nested.map(NestedRule::from);
-    let mut audit = soundness::audit(&m.mesh, metres, 3);
+    let rule = if args.filled {
+        // Without cuts the union is exact: a nested shell adds nothing.
+        Some(NestedRule::Union)
+    } else {
+        args.nested.map(NestedRule::from)
+    };
+    let cuts = args.filled.then(|| soundness::cuts(&m.mesh, 0));
+    let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
+    let mut audit = soundness::audit(&m.mesh, metres, 3, Overlap::Skipped);
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<WeighedBody> = chosen
         .iter()
         .map(|&(i, body)| {
-            let mut out = weighed(&m.mesh, body, metres, rule, substance, about);
+            let mut out = if is_cut(i) {
+                filled(&m.mesh, body, metres, substance, about)
+            } else {
+                weighed(&m.mesh, body, metres, rule, substance, about)
+            };
             out.findings = std::mem::take(&mut audit.bodies[i]);
             if let Some(refused) = &mut out.refused {
                 advise_joining(refused, &out.findings, m.unit);
@@ -186,17 +220,20 @@ fn answer(
         .filter(|b| b.refused.is_some())
         .map(|b| b.id.clone())
         .collect();
-    let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
-        [one] => Whole {
-            figures: one.figures.clone(),
-            uncertainty: None,
-        },
-        _ => Whole {
-            figures: whole(&m.mesh, &chosen, metres, rule, substance, about),
-            uncertainty: None,
-        },
-    });
-    let mass = whole.as_ref().and_then(|w| w.figures.mass_kg);
+    let (total, whole_estimate) = if !missing.is_empty() || bodies.is_empty() {
+        (None, None)
+    } else if let [one] = &bodies[..] {
+        (Some(one.figures.clone()), one.estimate)
+    } else {
+        let sum = together(&m.mesh, &chosen, metres, rule, substance, about);
+        if args.filled {
+            let (f, e) = whole_filled(&m.mesh, &chosen, metres, &sum, substance, about);
+            (Some(f), e)
+        } else {
+            (Some(sum), None)
+        }
+    };
+    let mass = total.as_ref().and_then(|f| f.mass_kg);
     audit.file.extend(soundness::unit_suspect(
         &m.mesh,
         m.unit,
@@ -216,10 +253,20 @@ fn answer(
         } else {
             audit.file
         },
-        overlap: "untested",
+        overlap: match &cuts {
+            None => "untested",
+            Some(none) if none.is_empty() && whole_estimate.is_none() => "none",
+            Some(_) => "counted-once",
+        },
         bodies: Some(bodies),
-        whole,
+        whole: total.map(|figures| Whole {
+            figures,
+            uncertainty: None,
+        }),
+        whole_estimate,
         whole_missing: missing,
+        proved: None,
+        turned: None,
     };
     Ok((file, m.warnings.clone(), fact.clone()))
 }
@@ -299,8 +346,72 @@ fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit)
     }
 }
 
-/// All bodies together: their moments added about the first one's point, in file order.
-fn whole(
+/// The error that `--filled` refines to, as a part of the volume.
+const FILLED_TOLERANCE: f64 = 1e-6;
+
+fn estimate(filled: &Filled, metres: f64) -> Estimate {
+    Estimate {
+        method: "columns of rays, each region counted once",
+        condition: "three standard errors hold, and no overlap smaller than a lattice cell was missed",
+        volume_bound_m3: filled.volume_error * metres.powi(3),
+        centre_bound_m: filled.centre_error * metres,
+    }
+}
+
+/// A body whose surface cuts itself, with each region counted once.
+fn filled(
+    mesh: &Mesh,
+    body: &Body,
+    metres: f64,
+    substance: Option<&Substance>,
+    about: Option<[f64; 3]>,
+) -> WeighedBody {
+    let sum = weighed(mesh, body, metres, Some(NestedRule::Sum), substance, about);
+    let Ok(found) = soundness::filled_bodies(mesh, &[body], FILLED_TOLERANCE) else {
+        return sum;
+    };
+    let volume = found.moments.scaled(metres);
+    let f = &sum.figures;
+    let area = f.area_m2.unwrap_or(f64::NAN);
+    let figures = Figures::from_volume(&volume, area, f.condition, f.bounds_m, substance, about);
+    WeighedBody {
+        figures,
+        estimate: Some(estimate(&found, metres)),
+        ..sum
+    }
+}
+
+/// All bodies together with each region counted once; exact where nothing is shared.
+fn whole_filled(
+    mesh: &Mesh,
+    bodies: &[(usize, &Body)],
+    metres: f64,
+    sum: &Figures,
+    substance: Option<&Substance>,
+    about: Option<[f64; 3]>,
+) -> (Figures, Option<Estimate>) {
+    let apart = |a: &Body, b: &Body| {
+        (0..3).any(|k| a.bounds[1][k] <= b.bounds[0][k] || b.bounds[1][k] <= a.bounds[0][k])
+    };
+    let all: Vec<&Body> = bodies.iter().map(|(_, b)| *b).collect();
+    let none_meet = || (0..all.len()).all(|i| (i + 1..all.len()).all(|j| apart(all[i], all[j])));
+    // The same space can be shared only where boxes are.
+    if all.len() <= 1000 && none_meet() && soundness::cuts(mesh, 0).is_empty() {
+        return (sum.clone(), None);
+    }
+    let Ok(found) = soundness::filled_bodies(mesh, &all, FILLED_TOLERANCE) else {
+        return (sum.clone(), None);
+    };
+    let volume = found.moments.scaled(metres);
+    let area = sum.area_m2.unwrap_or(f64::NAN);
+    let figures =
+        Figures::from_volume(&volume, area, sum.condition, sum.bounds_m, substance, about);
+    (figures, Some(estimate(&found, metres)))
+}
+
+/// All bodies together: their moments added about the first one's point, in file order. Where
+/// nested solids count once, a body inside one of them adds nothing.
+fn together(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
     metres: f64,
@@ -311,6 +422,9 @@ fn whole(
     let mut total: Option<Moments> = None;
     let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
     for (_, body) in bodies {
+        if rule == Some(NestedRule::Union) && body.is_in_nested() {
+            continue;
+        }
         let Ok(solid) = mesh.solid(body, rule) else {
             continue;
         };

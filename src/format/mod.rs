@@ -1,6 +1,5 @@
 //! One file a file format: bytes in, [`Soup`](crate::mesh::Soup) out, errors with their place.
 
-mod bytes;
 mod chunk;
 mod kinds;
 mod number;
@@ -10,7 +9,7 @@ pub mod stl;
 use std::fmt;
 use std::path::Path;
 
-pub use bytes::Bytes;
+pub use crate::bytes::Bytes;
 pub use number::MAX_COORDINATE;
 
 use crate::error::{Error, Kind, Result};
@@ -99,6 +98,19 @@ impl Family {
 pub fn detect(bytes: &[u8], path: &Path, hint: Option<Family>) -> Result<Format> {
     detect_bytes(bytes, hint.or_else(|| Family::from_path(path))).map_err(|e| e.in_file(path))
 }
+
+/// Whether a stream is taken as a binary STL by its first [`HEAD`] bytes, which must say so: a stream
+/// has no length that its count could be compared with. What is not is read whole, and judged by
+/// [`detect`].
+pub fn head_is_binary_stl(head: &[u8]) -> bool {
+    head.len() >= HEAD
+        && kinds::is_binary(head)
+        && !stl::is_text(head)
+        && kinds::looks_like(head).is_none()
+}
+
+/// Bytes that tell what a stream is.
+pub const HEAD: usize = 512;
 
 fn detect_bytes(bytes: &[u8], hint: Option<Family>) -> Result<Format> {
     if bytes.is_empty() {

@@ -7,6 +7,7 @@
 mod binary;
 mod text;
 
+pub(crate) use binary::{HEADER, RECORD, count_in, declared, first_not_finite};
 pub use binary::{check_finite, parse_unchecked as parse_binary_unchecked};
 pub use text::parse as parse_text;
 

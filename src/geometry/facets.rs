@@ -6,6 +6,11 @@ pub trait Corners: Sync {
     fn count(&self) -> usize;
     /// The corners of triangle `t`, which must be below [`Corners::count`].
     fn triangle(&self, t: usize) -> [[f64; 3]; 3];
+    /// The same triangles as records of f32, where that is what they are: half the bytes to move.
+    #[inline(always)]
+    fn as_records(&self) -> Option<RecordFacets<'_>> {
+        None
+    }
 }
 
 /// Binary STL records of 50 bytes: a normal and three corners of three little-endian f32, and two
@@ -47,6 +52,10 @@ impl Corners for RecordFacets<'_> {
     #[inline(always)]
     fn triangle(&self, t: usize) -> [[f64; 3]; 3] {
         self.raw(t).map(|p| p.map(f64::from))
+    }
+    #[inline(always)]
+    fn as_records(&self) -> Option<RecordFacets<'_>> {
+        Some(*self)
     }
 }
 

@@ -2,7 +2,7 @@
 
 use std::collections::{BTreeMap, HashSet};
 
-use super::nesting::{containers, winding_number};
+use super::families::{Part, Role, families};
 use super::shells::{Members, Shell, Shells, middle};
 use super::{Soup, each};
 
@@ -44,26 +44,6 @@ pub struct Body {
     pub(crate) members: Members,
     pub(crate) first: u32,
     solid: Option<SolidIntegrals>,
-}
-
-/// A shell's part in a body.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(crate) struct Role {
-    /// Index into the shells.
-    pub(crate) shell: usize,
-    pub(crate) part: Part,
-    /// Whether its triangles count the other way round than the file has them.
-    pub(crate) turned: bool,
-}
-
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(crate) enum Part {
-    Outer,
-    Void,
-    /// Outward at odd depth: solid within solid.
-    Nested,
-    /// Open, inside the outer shell or around it.
-    Stray,
 }
 
 /// How solid within solid is counted.
@@ -192,20 +172,18 @@ impl Mesh {
         }
         let mut total: Option<SolidIntegrals> = None;
         for role in &body.shells {
-            let sign = if role.turned { -1.0 } else { 1.0 };
-            let (weight, counted) = match (role.part, rule) {
-                (Part::Nested, NestedRule::Union) | (Part::Stray, _) => continue,
-                (Part::Nested, NestedRule::Void) => (-sign, 1.0),
-                _ => (sign, 1.0),
-            };
-            let s = &self.found.shells[role.shell].solid;
-            let moments = s.moments.weighted(weight);
+            let s = &self.found.shells[role.shell];
+            let weight = role.weight(rule, s.facing);
+            if weight == 0.0 {
+                continue;
+            }
+            let moments = s.solid.moments.weighted(weight);
             total = Some(match total {
-                None => SolidIntegrals { moments, ..*s },
+                None => SolidIntegrals { moments, ..s.solid },
                 Some(t) => SolidIntegrals {
                     moments: t.moments.plus(&moments),
-                    area: t.area + counted * s.area,
-                    absolute_volume: t.absolute_volume + s.absolute_volume,
+                    area: t.area + s.solid.area,
+                    absolute_volume: t.absolute_volume + s.solid.absolute_volume,
                 },
             });
         }
@@ -274,94 +252,16 @@ impl Body {
         self.shells.iter().filter(|r| r.part == Part::Void).count()
     }
 
+    /// Whether it lies in a solid that is nested in another: where the outermost counts as one
+    /// with what is in it, this one adds nothing to the whole.
+    pub fn is_in_nested(&self) -> bool {
+        self.shells[0].in_nested
+    }
+
     /// Whether a solid lies within its solid.
     pub fn has_nested(&self) -> bool {
         self.shells.iter().any(|r| r.part == Part::Nested)
     }
-}
-
-/// Shells sorted into bodies: by name, then by depth.
-fn families(soup: &Soup, shells: &[Shell]) -> Vec<Vec<Role>> {
-    let mut by_name: BTreeMap<u32, Vec<usize>> = BTreeMap::new();
-    for (i, s) in shells.iter().enumerate() {
-        by_name.entry(s.name).or_default().push(i);
-    }
-    by_name
-        .into_values()
-        .flat_map(|of_name| family_of_name(soup, shells, &of_name))
-        .collect()
-}
-
-fn family_of_name(soup: &Soup, shells: &[Shell], of_name: &[usize]) -> Vec<Vec<Role>> {
-    let group: Vec<&Shell> = of_name.iter().map(|&i| &shells[i]).collect();
-    let inside = if group.len() > 1 {
-        containers(&soup.triangles, &group)
-    } else {
-        vec![Vec::new(); group.len()]
-    };
-    let depth: Vec<usize> = inside.iter().map(Vec::len).collect();
-    // A shell of odd depth belongs to the deepest even shell around it; one of even depth opens a
-    // body, unless it faces inward inside an open shell: then it is that one's void.
-    let mut home: Vec<usize> = (0..group.len()).collect();
-    for a in 0..group.len() {
-        if depth[a] % 2 == 1 {
-            let even = inside[a].iter().filter(|&&b| depth[b].is_multiple_of(2));
-            home[a] = even
-                .copied()
-                .max_by_key(|&b| (depth[b], usize::MAX - b))
-                .unwrap_or(a);
-        } else if group[a].facing < 0 {
-            let p = each!(&soup.triangles, f => f.triangle(group[a].first as usize)[0]);
-            let around = (0..group.len()).find(|&b| {
-                b != a
-                    && !group[b].closed()
-                    && (0..3).all(|k| {
-                        group[b].bounds[0][k] <= group[a].bounds[0][k]
-                            && group[a].bounds[1][k] <= group[b].bounds[1][k]
-                    })
-                    && winding_number(&soup.triangles, group[b], &p).abs() > 0.5
-            });
-            home[a] = around.unwrap_or(a);
-        }
-    }
-    let mut bodies: BTreeMap<usize, Vec<usize>> = BTreeMap::new();
-    for a in 0..group.len() {
-        // A home that has itself found a home would hide its guests.
-        let h = if home[home[a]] == home[a] { home[a] } else { a };
-        bodies.entry(h).or_default().push(a);
-    }
-    bodies
-        .into_iter()
-        .map(|(outer, members)| {
-            let guests: Vec<usize> = members.into_iter().filter(|&a| a != outer).collect();
-            let inverted = group[outer].facing < 0;
-            // Wholly inverted: turned as one. Else each shell is judged by itself.
-            let whole = inverted
-                && guests
-                    .iter()
-                    .filter(|&&a| group[a].closed())
-                    .all(|&a| group[a].facing > 0);
-            let mut roles = vec![Role {
-                shell: of_name[outer],
-                part: Part::Outer,
-                turned: inverted,
-            }];
-            roles.extend(guests.into_iter().map(|a| {
-                let part = match group[a] {
-                    s if !s.closed() => Part::Stray,
-                    s if (s.facing > 0) != whole => Part::Nested,
-                    _ => Part::Void,
-                };
-                Role {
-                    shell: of_name[a],
-                    part,
-                    turned: whole,
-                }
-            }));
-            roles.sort_by_key(|r| (r.part as u8, r.shell));
-            roles
-        })
-        .collect()
 }
 
 fn body(soup: &Soup, found: &Shells, roles: Vec<Role>, stem: &str, ids: &mut Ids) -> Body {
@@ -392,7 +292,12 @@ fn body(soup: &Soup, found: &Shells, roles: Vec<Role>, stem: &str, ids: &mut Ids
             }
         }
     };
-    let triangles = shells().map(|s| s.count).sum();
+    let counted: usize = shells().map(|s| s.count).sum();
+    // The members of a whole file hold its collapsed triangles, which bound nothing.
+    let triangles = match members {
+        Members::All => soup.triangles.count() - found.collapsed.len(),
+        Members::Listed(_) => counted,
+    };
     let first = shells().map(|s| s.first).min().unwrap_or(0);
     let bounds = [
         [0, 1, 2].map(|k| {

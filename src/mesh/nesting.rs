@@ -56,7 +56,11 @@ fn containers_in(f: &impl Corners, shells: &[&Shell]) -> Vec<Vec<usize>> {
             for i in k * BLOCK..shells[b].count.min((k + 1) * BLOCK) {
                 let t = f.triangle(select.get(i));
                 grid.near(&t, |a, p| {
-                    if a != b && encloses(shells[b], shells[a]) {
+                    let under = |k: usize| {
+                        t[0][k].min(t[1][k]).min(t[2][k]) <= p[k]
+                            && p[k] <= t[0][k].max(t[1][k]).max(t[2][k])
+                    };
+                    if under(1) && under(2) && a != b && encloses(shells[b], shells[a]) {
                         match ray_crossing(p, &t) {
                             Position::Misses => {}
                             hit => hits.push((a, b, hit)),
@@ -94,13 +98,14 @@ fn winding(hits: impl Iterator<Item = Position>) -> Option<i64> {
     Some(total)
 }
 
-/// The first of the vertices that lie furthest along +x: its ray meets the fewest triangles.
+/// The vertex that lies furthest along +x (then +y, then +z, so that the order of the file decides
+/// nothing): its ray meets the fewest triangles.
 fn foremost(f: &impl Corners, shell: &Shell) -> Point {
     let select = shell.members.select();
     let mut best = f.triangle(shell.first as usize)[0];
     for i in 0..shell.count {
         for p in f.triangle(select.get(i)) {
-            if p[0] > best[0] {
+            if p > best {
                 best = p;
             }
         }
@@ -114,16 +119,32 @@ fn inside_by_other_points(f: &impl Corners, a: &Shell, b: &Shell) -> bool {
     const FACETS: usize = 64;
     let (of_a, of_b) = (a.members.select(), b.members.select());
     let of_b = |i: usize| f.triangle(of_b.get(i));
-    let spread = |k: usize, most: usize| (k * a.count / most.min(a.count)).min(a.count - 1);
-    for k in 0..VERTICES.min(a.count) {
-        for p in f.triangle(of_a.get(spread(k, VERTICES))) {
+    // In the order of coordinates, so that the file's order has no say.
+    let mut facets: Vec<[Point; 3]> = (0..a.count)
+        .map(|i| {
+            let mut t = f.triangle(of_a.get(i));
+            t.sort_by(compare);
+            t
+        })
+        .collect();
+    facets.sort_by(|s, t| {
+        compare(&s[2], &t[2])
+            .then(compare(&s[1], &t[1]))
+            .then(compare(&s[0], &t[0]))
+    });
+    let spread = |most: usize| {
+        let most = most.min(facets.len());
+        (0..most).map(move |k| k * a.count / most)
+    };
+    for k in spread(VERTICES) {
+        for p in facets[k] {
             if let Some(w) = winding((0..b.count).map(|i| ray_crossing(&p, &of_b(i)))) {
                 return w != 0;
             }
         }
     }
-    for k in 0..FACETS.min(a.count) {
-        let p = RationalPoint::middle(&f.triangle(of_a.get(spread(k, FACETS))));
+    for k in spread(FACETS) {
+        let p = RationalPoint::middle(&facets[k]);
         if let Some(w) = winding((0..b.count).map(|i| p.ray_crossing(&of_b(i)))) {
             return w != 0;
         }
@@ -131,9 +152,17 @@ fn inside_by_other_points(f: &impl Corners, a: &Shell, b: &Shell) -> bool {
     false
 }
 
+fn compare(p: &Point, q: &Point) -> std::cmp::Ordering {
+    (0..3)
+        .map(|k| p[k].total_cmp(&q[k]))
+        .find(|o| o.is_ne())
+        .unwrap_or(std::cmp::Ordering::Equal)
+}
+
 /// Points sorted into square cells of the (y, z) plane.
 struct Grid {
     low: [f64; 2],
+    high: [f64; 2],
     per_unit: [f64; 2],
     side: usize,
     cells: BTreeMap<usize, Vec<(usize, Point)>>,
@@ -157,6 +186,7 @@ impl Grid {
         });
         let mut grid = Self {
             low,
+            high,
             per_unit,
             side,
             cells: BTreeMap::new(),
@@ -182,6 +212,15 @@ impl Grid {
             let high = t[0][k + 1].max(t[1][k + 1]).max(t[2][k + 1]);
             (self.row(k, low), self.row(k, high))
         };
+        // Most triangles of most meshes cover none of the points.
+        let outside = |k: usize| {
+            let low = t[0][k + 1].min(t[1][k + 1]).min(t[2][k + 1]);
+            let high = t[0][k + 1].max(t[1][k + 1]).max(t[2][k + 1]);
+            high < self.low[k] || low > self.high[k]
+        };
+        if outside(0) || outside(1) {
+            return;
+        }
         let ((y0, y1), (z0, z1)) = (span(0), span(1));
         for y in y0..=y1 {
             for (_, points) in self.cells.range(y * self.side + z0..=y * self.side + z1) {

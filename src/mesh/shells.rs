@@ -178,8 +178,14 @@ impl Shells {
                     .copied()
                     .filter(|&t| sets.find(t) == first)
                     .collect(),
+                // The whole file is measured from its first vertex, as a single reading of it is,
+                // even where its first triangles have collapsed.
+                first: if matches!(members, Members::All) {
+                    0
+                } else {
+                    first
+                },
                 members,
-                first,
             })
             .collect();
         let drafts = join_names(drafts);

@@ -94,7 +94,7 @@ pub(crate) use each;
 #[derive(Debug)]
 pub struct Records {
     /// The whole file.
-    pub bytes: crate::format::Bytes,
+    pub bytes: crate::bytes::Bytes,
     /// Number of records; `84 + 50 * count` bytes are present.
     pub count: usize,
 }

@@ -1,6 +1,6 @@
 //! Pairing at busy edges: which triangles bound the same wedge of solid.
 
-use crate::geometry::{Point, plane_side, turn_2d};
+use crate::geometry::{Point, is_flat, plane_side, turn_2d};
 
 /// A triangle at an edge: its apex, and whether it runs along the edge from low to high.
 #[derive(Clone, Copy, Debug)]
@@ -16,13 +16,29 @@ pub(crate) struct Leaf {
 /// a forward one behind it. So each backward leaf opens a wedge that the next forward one closes;
 /// where wedges overlap they nest like brackets. The order by angle is exact.
 pub(crate) fn pair_across_solid(low: &Point, high: &Point, leaves: &[Leaf]) -> Vec<(usize, usize)> {
-    let reference = leaves[0].apex;
+    // A facet whose corners lie on one line has no angle of its own: it cannot be what the others
+    // are measured from, and goes where that one stands.
+    let reference = leaves
+        .iter()
+        .map(|l| l.apex)
+        .filter(|apex| !is_flat(&[*low, *high, *apex]))
+        .min_by(places)
+        .unwrap_or(leaves[0].apex);
     let mut order: Vec<usize> = (0..leaves.len()).collect();
     order.sort_by(|&i, &j| {
         compare_angle(low, high, &reference, &leaves[i].apex, &leaves[j].apex)
             // At one angle the wedge that ends is closed before the next opens.
             .then(leaves[j].forward.cmp(&leaves[i].forward))
-            .then(i.cmp(&j))
+            .then_with(|| {
+                // Leaves that lie on each other: by place, so that the order of the file decides
+                // nothing; the other way round where the edge is read the other way round.
+                let by_place = places(&leaves[i].apex, &leaves[j].apex).then(i.cmp(&j));
+                if places(low, high).is_lt() {
+                    by_place
+                } else {
+                    by_place.reverse()
+                }
+            })
     });
     // Start where no bracket is open: just after the point of least balance.
     let mut balance = 0i64;
@@ -46,6 +62,30 @@ pub(crate) fn pair_across_solid(low: &Point, high: &Point, leaves: &[Leaf]) -> V
         }
     }
     pairs
+}
+
+/// Points in a fixed order.
+fn places(a: &Point, b: &Point) -> std::cmp::Ordering {
+    let axes = a
+        .iter()
+        .zip(b)
+        .map(|(x, y)| (x + 0.0).total_cmp(&(y + 0.0)));
+    axes.fold(std::cmp::Ordering::Equal, std::cmp::Ordering::then)
+}
+
+/// Whether the half-plane of `p` about low → high lies strictly inside the wedge that is swept by
+/// turning the half-plane of `from` ahead to that of `to`. A wedge of no angle, or of a whole
+/// turn, holds none.
+pub(crate) fn strictly_inside(
+    low: &Point,
+    high: &Point,
+    from: &Point,
+    to: &Point,
+    p: &Point,
+) -> bool {
+    half(low, high, from, p) != 0
+        && half(low, high, from, to) != 0
+        && compare_angle(low, high, from, p, to).is_lt()
 }
 
 /// Compares the angles of two apexes about low → high, each counted from the reference apex.
@@ -110,6 +150,48 @@ mod tests {
         let mut pairs = pair_across_solid(&[0.0; 3], &[0.0, 0.0, 1.0], &leaves);
         pairs.sort_unstable();
         assert_eq!(pairs, [(0, 2), (3, 1)]);
+    }
+
+    #[test]
+    fn a_facet_without_area_measures_no_angle() {
+        // The two cubes again, with a sliver along the edge, passed both ways.
+        let flat = |forward| Leaf {
+            apex: [0.0, 0.0, 0.5],
+            forward,
+        };
+        for first in [0, 4] {
+            let mut leaves = vec![leaf(2, false), leaf(1, true), leaf(3, true), leaf(0, false)];
+            leaves.insert(first, flat(true));
+            leaves.insert(first, flat(false));
+            let pairs = pair_across_solid(&[0.0; 3], &[0.0, 0.0, 1.0], &leaves);
+            let quarter = |i: usize| leaves[i].apex;
+            assert_eq!(pairs.len(), 3);
+            // The cube that does not stand where angles are counted from keeps its two leaves.
+            assert!(
+                pairs.iter().any(|&(i, j)| {
+                    (quarter(i), quarter(j)) == ([1.0, 0.0, 0.5], [0.0, 1.0, 0.5])
+                })
+            );
+        }
+    }
+
+    #[test]
+    fn a_half_plane_inside_a_wedge_is_told() {
+        let (low, high) = ([0.0; 3], [0.0, 0.0, 1.0]);
+        let at = |q: usize| leaf(q, true).apex;
+        for (from, to, p, want) in [
+            (0, 2, 1, true),
+            (0, 2, 3, false),
+            (2, 0, 3, true),
+            (2, 0, 1, false),
+            (0, 3, 2, true),
+            (0, 1, 1, false),
+            (0, 1, 0, false),
+            (1, 1, 2, false),
+        ] {
+            let (from, to, p) = (at(from), at(to), at(p));
+            assert_eq!(strictly_inside(&low, &high, &from, &to, &p), want);
+        }
     }
 
     #[test]

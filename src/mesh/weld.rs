@@ -27,7 +27,7 @@ pub(crate) fn weld(triangles: &Triangles) -> Result<(Vec<[u32; 3]>, Words)> {
                 "{} triangles are more than the {MOST_TRIANGLES} that can be audited",
                 triangles.count()
             ),
-            "split the file into its bodies and weigh each",
+            "weigh it as a whole with --whole, or split the file into its bodies",
         ));
     }
     Ok(match triangles {

@@ -81,7 +81,8 @@ impl Moments {
         let s = self.about - about;
         let first = self.first + self.zeroth * s;
         let cross = s * self.first.transpose();
-        let second = self.second + cross + cross.transpose() + self.zeroth * s * s.transpose();
+        // Bracketed so that each step is symmetric to the last bit.
+        let second = self.second + (cross + cross.transpose()) + self.zeroth * (s * s.transpose());
         Self {
             about,
             zeroth: self.zeroth,
@@ -129,11 +130,13 @@ impl Moments {
     /// The thing after a rigid motion or a mirroring; its weight stays.
     #[must_use]
     pub fn placed(&self, p: &Placement) -> Self {
+        let second = p.turn * self.second * p.turn.transpose();
         Self {
             about: p.apply(&self.about),
             zeroth: self.zeroth,
             first: p.turn * self.first,
-            second: p.turn * self.second * p.turn.transpose(),
+            // Rounding leaves the two halves an ulp apart.
+            second: (second + second.transpose()) * 0.5,
         }
     }
 

@@ -8,4 +8,5 @@ mod solid;
 pub use algebra::{Moments, Placement};
 pub use principal::{Principal, principal};
 pub use skin::integrate_skin;
+pub(crate) use solid::Running;
 pub use solid::{CHUNK, ChunkSums, SolidIntegrals, chunk_sums, integrate};

@@ -21,19 +21,14 @@ use rayon::prelude::*;
 
 use super::Moments;
 use crate::geometry::eft::{Fused, Product, Split, Sum, two_diff, two_sum};
-use crate::geometry::{Corners, Select};
+use crate::geometry::{BLOCK, Block, Coordinate, Corners, LANES, Lane, Level, Select};
 
 /// Triangles in one chunk. Part of the definition of the result's bits: a different number would
 /// round differently in the last place.
 pub const CHUNK: usize = 4096;
 
-/// Triangles that are worked on side by side; also part of the definition of the bits.
-const LANES: usize = 8;
-
 /// Compensated sums of one chunk: volume, first (3), second (6: xx yy zz xy xz yz), area.
 const SUMS: usize = 11;
-
-type Lane = [f64; LANES];
 
 /// What one pass over the triangles of a solid yields, in the file's unit.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -74,6 +69,11 @@ impl ChunkSums {
             mine.join(*theirs);
         }
         self.absolute += next.absolute;
+    }
+
+    /// Surface area so far.
+    pub fn area(&self) -> f64 {
+        self.sums[SUMS - 1].value() / 2.0
     }
 
     /// The integrals, with `apex` the point that the sums were taken about.
@@ -129,31 +129,22 @@ pub fn chunk_sums<C: Corners>(
     apex: [f64; 3],
     middle: [f64; 3],
 ) -> ChunkSums {
-    #[cfg(target_arch = "x86_64")]
-    {
-        if std::arch::is_x86_feature_detected!("avx512f") {
-            // SAFETY: the processor has just been asked for the feature.
-            #[allow(unsafe_code)]
-            return unsafe { wide512(facets, select, range, apex, middle) };
-        }
-        if std::arch::is_x86_feature_detected!("avx2") && std::arch::is_x86_feature_detected!("fma")
-        {
-            // SAFETY: the processor has just been asked for both features.
-            #[allow(unsafe_code)]
-            return unsafe { wide256(facets, select, range, apex, middle) };
-        }
+    match Level::of_processor() {
+        // SAFETY: the processor has just been asked for the features.
+        #[cfg(target_arch = "x86_64")]
+        #[allow(unsafe_code)]
+        Level::Wide512 => unsafe { wide512(facets, select, range, apex, middle) },
+        // SAFETY: as above.
+        #[cfg(target_arch = "x86_64")]
+        #[allow(unsafe_code)]
+        Level::Wide256 => unsafe { wide256(facets, select, range, apex, middle) },
+        Level::Fused => kernel::<C, Fused>(facets, select, range, apex, middle),
+        Level::Plain => kernel::<C, Split>(facets, select, range, apex, middle),
     }
-    #[cfg(target_arch = "aarch64")]
-    {
-        // Every aarch64 processor has the fused multiply-add.
-        return kernel::<C, Fused>(facets, select, range, apex, middle);
-    }
-    #[allow(unreachable_code)]
-    kernel::<C, Split>(facets, select, range, apex, middle)
 }
 
 #[cfg(target_arch = "x86_64")]
-#[target_feature(enable = "avx512f,avx2,fma")]
+#[target_feature(enable = "avx512f,avx512dq,avx512vl,avx512bw,avx2,fma")]
 fn wide512<C: Corners>(
     facets: &C,
     select: Select<'_>,
@@ -176,9 +167,78 @@ fn wide256<C: Corners>(
     kernel::<C, Fused>(facets, select, range, apex, middle)
 }
 
-#[inline(always)]
-fn lanes(f: impl Fn(usize) -> f64) -> Lane {
-    std::array::from_fn(f)
+/// Sums that grow by a block of triangles at a time.
+pub(crate) struct Running {
+    high: [Lane; SUMS],
+    low: [Lane; SUMS],
+    absolute: Lane,
+    /// What the triangles of the last block have added.
+    terms: [[f64; BLOCK]; TERMS],
+}
+
+impl Running {
+    /// Nothing.
+    pub(crate) const ZERO: Self = Self {
+        high: [[0.0; LANES]; SUMS],
+        low: [[0.0; LANES]; SUMS],
+        absolute: [0.0; LANES],
+        terms: [[0.0; BLOCK]; TERMS],
+    };
+
+    /// Adds the triangles of a block, seen from `apex`; `m` leads from there to the point of the
+    /// absolute sum.
+    #[allow(
+        clippy::needless_range_loop,
+        reason = "one index runs over several arrays"
+    )]
+    #[inline(always)]
+    pub(crate) fn add<T: Coordinate, P: Product>(
+        &mut self,
+        block: &Block<T>,
+        apex: [f64; 3],
+        m: [f64; 3],
+    ) {
+        // One loop over plain numbers: this is what compilers turn into vector code best.
+        for l in 0..BLOCK {
+            let mut x = [[0.0; 3]; 3];
+            for k in 0..3 {
+                for i in 0..3 {
+                    x[k][i] = block.at[k][i][l].wide();
+                }
+            }
+            let of = terms_of::<P>(&x, apex, m);
+            for i in 0..TERMS {
+                self.terms[i][l] = of[i];
+            }
+        }
+        for group in 0..BLOCK / LANES {
+            for i in 0..SUMS {
+                for l in 0..LANES {
+                    let (s, e) = two_sum(self.high[i][l], self.terms[i][group * LANES + l]);
+                    self.high[i][l] = s;
+                    self.low[i][l] += e;
+                }
+            }
+        }
+        for group in 0..BLOCK / LANES {
+            for l in 0..LANES {
+                self.low[0][l] += self.terms[VOLUME_LOW][group * LANES + l];
+                self.absolute[l] += self.terms[ABSOLUTE][group * LANES + l];
+            }
+        }
+    }
+
+    /// The lanes joined in their order.
+    pub(crate) fn finish(&self) -> ChunkSums {
+        let mut out = ChunkSums::ZERO;
+        for i in 0..SUMS {
+            for l in 0..LANES {
+                out.sums[i].join(Sum::from_parts(self.high[i][l], self.low[i][l]));
+            }
+        }
+        out.absolute = self.absolute.iter().sum();
+        out
+    }
 }
 
 #[inline(always)]
@@ -189,141 +249,102 @@ fn kernel<C: Corners, P: Product>(
     apex: [f64; 3],
     middle: [f64; 3],
 ) -> ChunkSums {
-    #![allow(clippy::needless_range_loop)] // lanes of several arrays side by side
-    let mut high = [[0.0; LANES]; SUMS];
-    let mut low = [[0.0; LANES]; SUMS];
-    let mut absolute = [0.0; LANES];
     // From the apex to the middle of the box.
-    let m = [
-        middle[0] - apex[0],
-        middle[1] - apex[1],
-        middle[2] - apex[2],
-    ];
+    let m = [0, 1, 2].map(|i| middle[i] - apex[i]);
+    // Lanes past the end hold one corner three times: a triangle that adds exactly nothing.
+    match (facets.as_records(), select) {
+        (Some(records), Select::All) => blocks::<f32, P>(range, apex, m, |part, block| {
+            block.records(&records, part, [0.0; 3]);
+        }),
+        _ => blocks::<f64, P>(range, apex, m, |part, block| {
+            block.triangles(facets, select, part, apex);
+        }),
+    }
+}
+
+/// Sums over `range`, laid out by `fill` a block at a time.
+#[inline(always)]
+fn blocks<T: Coordinate, P: Product>(
+    range: std::ops::Range<usize>,
+    apex: [f64; 3],
+    m: [f64; 3],
+    fill: impl Fn(std::ops::Range<usize>, &mut Block<T>),
+) -> ChunkSums {
+    let mut running = Running::ZERO;
+    let mut block = Block::<T>::new();
     let mut at = range.start;
     while at < range.end {
-        // Corner coordinates, one lane a triangle. Lanes past the end hold the apex three times:
-        // a triangle that adds exactly zero to every sum.
-        let mut x = [[[0.0f64; LANES]; 3]; 3];
-        for lane in 0..LANES {
-            let t = if at + lane < range.end {
-                facets.triangle(select.get(at + lane))
-            } else {
-                [apex; 3]
-            };
-            for k in 0..3 {
-                for i in 0..3 {
-                    x[k][i][lane] = t[k][i];
-                }
-            }
-        }
-        let terms = terms::<P>(&x, apex, m);
-        for (i, term) in terms.sums.iter().enumerate() {
-            for l in 0..LANES {
-                let (s, e) = two_sum(high[i][l], term[l]);
-                high[i][l] = s;
-                low[i][l] += e;
-            }
-        }
-        for l in 0..LANES {
-            low[0][l] += terms.volume_low[l];
-            absolute[l] += terms.absolute[l];
-        }
-        at += LANES;
+        let end = range.end.min(at + BLOCK);
+        fill(at..end, &mut block);
+        running.add::<T, P>(&block, apex, m);
+        at = end;
     }
-    let mut out = ChunkSums::ZERO;
-    for i in 0..SUMS {
-        for l in 0..LANES {
-            out.sums[i].join(Sum::from_parts(high[i][l], low[i][l]));
-        }
-    }
-    out.absolute = absolute.iter().sum();
-    out
+    running.finish()
 }
 
-/// What each of the lanes adds.
-struct Terms {
-    sums: [Lane; SUMS],
-    volume_low: Lane,
-    absolute: Lane,
-}
+/// Terms of one triangle: those of the sums, then what the first one has beyond f64, then that of K.
+const TERMS: usize = SUMS + 2;
+const VOLUME_LOW: usize = SUMS;
+const ABSOLUTE: usize = SUMS + 1;
 
 #[inline(always)]
-fn terms<P: Product>(x: &[[Lane; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> Terms {
+fn terms_of<P: Product>(x: &[[f64; 3]; 3], apex: [f64; 3], m: [f64; 3]) -> [f64; TERMS] {
     // a, b, c: corners seen from the apex; u = b−a, v = c−a: edges; each with its rounding error.
-    let mut a = [[0.0; LANES]; 3];
-    let mut al = [[0.0; LANES]; 3];
-    let mut b = [[0.0; LANES]; 3];
-    let mut c = [[0.0; LANES]; 3];
-    let mut u = [[0.0; LANES]; 3];
-    let mut ul = [[0.0; LANES]; 3];
-    let mut v = [[0.0; LANES]; 3];
-    let mut vl = [[0.0; LANES]; 3];
+    let mut a = [0.0; 3];
+    let mut al = [0.0; 3];
+    let mut b = [0.0; 3];
+    let mut c = [0.0; 3];
+    let mut u = [0.0; 3];
+    let mut ul = [0.0; 3];
+    let mut v = [0.0; 3];
+    let mut vl = [0.0; 3];
     for i in 0..3 {
-        for l in 0..LANES {
-            (a[i][l], al[i][l]) = two_diff(x[0][i][l], apex[i]);
-            (u[i][l], ul[i][l]) = two_diff(x[1][i][l], x[0][i][l]);
-            (v[i][l], vl[i][l]) = two_diff(x[2][i][l], x[0][i][l]);
-            b[i][l] = x[1][i][l] - apex[i];
-            c[i][l] = x[2][i][l] - apex[i];
-        }
+        (a[i], al[i]) = two_diff(x[0][i], apex[i]);
+        (u[i], ul[i]) = two_diff(x[1][i], x[0][i]);
+        (v[i], vl[i]) = two_diff(x[2][i], x[0][i]);
+        b[i] = x[1][i] - apex[i];
+        c[i] = x[2][i] - apex[i];
     }
     // n = u × v, twice the area vector.
-    let mut n = [[0.0; LANES]; 3];
-    let mut nl = [[0.0; LANES]; 3];
+    let mut n = [0.0; 3];
+    let mut nl = [0.0; 3];
     for i in 0..3 {
         let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-        for l in 0..LANES {
-            let (p, pe) = P::two_prod(u[j][l], v[k][l]);
-            let (q, qe) = P::two_prod(u[k][l], v[j][l]);
-            let (h, e) = two_diff(p, q);
-            n[i][l] = h;
-            nl[i][l] = e
-                + ((pe - qe)
-                    + ((ul[j][l] * v[k][l] + u[j][l] * vl[k][l])
-                        - (ul[k][l] * v[j][l] + u[k][l] * vl[j][l])));
-        }
+        let (p, pe) = P::two_prod(u[j], v[k]);
+        let (q, qe) = P::two_prod(u[k], v[j]);
+        let (h, e) = two_diff(p, q);
+        n[i] = h;
+        nl[i] = e + ((pe - qe) + ((ul[j] * v[k] + u[j] * vl[k]) - (ul[k] * v[j] + u[k] * vl[j])));
     }
     // d = a · n, as a value and its rest.
-    let mut d = [0.0; LANES];
-    let mut dl = [0.0; LANES];
-    for l in 0..LANES {
-        let (p0, e0) = P::two_prod(a[0][l], n[0][l]);
-        let (p1, e1) = P::two_prod(a[1][l], n[1][l]);
-        let (p2, e2) = P::two_prod(a[2][l], n[2][l]);
-        let (s, f0) = two_sum(p0, p1);
-        let (s, f1) = two_sum(s, p2);
-        let rest = (f0 + f1)
-            + ((e0 + e1) + e2)
-            + ((a[0][l] * nl[0][l] + a[1][l] * nl[1][l] + a[2][l] * nl[2][l])
-                + (al[0][l] * n[0][l] + al[1][l] * n[1][l] + al[2][l] * n[2][l]));
-        (d[l], dl[l]) = two_sum(s, rest);
+    let (p0, e0) = P::two_prod(a[0], n[0]);
+    let (p1, e1) = P::two_prod(a[1], n[1]);
+    let (p2, e2) = P::two_prod(a[2], n[2]);
+    let (s, f0) = two_sum(p0, p1);
+    let (s, f1) = two_sum(s, p2);
+    let rest = (f0 + f1)
+        + ((e0 + e1) + e2)
+        + ((a[0] * nl[0] + a[1] * nl[1] + a[2] * nl[2])
+            + (al[0] * n[0] + al[1] * n[1] + al[2] * n[2]));
+    let (d, dl) = two_sum(s, rest);
+    let mut out = [0.0; TERMS];
+    out[0] = d;
+    let mut s = [0.0; 3];
+    for i in 0..3 {
+        s[i] = a[i] + b[i] + c[i];
+        out[1 + i] = d * s[i];
     }
-    let s: [Lane; 3] = std::array::from_fn(|i| lanes(|l| a[i][l] + b[i][l] + c[i][l]));
-    let second = |i: usize, j: usize| {
-        lanes(|l| {
-            d[l] * ((a[i][l] * a[j][l] + b[i][l] * b[j][l])
-                + (c[i][l] * c[j][l] + s[i][l] * s[j][l]))
-        })
-    };
-    let absolute = lanes(|l| (d[l] - (m[0] * n[0][l] + m[1] * n[1][l] + m[2] * n[2][l])).abs());
-    let area = lanes(|l| (n[0][l] * n[0][l] + n[1][l] * n[1][l] + n[2][l] * n[2][l]).sqrt());
-    Terms {
-        sums: [
-            d,
-            lanes(|l| d[l] * s[0][l]),
-            lanes(|l| d[l] * s[1][l]),
-            lanes(|l| d[l] * s[2][l]),
-            second(0, 0),
-            second(1, 1),
-            second(2, 2),
-            second(0, 1),
-            second(0, 2),
-            second(1, 2),
-            area,
-        ],
-        volume_low: dl,
-        absolute,
+    let second = [(0, 0), (1, 1), (2, 2), (0, 1), (0, 2), (1, 2)];
+    for k in 0..6 {
+        let (i, j) = second[k];
+        out[4 + k] = d * ((a[i] * a[j] + b[i] * b[j]) + (c[i] * c[j] + s[i] * s[j]));
     }
+    // The area vector rounded once: of a long thin facet the first part alone is off by far more.
+    let w = [n[0] + nl[0], n[1] + nl[1], n[2] + nl[2]];
+    out[10] = (w[0] * w[0] + w[1] * w[1] + w[2] * w[2]).sqrt();
+    out[VOLUME_LOW] = dl;
+    out[ABSOLUTE] = (d - (m[0] * w[0] + m[1] * w[1] + m[2] * w[2])).abs();
+    out
 }
 
 #[cfg(test)]

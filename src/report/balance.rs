@@ -232,6 +232,7 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
     out.push_str(&matrix(
         "inertia about the centre of mass, kg m2; off-diagonals are the tensor's own, −∫xy dm",
         &t.inertia_kg_m2,
+        6,
     ));
     let mut table = Table::new(vec![
         Column::text("n", "principal"),
@@ -264,6 +265,7 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
         out.push_str(&matrix(
             &format!("inertia about {}, kg m2", point(&a.point_m, unit)),
             &a.inertia_kg_m2,
+            6,
         ));
     }
     out

@@ -11,6 +11,7 @@ pub mod materials;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;
+mod whole_text;
 mod words;
 
 pub use document::{Document, Failure, InputFact, PROGRAM, Program, path_hex, to_json};

@@ -39,8 +39,17 @@ pub struct WeighedFile {
     pub bodies: Option<Vec<WeighedBody>>,
     /// All bodies together; null where one of them cannot be weighed.
     pub whole: Option<Whole>,
+    /// How those were come by, where they are not exact for the mesh.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub whole_estimate: Option<Estimate>,
     /// The bodies for want of which there is no whole.
     pub whole_missing: Vec<String>,
+    /// What was proved of the surface, null for nothing; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub proved: Option<Option<&'static str>>,
+    /// Whether the whole came out negative and was turned; absent where bodies were asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub turned: Option<bool>,
 }
 
 /// All bodies of a file together.
@@ -79,12 +88,26 @@ pub struct WeighedBody {
     pub findings: Vec<Finding>,
     /// Why it was not weighed.
     pub refused: Option<Refused>,
-    /// How the figures of an open body were come by.
-    pub estimate: Option<()>,
+    /// How the figures were come by, where they are not exact for the mesh.
+    pub estimate: Option<Estimate>,
     /// What the facets do to the figures of a curved body.
     pub facets: Option<()>,
     /// How far the figures may be off; null where it was not computed.
     pub uncertainty: Option<()>,
+}
+
+/// Figures that are estimated, and how far off they may be.
+#[derive(Clone, Copy, Debug, Serialize)]
+pub struct Estimate {
+    /// How they were come by.
+    pub method: &'static str,
+    /// Under which assumption the bounds hold.
+    #[serde(rename = "if")]
+    pub condition: &'static str,
+    /// How far off the volume may be, m³.
+    pub volume_bound_m3: f64,
+    /// How far off the centroid may be, m.
+    pub centre_bound_m: f64,
 }
 
 /// Volumes of a body that holds a solid within its solid.

@@ -1,10 +1,10 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{Scale, significant, tensor};
+use super::digits::{self, DEFAULT_DIGITS, Scale, significant, tensor};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
-use super::weigh::{WeighBody, WeighedBody, WeighedFile};
+use super::weigh::{Estimate, WeighBody, WeighedBody, WeighedFile};
 use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
 use crate::masses::Figures;
@@ -25,7 +25,9 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
         f.bodies
             .iter()
             .flatten()
-            .any(|b| b.figures.mass_kg.is_some())
+            .map(|b| &b.figures)
+            .chain(f.whole.as_ref().map(|w| &w.figures))
+            .any(|f| f.mass_kg.is_some())
     });
     if weighed {
         out.push_str(&format!("{CAUTION}\n"));
@@ -49,19 +51,14 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     }
     let unit = unit_of(file.unit);
     let bodies = file.bodies.as_deref().unwrap_or_default();
-    let first = bodies.first().map(|b| &b.figures);
-    if let Some(density) = first.and_then(|f| f.density_kg_m3) {
-        let name = first
-            .and_then(|f| f.material.as_deref())
-            .map_or(String::new(), |m| format!("{m}, "));
-        out.push_str(&format!(
-            "material: {name}{} kg/m3, solid\n",
-            significant(density, 6)
-        ));
-    } else {
-        out.push_str(
-            "no density given: volume figures only (--density or --material gives masses)\n",
-        );
+    let first = bodies
+        .first()
+        .map(|b| &b.figures)
+        .or(file.whole.as_ref().map(|w| &w.figures));
+    out.push_str(&substance(first));
+    if file.bodies.is_none() {
+        out.push_str(&super::whole_text::render(file, unit, look));
+        return out;
     }
     out.push('\n');
     out.push_str(&table(file, unit).render(look));
@@ -86,7 +83,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
     if readable.len() <= IN_FULL {
         for b in &readable {
-            out.push_str(&in_full(&b.id, &b.figures, unit, look));
+            out.push_str(&in_full(&b.id, &b.figures, b.estimate.as_ref(), unit, look));
         }
     } else {
         out.push_str(&format!(
@@ -97,12 +94,51 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     if readable.len() > 1
         && let Some(whole) = &file.whole
     {
-        out.push_str(&in_full("all bodies together", &whole.figures, unit, look));
+        out.push_str(&in_full(
+            "all bodies together",
+            &whole.figures,
+            file.whole_estimate.as_ref(),
+            unit,
+            look,
+        ));
     }
-    out.push_str(
-        "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
-    );
+    if let Some(e) = &file.whole_estimate {
+        out.push_str(&estimated("all bodies together", e));
+    }
+    out.push_str(match file.overlap {
+        "untested" => "\nself-overlap: not tested; surfaces that cut each other would count some space twice (check tests it, --filled counts it once)\n",
+        "none" => "\nself-overlap: none\n",
+        _ => "\nself-overlap: found; each region is counted once\n",
+    });
     out
+}
+
+/// How far off an estimate may be.
+fn estimated(id: &str, e: &Estimate) -> String {
+    format!(
+        "{}: by {}, volume ± {} cm3, centre ± {} mm, if {}\n",
+        crate::text::shown(id),
+        e.method,
+        significant(e.volume_bound_m3 * 1e6, 2),
+        significant(e.centre_bound_m * 1e3, 2),
+        e.condition
+    )
+}
+
+/// What the figures are of.
+fn substance(first: Option<&Figures>) -> String {
+    let Some(first) = first else {
+        return String::new();
+    };
+    let Some(density) = first.density_kg_m3 else {
+        return "no density given: volume figures only (--density or --material gives masses)\n"
+            .to_owned();
+    };
+    let name = first
+        .material
+        .as_deref()
+        .map_or(String::new(), |m| format!("{m}, "));
+    format!("material: {name}{} kg/m3, solid\n", significant(density, 6))
 }
 
 fn refusal(b: &WeighedBody, look: Look) -> String {
@@ -144,6 +180,9 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
             crate::text::shown(&f.advice)
         ));
     }
+    if let Some(e) = &b.estimate {
+        out.push_str(&estimated(&b.id, e));
+    }
     if let Some(n) = &b.nested {
         out.push_str(&format!(
             "   sum {} cm3 · union {} cm3 · void {} cm3\n",
@@ -156,7 +195,14 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 }
 
 /// Centre, tensor, principal moments and axes of one thing.
-fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
+pub(super) fn in_full(
+    title: &str,
+    f: &Figures,
+    estimate: Option<&Estimate>,
+    unit: LengthUnit,
+    look: Look,
+) -> String {
+    let shown = supported_digits(f, estimate);
     let mut out = format!(
         "\n{}\n",
         look.marked(&crate::text::shown(title), Mark::Heading)
@@ -174,7 +220,7 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
     };
     out.push_str(&format!(
         "{word}  {}   frame: the file's own axes and origin\n",
-        point(centre, unit)
+        estimated_point(centre, estimate, unit)
     ));
     let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
         Some(i) => (i, format!("kg {u}2"), k),
@@ -183,6 +229,7 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
     out.push_str(&matrix(
         &format!("inertia about the {word}, {name}; off-diagonals are the tensor's own, −∫xy"),
         &tensor_si.map(|r| r.map(|x| x * scale)),
+        shown,
     ));
     let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
     if let (Some(moments), Some(axes), Some(radii)) =
@@ -204,8 +251,8 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
             };
             t.row(vec![
                 Cell::text(&(i + 1).to_string()),
-                Cell::figure(significant(moments[i] * scale, 6), moments[i]),
-                Cell::figure(significant(radii[i] / unit.metres(), 6), radii[i]),
+                Cell::figure(significant(moments[i] * scale, shown), moments[i]),
+                Cell::figure(significant(radii[i] / unit.metres(), shown), radii[i]),
                 Cell::text(&axis),
             ]);
         }
@@ -223,14 +270,38 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         out.push_str(&matrix(
             &format!("inertia about {}, {name}", point(&about.point_m, unit)),
             &tensor_si.map(|r| r.map(|x| x * scale)),
+            shown,
         ));
     }
     out
 }
 
+/// Digits that an estimate's relative error supports; three times the volume's, since moments of
+/// a higher order weigh what is far off more.
+fn supported_digits(f: &Figures, estimate: Option<&Estimate>) -> u32 {
+    let relative = f
+        .volume_m3
+        .zip(estimate)
+        .map(|(v, e)| 3.0 * e.volume_bound_m3 / v.abs())
+        .filter(|r| r.is_finite() && *r > 0.0);
+    relative.map_or(DEFAULT_DIGITS, |r| {
+        // The cast saturates.
+        ((-r.log10()).floor() as u32 + 1).clamp(1, DEFAULT_DIGITS)
+    })
+}
+
+fn estimated_point(at_m: &[f64; 3], estimate: Option<&Estimate>, unit: LengthUnit) -> String {
+    let Some(e) = estimate else {
+        return point(at_m, unit);
+    };
+    let off = Some(e.centre_bound_m / unit.metres());
+    let p = at_m.map(|x| digits::figure(x / unit.metres(), off));
+    format!("({}, {}, {}) {}", p[0], p[1], p[2], unit.symbol())
+}
+
 /// A tensor as three aligned rows under its title.
-pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3]) -> String {
-    let (cells, exponent) = tensor(m, 6);
+pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3], shown: u32) -> String {
+    let (cells, exponent) = tensor(m, shown);
     let times = if exponent == 0 {
         String::new()
     } else {
@@ -252,28 +323,21 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
         .filter_map(|b| b.figures.mass_kg)
         .fold(0.0f64, |m, x| m.max(x.abs()));
     let scale = Scale::for_mass(heaviest);
-    let u = unit.symbol();
-    let mut table = Table::new(vec![
-        Column::text("id", "body"),
-        Column::figures("volume_cm3", "volume", "cm3"),
-        Column::figures("area_cm2", "area", "cm2"),
-        Column::figures("mass", "mass", scale.symbol),
-        Column::figures("x", "centre x", u),
-        Column::figures("y", "y", u),
-        Column::figures("z", "z", u),
-        Column::text("size", &format!("box, {u}")),
-    ]);
+    let mut table = columns("body", unit, scale);
     for b in bodies {
         let name = if b.refused.is_some() {
             format!("{} (refused)", b.id)
         } else {
             b.id.clone()
         };
-        table.row(cells(&name, &b.figures, unit, scale));
+        table.row(cells(&name, &b.figures, b.estimate.as_ref(), unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => table.total(cells("total", &whole.figures, unit, scale)),
+            Some(whole) => {
+                let estimate = file.whole_estimate.as_ref();
+                table.total(cells("total", &whole.figures, estimate, unit, scale));
+            }
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
@@ -282,19 +346,50 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     table
 }
 
-fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
-    let figure = |x: Option<f64>, k: f64| {
-        x.map_or_else(Cell::empty, |x| Cell::figure(significant(x * k, 6), x * k))
+/// The table of figures, still empty.
+pub(super) fn columns(what: &str, unit: LengthUnit, scale: Scale) -> Table {
+    let u = unit.symbol();
+    Table::new(vec![
+        Column::text("id", what),
+        Column::figures("volume_cm3", "volume", "cm3"),
+        Column::figures("area_cm2", "area", "cm2"),
+        Column::figures("mass", "mass", scale.symbol),
+        Column::figures("x", "centre x", u),
+        Column::figures("y", "y", u),
+        Column::figures("z", "z", u),
+        Column::text("size", &format!("box, {u}")),
+    ])
+}
+
+pub(super) fn cells(
+    name: &str,
+    f: &Figures,
+    estimate: Option<&Estimate>,
+    unit: LengthUnit,
+    scale: Scale,
+) -> Vec<Cell> {
+    // No more digits than an estimate's own bound supports.
+    let figure = |x: Option<f64>, k: f64, off: Option<f64>| {
+        x.map_or_else(Cell::empty, |x| {
+            Cell::figure(digits::figure(x * k, off.map(|o| o * k)), x * k)
+        })
     };
+    let volume_off = estimate.map(|e| e.volume_bound_m3);
+    let mass_off = volume_off.zip(f.density_kg_m3).map(|(v, d)| v * d);
+    let centre_off = estimate.map(|e| e.centre_bound_m);
     let mut row = vec![
         Cell::text(name),
-        figure(f.volume_m3, 1e6),
-        figure(f.area_m2, 1e4),
+        figure(f.volume_m3, 1e6, volume_off),
+        figure(f.area_m2, 1e4, None),
         f.mass_kg.map_or_else(Cell::empty, |m| {
-            Cell::figure(significant(scale.of(m), 6), scale.of(m))
+            let off = mass_off.map(|o| scale.of(o));
+            Cell::figure(digits::figure(scale.of(m), off), scale.of(m))
         }),
     ];
     match (&f.centroid_m, &f.bounds_m) {
+        (Some(c), _) if centre_off.is_some() => {
+            row.extend(c.map(|x| figure(Some(x), 1.0 / unit.metres(), centre_off)));
+        }
         (Some(c), Some(b)) => {
             let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
             row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
@@ -340,8 +435,21 @@ pub fn csv(body: &WeighBody) -> Result<String> {
     columns.extend(keys.iter().map(|k| Column::figures(k, k, "")));
     let mut table = Table::new(columns);
     for file in &body.files {
-        for b in file.bodies.iter().flatten() {
-            let f = &b.figures;
+        let bodies = file.bodies.iter().flatten().map(|b| {
+            let refused = b.refused.as_ref().map_or("", |r| r.kind);
+            (b.id.as_str(), refused, Some(&b.figures))
+        });
+        let whole = file.bodies.is_none() && file.error.is_none();
+        let whole = whole.then(|| {
+            (
+                "",
+                super::whole_text::refusal(file),
+                file.whole.as_ref().map(|w| &w.figures),
+            )
+        });
+        let unknown = Figures::unknown(None);
+        for (id, refused, figures) in bodies.chain(whole) {
+            let f = figures.unwrap_or(&unknown);
             let i = |a: usize, b: usize| f.inertia_kg_m2.map(|t| t[a][b]);
             let c = |k: usize| f.centroid_m.map(|c| c[k]);
             let size = |k: usize| f.bounds_m.map(|b| b[1][k] - b[0][k]);
@@ -363,11 +471,7 @@ pub fn csv(body: &WeighBody) -> Result<String> {
                 size(1),
                 size(2),
             ];
-            let mut row = vec![
-                Cell::text(&file.path),
-                Cell::text(&b.id),
-                Cell::text(b.refused.as_ref().map_or("", |r| r.kind)),
-            ];
+            let mut row = vec![Cell::text(&file.path), Cell::text(id), Cell::text(refused)];
             row.extend(figures.map(|x| x.map_or_else(Cell::empty, |x| Cell::figure("", x))));
             table.row(row);
         }

@@ -144,6 +144,8 @@ pub(super) fn kind_word(kind: FindingKind, count: u64) -> &'static str {
         FindingKind::Degenerate => "degenerate facets",
         FindingKind::Duplicate if one => "duplicate facet",
         FindingKind::Duplicate => "duplicate facets",
+        FindingKind::SelfOverlap if one => "pair of facets that overlap",
+        FindingKind::SelfOverlap => "pairs of facets that overlap",
         FindingKind::NestedSolid if one => "solid nested in a solid",
         FindingKind::NestedSolid => "solids nested in a solid",
         FindingKind::NameSplit if one => "solid split over names",

@@ -28,10 +28,19 @@ impl Audit {
     }
 }
 
+/// Whether surfaces are tested for cutting each other, which costs more than all the rest.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Overlap {
+    /// They are.
+    Tested,
+    /// They are not.
+    Skipped,
+}
+
 /// Everything that is wrong with the mesh, in a fixed order: by kind, places in file order.
 ///
 /// `metres` is the length of the file's unit; `places` the most places that a finding lists.
-pub fn audit(mesh: &Mesh, metres: f64, places: usize) -> Audit {
+pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit {
     let look = Look {
         mesh,
         metres,
@@ -60,6 +69,13 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize) -> Audit {
     look.gaps.report(&look, &home, &mut put);
     report_joined(&look, &home, &mut put);
     look.notes(&home, &mut put);
+    if overlap == Overlap::Tested {
+        let found = super::overlap::self_overlap(mesh, metres, places);
+        out.file.extend(found.file);
+        for (list, more) in out.bodies.iter_mut().zip(found.bodies) {
+            list.extend(more);
+        }
+    }
     out.file.sort_by_key(|f| (f.kind, f.severity));
     for list in &mut out.bodies {
         list.sort_by_key(|f| (f.kind, f.severity));

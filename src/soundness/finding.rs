@@ -24,6 +24,8 @@ pub enum FindingKind {
     Degenerate,
     /// Facets that stand in one place.
     Duplicate,
+    /// Surfaces that cut each other or cover each other in one plane.
+    SelfOverlap,
     /// A solid within a solid.
     NestedSolid,
     /// A solid whose surface is spread over several names.
@@ -38,7 +40,27 @@ pub enum FindingKind {
     TinyShell,
 }
 
-/// All kinds that [`audit`](super::audit) looks for.
+/// All kinds that [`audit`](super::audit) looks for where surfaces are tested for overlap too.
+pub const TESTED_WITH_OVERLAP: &[FindingKind] = &[
+    FindingKind::Hole,
+    FindingKind::Crack,
+    FindingKind::TJunction,
+    FindingKind::NonManifoldEdge,
+    FindingKind::NonManifoldVertex,
+    FindingKind::WindingConflict,
+    FindingKind::InsideOut,
+    FindingKind::Degenerate,
+    FindingKind::Duplicate,
+    FindingKind::SelfOverlap,
+    FindingKind::NestedSolid,
+    FindingKind::NameSplit,
+    FindingKind::WarpedPolygon,
+    FindingKind::FacetNormalDisagrees,
+    FindingKind::UnitSuspect,
+    FindingKind::TinyShell,
+];
+
+/// All kinds that [`audit`](super::audit) looks for where they are not.
 pub const TESTED: &[FindingKind] = &[
     FindingKind::Hole,
     FindingKind::Crack,

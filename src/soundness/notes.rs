@@ -4,15 +4,15 @@ use std::collections::{BTreeMap, BTreeSet};
 
 use super::audit::{Home, Look};
 use super::facets::has_normals;
-use super::finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED};
+use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
 use crate::geometry::Corners;
 use crate::mesh::near::{distance, length};
 use crate::mesh::{Mesh, each};
 
-/// The kinds that [`audit`](super::audit()) and [`unit_suspect`](super::unit_suspect) look for in
-/// this mesh: stated normals are compared where the reader keeps them, in binary STL.
-pub fn tested(mesh: &Mesh) -> Vec<FindingKind> {
-    TESTED
+/// Those of `kinds` that [`audit`](super::audit()) and [`unit_suspect`](super::unit_suspect) can
+/// look for in this mesh: stated normals are compared where the reader keeps them, in binary STL.
+pub fn tested(mesh: &Mesh, kinds: &[FindingKind]) -> Vec<FindingKind> {
+    kinds
         .iter()
         .copied()
         .filter(|k| *k != FindingKind::FacetNormalDisagrees || has_normals(mesh))

@@ -7,25 +7,23 @@ use crate::format::Bytes;
 use crate::mesh::{Records, Run, Soup, Triangles};
 
 /// Bytes before the first record.
-const HEADER: u64 = 84;
+pub(crate) const HEADER: u64 = 84;
 /// Bytes of a record.
-const RECORD: u64 = 50;
+pub(crate) const RECORD: u64 = 50;
 /// Records that one step of the finiteness check takes.
 const STEP: usize = 16 * 1024;
 
 /// The number of triangles that the file says it has.
-pub(super) fn declared(bytes: &[u8]) -> Option<u64> {
+pub(crate) fn declared(bytes: &[u8]) -> Option<u64> {
     let count: [u8; 4] = bytes.get(80..84)?.try_into().ok()?;
     Some(u64::from(u32::from_le_bytes(count)))
 }
 
-/// Reads a binary STL without looking at the coordinates, for callers that fold
-/// [`check_finite`] into a pass of their own.
+/// The number of triangles of a binary STL of `len` bytes that begins with `head`.
 ///
 /// # Errors
 /// `truncated`, `count-mismatch` or `empty`, with the declared count and what the length allows.
-pub fn parse_unchecked(bytes: Bytes) -> Result<Soup> {
-    let len = bytes.len() as u64;
+pub(crate) fn count_in(head: &[u8], len: u64) -> Result<u64> {
     if len == 0 {
         return Err(Error::new(
             Kind::Empty,
@@ -33,7 +31,7 @@ pub fn parse_unchecked(bytes: Bytes) -> Result<Soup> {
             "export the mesh again",
         ));
     }
-    let Some(declared) = declared(&bytes) else {
+    let Some(declared) = declared(head) else {
         return Err(Error::new(
             Kind::Truncated,
             format!("the file ends at byte {len}, inside the 84-byte header of a binary STL"),
@@ -73,6 +71,16 @@ pub fn parse_unchecked(bytes: Bytes) -> Result<Soup> {
         )
         .at_byte(80));
     }
+    Ok(declared)
+}
+
+/// Reads a binary STL without looking at the coordinates, for callers that fold
+/// [`check_finite`] into a pass of their own.
+///
+/// # Errors
+/// `truncated`, `count-mismatch` or `empty`, with the declared count and what the length allows.
+pub fn parse_unchecked(bytes: Bytes) -> Result<Soup> {
+    let declared = count_in(&bytes, bytes.len() as u64)?;
     let Ok(count) = usize::try_from(declared) else {
         return Err(Error::new(
             Kind::TooLarge,
@@ -113,28 +121,40 @@ pub fn check_finite(records: &Records) -> Result<()> {
             let at = any.then(|| part.iter().position(|r| overflow(r) != 0))??;
             Some(step * STEP + at)
         });
-    let Some(triangle) = bad else { return Ok(()) };
-    let record = &all[triangle];
-    for k in 0..9 {
-        let at = 12 + 4 * k;
-        let value =
-            f32::from_le_bytes([record[at], record[at + 1], record[at + 2], record[at + 3]]);
-        if !value.is_finite() {
-            let what = if value.is_nan() {
-                "not a number"
-            } else {
-                "infinite"
-            };
-            let axis = ["x", "y", "z"][k % 3];
-            return Err(Error::new(
-                Kind::NotFinite,
-                format!("{axis} of corner {} of triangle {triangle} is {what}", k / 3),
-                "export the mesh again; the program that wrote it could not compute this coordinate",
-            )
-            .at_byte(HEADER + RECORD * triangle as u64 + at as u64));
-        }
+    match bad {
+        Some(at) => Err(not_finite(&all[at], at as u64)),
+        None => Ok(()),
     }
-    Ok(())
+}
+
+/// The first of the records with a corner that is not finite, told as `triangle` and up.
+pub(crate) fn first_not_finite(records: &[[u8; RECORD as usize]], triangle: u64) -> Option<Error> {
+    let at = records.iter().position(|r| overflow(r) != 0)?;
+    Some(not_finite(&records[at], triangle + at as u64))
+}
+
+/// What is wrong with a record that [`overflow`] has caught.
+fn not_finite(record: &[u8; RECORD as usize], triangle: u64) -> Error {
+    let value = |k: usize| {
+        let at = 12 + 4 * k;
+        f32::from_le_bytes([record[at], record[at + 1], record[at + 2], record[at + 3]])
+    };
+    let k = (0..9).find(|&k| !value(k).is_finite()).unwrap_or(0);
+    let what = if value(k).is_nan() {
+        "not a number"
+    } else {
+        "infinite"
+    };
+    let axis = ["x", "y", "z"][k % 3];
+    Error::new(
+        Kind::NotFinite,
+        format!(
+            "{axis} of corner {} of triangle {triangle} is {what}",
+            k / 3
+        ),
+        "export the mesh again; the program that wrote it could not compute this coordinate",
+    )
+    .at_byte(HEADER + RECORD * triangle + 12 + 4 * k as u64)
 }
 
 /// Non-zero where one of the nine corner coordinates is not finite.
