@@ -120,9 +120,14 @@ fn kinds(found: &[&Finding]) -> Vec<(String, String, u64)> {
 }
 
 /// What every check looks for, at the least.
-const TESTED: [&str; 9] = [
+const TESTED: [&str; 14] = [
     "hole",
+    "crack",
+    "t-junction",
     "non-manifold-edge",
+    "non-manifold-vertex",
+    "unit-suspect",
+    "tiny-shell",
     "winding-conflict",
     "inside-out",
     "degenerate",

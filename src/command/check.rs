@@ -43,6 +43,7 @@ impl CheckArgs {
 
 /// Runs the command.
 pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
+    args.meshes.judge()?;
     let answers = gather(expand(&args.meshes), |input| check_file(input, args));
     let mut files = Vec::new();
     let mut exit = 0;
@@ -79,7 +80,7 @@ fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFil
         unit_assumed: false,
         bounds_m: None,
         sound: None,
-        tested: args.tested(),
+        tested: args.tested().to_vec(),
         findings: Vec::new(),
         error: Some(error.clone()),
         bodies: Vec::new(),
@@ -100,6 +101,12 @@ fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Che
 fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Result<Checked> {
     let metres = m.unit.metres();
     let mut audit = soundness::audit(&m.mesh, metres, args.places, args.overlap());
+    audit.file.extend(soundness::unit_suspect(
+        &m.mesh,
+        m.unit,
+        m.unit_assumed,
+        None,
+    ));
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<CheckedBody> = chosen
         .iter()
@@ -123,7 +130,7 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         unit_assumed: m.unit_assumed,
         bounds_m: m.mesh.bounds().map(|b| b.map(|p| p.map(|x| x * metres))),
         sound: Some(sound),
-        tested: args.tested(),
+        tested: soundness::tested(&m.mesh, args.tested()),
         findings: file_findings,
         error: None,
         bodies,

@@ -7,9 +7,10 @@ use sha2::{Digest, Sha256};
 
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Family};
-use crate::mesh::{Body, Mesh, ReaderNote};
-use crate::quantity::LengthUnit;
+use crate::mesh::{Body, Joined, Mesh, ReaderNote};
+use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::InputFact;
+use crate::soundness::rounded_up;
 
 /// Options that say how meshes are read.
 #[derive(Args, Clone, Debug)]
@@ -26,6 +27,10 @@ pub(super) struct MeshArgs {
     /// Look into sub-folders too
     #[arg(long)]
     pub(super) deep: bool,
+    /// Make vertices on open edges one where they lie within DIST, such as "0.01 mm" (bare numbers
+    /// in the mesh's unit); what that did is said
+    #[arg(long, value_name = "DIST")]
+    pub(super) join: Option<String>,
     /// Give the SHA-256 of each input
     #[arg(long)]
     pub(super) hash: bool,
@@ -46,6 +51,19 @@ fn parse_unit(text: &str) -> Result<LengthUnit, String> {
 
 fn parse_family(text: &str) -> Result<Family, String> {
     Family::from_option(text).map_err(|e| format!("{}: {}", e.message, e.advice))
+}
+
+impl MeshArgs {
+    /// Judges what can be judged before anything is read.
+    ///
+    /// # Errors
+    /// As [`join_distance`].
+    pub(super) fn judge(&self) -> Result<()> {
+        if let Some(text) = &self.join {
+            join_distance(text, LengthUnit::Mm)?;
+        }
+        Ok(())
+    }
 }
 
 /// One thing to read.
@@ -174,13 +192,20 @@ pub(super) fn digest(bytes: &[u8]) -> String {
 pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
     let kind = format::detect(&bytes, &input.path, args.format)?;
     let soup = format::read(bytes, &input.path, args.format)?;
-    let (unit, unit_assumed, warnings) = said(soup.unit, &soup.notes, input, args);
+    let (unit, unit_assumed, mut warnings) = said(soup.unit, &soup.notes, input, args);
     let stem = input
         .path
         .file_stem()
         .map_or("body".into(), |s| s.to_string_lossy());
     let stem = if stem == "-" { "body".into() } else { stem };
-    let mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
+    let mut mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
+    if let Some(text) = &args.join {
+        let distance = join_distance(text, unit)? / unit.metres();
+        mesh = mesh
+            .join(distance, &stem)
+            .map_err(|e| e.in_file(&input.path))?;
+        warnings.extend(mesh.joined().map(|j| joined_said(j, unit, &input.path)));
+    }
     Ok(ReadMesh {
         mesh,
         format: kind.name(),
@@ -188,6 +213,45 @@ pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadM
         unit_assumed,
         warnings,
     })
+}
+
+/// The distance of `--join`, m.
+///
+/// # Errors
+/// What is wrong with it as a length; `usage` where it is not above zero.
+pub(super) fn join_distance(text: &str, unit: LengthUnit) -> Result<f64> {
+    let q = Quantity::parse(text, Dimension::Length, Some(unit))
+        .map_err(|e| Error::new(e.kind, format!("--join: {}", e.message), e.advice))?;
+    if q.value > 0.0 && q.value.is_finite() {
+        return Ok(q.value);
+    }
+    Err(Error::new(
+        Kind::Usage,
+        format!("--join: \"{text}\" is not a distance above zero"),
+        "state the distance that `bismar check` names for the crack",
+    ))
+}
+
+/// What joining did, in words.
+fn joined_said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
+    let (within, sign) = (rounded_up(joined.distance), unit.symbol());
+    let message = match joined.vertices {
+        0 => format!("no two vertices on open edges lie within {within} {sign}: none was joined"),
+        n => format!(
+            "{n} {} on open edges moved to a neighbour within {within} {sign}, the farthest by {} {sign}",
+            if n == 1 { "vertex" } else { "vertices" },
+            rounded_up(joined.farthest)
+        ),
+    };
+    Warning {
+        kind: "joined".to_owned(),
+        message,
+        path: Some(path.to_string_lossy().into_owned()),
+        line: None,
+        advice:
+            "stitch the surface in the model and export again, so that nothing has to be joined"
+                .to_owned(),
+    }
 }
 
 /// The unit of a mesh, whether it was assumed, and the warnings: of the reader, and of that.

@@ -14,7 +14,7 @@ use crate::report::weigh::{
     Estimate, NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole,
 };
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Filled, Overlap};
+use crate::soundness::{self, Filled, Finding, FindingKind, Overlap, Severity};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -38,7 +38,7 @@ pub(super) struct WeighArgs {
     about: Option<String>,
     /// Give totals alone, in one reading with little memory: proves that edges cancel, and does not
     /// see doubled meshes, solids in solids or single shells inside out
-    #[arg(long, conflicts_with = "nested")]
+    #[arg(long, conflicts_with_all = ["nested", "join"])]
     whole: bool,
 }
 
@@ -71,6 +71,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
+    args.meshes.judge()?;
     let inputs = expand(&args.meshes);
     if args.whole {
         whole::without_picks(&inputs)?;
@@ -201,13 +202,17 @@ fn answer(
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<WeighedBody> = chosen
         .iter()
-        .map(|&(i, body)| WeighedBody {
-            findings: std::mem::take(&mut audit.bodies[i]),
-            ..if is_cut(i) {
+        .map(|&(i, body)| {
+            let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about)
             } else {
                 weighed(&m.mesh, body, metres, rule, substance, about)
+            };
+            out.findings = std::mem::take(&mut audit.bodies[i]);
+            if let Some(refused) = &mut out.refused {
+                advise_joining(refused, &out.findings, m.unit);
             }
+            out
         })
         .collect();
     let missing: Vec<String> = bodies
@@ -228,6 +233,13 @@ fn answer(
             (Some(sum), None)
         }
     };
+    let mass = total.as_ref().and_then(|f| f.mass_kg);
+    audit.file.extend(soundness::unit_suspect(
+        &m.mesh,
+        m.unit,
+        m.unit_assumed,
+        mass,
+    ));
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
         path_hex: path_hex(&input.path),
@@ -316,6 +328,21 @@ fn weighed(
         estimate: None,
         facets: None,
         uncertainty: None,
+    }
+}
+
+/// Of a body that only cracks keep open, the refusal names the distance that closes it.
+fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit) {
+    let mut blocks = findings.iter().filter(|f| f.severity == Severity::Blocks);
+    let (Some(crack), None) = (blocks.next(), blocks.next()) else {
+        return;
+    };
+    if let (FindingKind::Crack, Some(join)) = (crack.kind, crack.join_m) {
+        refused.advice = format!(
+            "the surface is cracked: stitch it in the model and export again, or weigh it with --join \"{} {}\"",
+            soundness::rounded_up(join / unit.metres()),
+            unit.symbol()
+        );
     }
 }
 

@@ -5,10 +5,9 @@ use std::collections::{BTreeMap, HashSet};
 use super::families::{Part, Role, families};
 use super::shells::{Members, Shell, Shells, middle};
 use super::{Soup, each};
-use rayon::prelude::*;
 
 use crate::error::Result;
-use crate::geometry::{Corners, is_flat};
+use crate::geometry::Corners;
 use crate::moments::{SolidIntegrals, integrate};
 
 /// A welded mesh with its bodies, in file order.
@@ -18,6 +17,7 @@ pub struct Mesh {
     pub soup: Soup,
     pub(crate) found: Shells,
     bodies: Vec<Body>,
+    pub(super) joined: Option<super::Joined>,
 }
 
 /// An outer shell and what lies directly inside it.
@@ -88,6 +88,7 @@ impl Mesh {
             soup,
             found,
             bodies,
+            joined: None,
         })
     }
 
@@ -203,16 +204,6 @@ impl Mesh {
         let select = body.members.select();
         let n = select.len(self.soup.triangles.count());
         (0..n).map(move |i| select.get(i) as u32)
-    }
-
-    /// Triangles whose corners lie exactly on one line, ascending.
-    pub(crate) fn flat_triangles(&self) -> Vec<u32> {
-        each!(&self.soup.triangles, f => {
-            (0..f.count() as u32)
-                .into_par_iter()
-                .filter(|&t| is_flat(&f.triangle(t as usize)))
-                .collect()
-        })
     }
 
     /// Surface area of a body, open or not (file unit²).

@@ -33,7 +33,7 @@ pub struct CheckedFile {
     /// Whether nothing blocks or doubts; null where it could not be read.
     pub sound: Option<bool>,
     /// The kinds that were looked for.
-    pub tested: &'static [FindingKind],
+    pub tested: Vec<FindingKind>,
     /// Findings that belong to no single body.
     pub findings: Vec<Finding>,
     /// Why it could not be read.

@@ -9,7 +9,7 @@ use super::words::{box_size, coordinates, direction, file_heading, kind_word, po
 use crate::error::Result;
 use crate::masses::Figures;
 use crate::quantity::LengthUnit;
-use crate::soundness::Severity;
+use crate::soundness::{FindingKind, Severity};
 
 /// Bodies of one file that are shown with their tensors; more are shown as a table alone.
 const IN_FULL: usize = 8;
@@ -71,7 +71,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     for f in file
         .findings
         .iter()
-        .filter(|f| f.severity < Severity::Notes)
+        .filter(|f| f.severity < Severity::Notes || f.kind == FindingKind::UnitSuspect)
     {
         out.push_str(&format!(
             "{} {}: {}\n",

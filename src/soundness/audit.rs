@@ -2,9 +2,12 @@
 
 use std::collections::BTreeMap;
 
+use super::facets::{OddFacets, odd_facets};
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
+use super::gaps::{Gaps, report_joined};
+use super::sizes::tiny_shells;
 use crate::geometry::Corners;
-use crate::mesh::{Body, Mesh, NestedRule, Part, Shell, each};
+use crate::mesh::{Body, Loop, Mesh, NestedRule, Part, Pinch, Shell, each, pinches};
 
 /// Findings of a mesh: those of each body, in the order of bodies, and those of no one body.
 #[derive(Clone, Debug, Default)]
@@ -42,7 +45,10 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit
         mesh,
         metres,
         places,
-        flat: mesh.flat_triangles(),
+        odd: odd_facets(mesh),
+        pinches: pinches(&mesh.soup.triangles, mesh.found()),
+        tiny: tiny_shells(&mesh.found().shells),
+        gaps: Gaps::of(mesh),
     };
     let home = look.home_of_triangles();
     let mut out = Audit {
@@ -60,6 +66,9 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit
     look.degenerate(&home, &mut put);
     look.duplicates(&home, &mut put);
     look.warped(&home, &mut put);
+    look.gaps.report(&look, &home, &mut put);
+    report_joined(&look, &home, &mut put);
+    look.notes(&home, &mut put);
     if overlap == Overlap::Tested {
         let found = super::overlap::self_overlap(mesh, metres, places);
         out.file.extend(found.file);
@@ -74,23 +83,26 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit
     out
 }
 
-struct Look<'a> {
-    mesh: &'a Mesh,
-    metres: f64,
-    places: usize,
-    /// Triangles without area, ascending.
-    flat: Vec<u32>,
+pub(super) struct Look<'a> {
+    pub(super) mesh: &'a Mesh,
+    pub(super) metres: f64,
+    pub(super) places: usize,
+    pub(super) odd: OddFacets,
+    pub(super) pinches: Vec<Pinch>,
+    /// Stray fragments, as places in the list of shells.
+    pub(super) tiny: Vec<usize>,
+    gaps: Gaps,
 }
 
 /// Which body a triangle belongs to, for the few that are asked about.
-struct Home {
+pub(super) struct Home {
     /// (triangle, body) of the listed members, sorted; empty where one body holds all.
     of: Vec<(u32, u32)>,
     all: Option<usize>,
 }
 
 impl Home {
-    fn of(&self, t: u32) -> Option<usize> {
+    pub(super) fn of(&self, t: u32) -> Option<usize> {
         self.all.or_else(|| {
             let at = self.of.binary_search_by_key(&t, |&(t, _)| t).ok()?;
             Some(self.of[at].1 as usize)
@@ -110,7 +122,9 @@ impl Look<'_> {
         let found = self.mesh.found();
         // Only what stands at a busy edge, has collapsed or is doubled is asked about.
         let asks = !found.odd.is_empty()
-            || !self.flat.is_empty()
+            || !self.odd.is_empty()
+            || !self.pinches.is_empty()
+            || self.mesh.joined().is_some()
             || !found.duplicates.places.is_empty()
             || !self.mesh.soup.warped.is_empty();
         let mut of = Vec::new();
@@ -123,20 +137,20 @@ impl Look<'_> {
         Home { of, all: None }
     }
 
-    fn vertex(&self, id: u32) -> [f64; 3] {
+    pub(super) fn vertex(&self, id: u32) -> [f64; 3] {
         self.mesh.soup.triangles.vertex(id).map(|x| x * self.metres)
     }
 
-    fn corner(&self, t: u32) -> [f64; 3] {
+    pub(super) fn corner(&self, t: u32) -> [f64; 3] {
         each!(&self.mesh.soup.triangles, f => f.triangle(t as usize)[0]).map(|x| x * self.metres)
     }
 
-    fn middle_of_edge(&self, a: u32, b: u32) -> [f64; 3] {
+    pub(super) fn middle_of_edge(&self, a: u32, b: u32) -> [f64; 3] {
         let (p, q) = (self.vertex(a), self.vertex(b));
         [0, 1, 2].map(|k| p[k] + (q[k] - p[k]) / 2.0)
     }
 
-    fn finding(
+    pub(super) fn finding(
         &self,
         kind: FindingKind,
         severity: Severity,
@@ -153,21 +167,20 @@ impl Look<'_> {
             places,
             volume_effect_m3: effect.map(|e| e.0),
             volume_effect_is: effect.map(|e| e.1),
+            join_m: None,
             advice: advice.into(),
         }
     }
 
     /// Holes, winding conflicts, and what is said of whole shells.
     fn shells_of(&self, body: &Body, put: &mut dyn FnMut(Finding)) {
-        let shells: Vec<&Shell> = body
-            .roles()
-            .iter()
-            .map(|r| &self.mesh.found().shells[r.shell])
-            .collect();
+        let shells = body.roles().iter().map(|r| r.shell);
         let mut holes = Vec::new();
         let mut conflicts = Vec::new();
-        for shell in &shells {
-            holes.extend(shell.loops.iter().filter(|l| !l.conflict));
+        for place in shells {
+            let shell: &Shell = &self.mesh.found().shells[place];
+            let unexplained = |l: &&Loop| !l.conflict && !self.gaps.explains(place, &l.vertices);
+            holes.extend(shell.loops.iter().filter(unexplained));
             let doubled = shell
                 .open
                 .iter()
@@ -237,7 +250,7 @@ impl Look<'_> {
         }
     }
 
-    fn place(&self, at_m: [f64; 3], triangles: Vec<u32>) -> Place {
+    pub(super) fn place(&self, at_m: [f64; 3], triangles: Vec<u32>) -> Place {
         Place {
             at_m,
             triangles,
@@ -380,7 +393,7 @@ impl Look<'_> {
     fn degenerate(&self, home: &Home, put: &mut dyn FnMut(Option<usize>, Finding)) {
         self.by_body(
             home,
-            &self.flat,
+            &self.odd.flat,
             |t| self.place(self.corner(t), vec![t]),
             &mut |body, count, places| {
                 put(
@@ -398,7 +411,7 @@ impl Look<'_> {
         );
     }
 
-    fn by_body(
+    pub(super) fn by_body(
         &self,
         home: &Home,
         triangles: &[u32],

@@ -8,13 +8,19 @@ use serde::Serialize;
 pub enum FindingKind {
     /// A boundary loop.
     Hole,
+    /// Open edges that close when near vertices are joined.
+    Crack,
+    /// A vertex on the edge of a facet that does not have it as a corner.
+    TJunction,
     /// An edge of more than two triangles.
     NonManifoldEdge,
+    /// A vertex at which several fans of triangles meet.
+    NonManifoldVertex,
     /// An edge that two triangles pass in the same direction.
     WindingConflict,
     /// A shell that faces the wrong way and was turned.
     InsideOut,
-    /// A triangle without area.
+    /// A triangle without area, or with hardly any height.
     Degenerate,
     /// Facets that stand in one place.
     Duplicate,
@@ -26,12 +32,21 @@ pub enum FindingKind {
     NameSplit,
     /// A polygon whose corners are not flat.
     WarpedPolygon,
+    /// A facet whose stated normal points away from the side that its corners turn about.
+    FacetNormalDisagrees,
+    /// A size or a mass that makes the assumed unit unlikely.
+    UnitSuspect,
+    /// A stray fragment.
+    TinyShell,
 }
 
 /// All kinds that [`audit`](super::audit) looks for where surfaces are tested for overlap too.
 pub const TESTED_WITH_OVERLAP: &[FindingKind] = &[
     FindingKind::Hole,
+    FindingKind::Crack,
+    FindingKind::TJunction,
     FindingKind::NonManifoldEdge,
+    FindingKind::NonManifoldVertex,
     FindingKind::WindingConflict,
     FindingKind::InsideOut,
     FindingKind::Degenerate,
@@ -40,12 +55,18 @@ pub const TESTED_WITH_OVERLAP: &[FindingKind] = &[
     FindingKind::NestedSolid,
     FindingKind::NameSplit,
     FindingKind::WarpedPolygon,
+    FindingKind::FacetNormalDisagrees,
+    FindingKind::UnitSuspect,
+    FindingKind::TinyShell,
 ];
 
 /// All kinds that [`audit`](super::audit) looks for where they are not.
 pub const TESTED: &[FindingKind] = &[
     FindingKind::Hole,
+    FindingKind::Crack,
+    FindingKind::TJunction,
     FindingKind::NonManifoldEdge,
+    FindingKind::NonManifoldVertex,
     FindingKind::WindingConflict,
     FindingKind::InsideOut,
     FindingKind::Degenerate,
@@ -53,6 +74,9 @@ pub const TESTED: &[FindingKind] = &[
     FindingKind::NestedSolid,
     FindingKind::NameSplit,
     FindingKind::WarpedPolygon,
+    FindingKind::FacetNormalDisagrees,
+    FindingKind::UnitSuspect,
+    FindingKind::TinyShell,
 ];
 
 /// How bad a finding is.
@@ -115,6 +139,9 @@ pub struct Finding {
     pub volume_effect_m3: Option<f64>,
     /// What kind of figure that is.
     pub volume_effect_is: Option<EffectIs>,
+    /// Of a crack: the distance within which joining vertices closes it, or closed it, m.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub join_m: Option<f64>,
     /// What to do, in plain words.
     pub advice: String,
 }

@@ -2,13 +2,22 @@
 
 mod audit;
 mod columns;
+mod crack;
+mod facets;
 mod filled;
 mod finding;
+mod gaps;
+mod notes;
 mod overlap;
 mod shared_space;
+mod sizes;
+mod t_junction;
 
 pub use audit::{Audit, Overlap, audit};
 pub use filled::{Filled, filled, filled_bodies};
 pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED, TESTED_WITH_OVERLAP};
+pub(crate) use gaps::rounded_up;
+pub use notes::tested;
 pub use overlap::{Cuts, OverlapFindings, cuts, self_overlap};
 pub use shared_space::{SharedSpace, common_space, shared_spaces};
+pub use sizes::unit_suspect;

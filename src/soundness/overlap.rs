@@ -152,6 +152,7 @@ fn finding(mesh: &Mesh, metres: f64, cuts: &Cuts, effect: Option<f64>, advice: S
         places,
         volume_effect_m3: effect,
         volume_effect_is: effect.map(|_| EffectIs::Estimate),
+        join_m: None,
         advice,
     }
 }

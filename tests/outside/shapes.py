@@ -86,15 +86,22 @@ def fans(faces):
     return [[f[0], f[i], f[i + 1]] for f in faces for i in range(1, len(f) - 1)]
 
 
+def normal(t):
+    """The direction that the corners turn about, not of unit length."""
+    u, v = ([t[i][k] - t[0][k] for k in range(3)] for i in (1, 2))
+    return tuple(u[(k + 1) % 3] * v[(k + 2) % 3] - u[(k + 2) % 3] * v[(k + 1) % 3] for k in range(3))
+
+
 def narrowed(triangles):
     """What a binary STL holds of the coordinates."""
     return [[tuple(f32(x) for x in p) for p in t] for t in triangles]
 
 
-def stl_binary(triangles, header=b"made by hand", count=None):
+def stl_binary(triangles, header=b"made by hand", count=None, normals=None):
     out = header.ljust(80, b" ") + struct.pack("<I", len(triangles) if count is None else count)
-    for t in triangles:
-        out += struct.pack("<12fH", 0, 0, 0, *(x for p in t for x in p), 0)
+    for i, t in enumerate(triangles):
+        normal = normals[i] if normals else (0, 0, 0)
+        out += struct.pack("<12fH", *normal, *(x for p in t for x in p), 0)
     return out
 
 
