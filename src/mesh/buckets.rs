@@ -36,6 +36,16 @@ impl<const W: usize> Buckets<W> {
         items_of: impl Fn(usize) -> Option<[[u32; W]; M]> + Sync,
     ) -> Self {
         let hash = Hash::<W>::default();
+        Self::fill_by(n, scratch, items_of, |item| hash.of(item))
+    }
+
+    /// The same with a hash of one's own, whose top bits must be the random ones.
+    pub(crate) fn fill_by<const M: usize>(
+        n: usize,
+        scratch: Vec<u32>,
+        items_of: impl Fn(usize) -> Option<[[u32; W]; M]> + Sync,
+        hash: impl Fn(&[u32; W]) -> u64 + Sync,
+    ) -> Self {
         let bits = (n.saturating_mul(M) / ITEMS_A_BUCKET)
             .next_power_of_two()
             .trailing_zeros()
@@ -65,7 +75,7 @@ impl<const W: usize> Buckets<W> {
                 let mut used = 0;
                 for items in range.clone().filter_map(&items_of) {
                     for item in &items {
-                        let tag = (hash.of(item) >> (64 - bits)) as u16;
+                        let tag = (hash(item) >> (64 - bits)) as u16;
                         tags[used] = tag;
                         used += 1;
                         starts[tag as usize + 1] += 1;

@@ -6,7 +6,7 @@ use rayon::prelude::*;
 
 use super::Triangles;
 use super::boundary::Merge;
-use super::buckets::{Buckets, hash2, random_seed};
+use super::buckets::{Buckets, Hash};
 use super::shells::{Members, Shells};
 
 /// A vertex with its triangles, of one name, ascending.
@@ -115,12 +115,12 @@ fn split_links<const W: usize>(
     items: impl Fn(usize) -> Option<[[u32; W]; 3]> + Sync,
     key: impl Fn([u32; W]) -> (u32, u32) + Sync,
 ) -> Vec<(u32, u32)> {
-    let seed = random_seed();
+    let hash = Hash::<3>::default();
     let hash = |item: &[u32; W]| {
         let (v, name) = key(*item);
-        hash2(seed, v.into(), name.into())
+        hash.of(&[v, name, 0])
     };
-    let buckets = Buckets::<W>::fill(n, None, items, hash);
+    let buckets = Buckets::<W>::fill_by(n, Vec::new(), items, hash);
     (0..buckets.count())
         .into_par_iter()
         .map_init(Links::default, |links, b| {
@@ -135,6 +135,7 @@ fn split_links<const W: usize>(
 /// The links of the vertices of one bucket.
 #[derive(Default)]
 struct Links {
+    hash: Hash<3>,
     /// Open addressing: place in `keys`, plus one.
     slots: Vec<u32>,
     keys: Vec<((u32, u32), u32)>,
@@ -157,7 +158,7 @@ impl Links {
     #[inline(always)]
     fn see(&mut self, key: (u32, u32), a: u32, b: u32) {
         let mask = self.slots.len() - 1;
-        let mut at = (hash2(1, key.0.into(), key.1.into()) >> 20) as usize & mask;
+        let mut at = (self.hash.of(&[key.0, key.1, 0]) >> 32) as usize & mask;
         let place = loop {
             match self.slots[at] {
                 0 => {
