@@ -70,7 +70,7 @@ fn binary(c: &mut Criterion) {
                     black_box(&mesh),
                     0.001,
                     3,
-                    bismar::soundness::Overlap::Skipped,
+                    bismar::soundness::Depth::Surface,
                 )
             });
         });

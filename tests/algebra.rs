@@ -206,7 +206,7 @@ struct Said {
 
 fn said(soup: Soup, grain: f64) -> Said {
     let mesh = Mesh::new(soup, "it").unwrap();
-    let found = audit(&mesh, 1.0, 3, bismar::soundness::Overlap::Skipped);
+    let found = audit(&mesh, 1.0, 3, bismar::soundness::Depth::Surface);
     let name =
         |f: &bismar::soundness::Finding| format!("{:?} {:?} {}", f.kind, f.severity, f.count);
     let mut bodies: Vec<_> = mesh

@@ -6,7 +6,7 @@
 mod shapes;
 
 use bismar::mesh::{Mesh, Run, Soup, Triangles};
-use bismar::soundness::{EffectIs, Finding, FindingKind, Overlap, Severity, audit};
+use bismar::soundness::{Depth, EffectIs, Finding, FindingKind, Severity, audit};
 use proptest::prelude::*;
 use shapes::{Corner, Facet, sound, tetrahedron};
 
@@ -26,7 +26,7 @@ fn mesh_of(facets: &[Facet]) -> Mesh {
 }
 
 fn findings(mesh: &Mesh) -> Vec<Finding> {
-    let a = audit(mesh, 1e-3, 1000, Overlap::Skipped);
+    let a = audit(mesh, 1e-3, 1000, Depth::Surface);
     a.file
         .into_iter()
         .chain(a.bodies.into_iter().flatten())

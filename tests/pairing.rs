@@ -43,7 +43,7 @@ fn refused(mesh: &Mesh) -> (&'static str, u64, usize) {
 
 /// Kinds, severities and counts of all findings, sorted.
 fn findings(mesh: &Mesh) -> Vec<(FindingKind, Severity, u64)> {
-    let a = audit(mesh, 1.0, 9, bismar::soundness::Overlap::Skipped);
+    let a = audit(mesh, 1.0, 9, bismar::soundness::Depth::Surface);
     let all = a.file.iter().chain(a.bodies.iter().flatten());
     let mut out: Vec<_> = all.map(|f| (f.kind, f.severity, f.count)).collect();
     out.sort();

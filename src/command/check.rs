@@ -8,7 +8,7 @@ use crate::error::{Error, Result};
 use crate::mesh::{Body, Mesh};
 use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Finding, FindingKind, Overlap, TESTED, TESTED_WITH_OVERLAP};
+use crate::soundness::{self, Depth, Finding, FindingKind, TESTED, TESTED_WITH_OVERLAP};
 
 /// Arguments of `check`.
 #[derive(Args, Clone, Debug)]
@@ -24,11 +24,11 @@ pub(super) struct CheckArgs {
 }
 
 impl CheckArgs {
-    fn overlap(&self) -> Overlap {
+    fn overlap(&self) -> Depth {
         if self.no_overlap {
-            Overlap::Skipped
+            Depth::Surface
         } else {
-            Overlap::Tested
+            Depth::Full
         }
     }
 

@@ -14,7 +14,7 @@ use crate::report::weigh::{
     Estimate, NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole,
 };
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Filled, Finding, FindingKind, Overlap, Severity};
+use crate::soundness::{self, Depth, Filled, Finding, FindingKind, Severity};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -198,7 +198,7 @@ fn answer(
     };
     let cuts = args.filled.then(|| soundness::cuts(&m.mesh, 0));
     let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
-    let mut audit = soundness::audit(&m.mesh, metres, 3, Overlap::Skipped);
+    let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
     let bodies: Vec<WeighedBody> = chosen
         .iter()

@@ -28,25 +28,36 @@ impl Audit {
     }
 }
 
-/// Whether surfaces are tested for cutting each other, which costs more than all the rest.
+/// How far an audit goes.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Overlap {
-    /// They are.
-    Tested,
-    /// They are not.
-    Skipped,
+pub enum Depth {
+    /// What bears on the figures: all that blocks or doubts, short of surfaces that cut each
+    /// other. Weighing needs no more, and waits for no more.
+    Figures,
+    /// All but surfaces that cut each other.
+    Surface,
+    /// All, with surfaces that cut each other, which costs more than the rest.
+    Full,
 }
 
 /// Everything that is wrong with the mesh, in a fixed order: by kind, places in file order.
 ///
 /// `metres` is the length of the file's unit; `places` the most places that a finding lists.
-pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit {
+pub fn audit(mesh: &Mesh, metres: f64, places: usize, depth: Depth) -> Audit {
     let look = Look {
         mesh,
         metres,
         places,
-        odd: odd_facets(mesh),
-        pinches: pinches(&mesh.soup.triangles, mesh.found()),
+        odd: if depth == Depth::Figures {
+            OddFacets::default()
+        } else {
+            odd_facets(mesh)
+        },
+        pinches: if depth == Depth::Figures {
+            Vec::new()
+        } else {
+            pinches(&mesh.soup.triangles, mesh.found())
+        },
         tiny: tiny_shells(&mesh.found().shells),
         gaps: Gaps::of(mesh),
     };
@@ -69,7 +80,7 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, overlap: Overlap) -> Audit
     look.gaps.report(&look, &home, &mut put);
     report_joined(&look, &home, &mut put);
     look.notes(&home, &mut put);
-    if overlap == Overlap::Tested {
+    if depth == Depth::Full {
         let found = super::overlap::self_overlap(mesh, metres, places);
         out.file.extend(found.file);
         for (list, more) in out.bodies.iter_mut().zip(found.bodies) {

@@ -13,7 +13,7 @@ mod shared_space;
 mod sizes;
 mod t_junction;
 
-pub use audit::{Audit, Overlap, audit};
+pub use audit::{Audit, Depth, audit};
 pub use filled::{Filled, filled, filled_bodies};
 pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED, TESTED_WITH_OVERLAP};
 pub(crate) use gaps::rounded_up;
