@@ -5,6 +5,7 @@ mod check;
 mod inputs;
 mod materials;
 mod meshes;
+mod open;
 mod schema;
 mod weigh;
 

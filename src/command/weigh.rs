@@ -3,16 +3,21 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::open::{self, Opened};
 use super::{Answer, Common, gather, point};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
-use crate::mesh::{Body, Mesh, NestedRule};
-use crate::moments::Moments;
+use crate::mesh::{Body, Mesh, NestedRule, Refusal};
+use crate::moments::{Moments, SolidIntegrals};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
+use crate::report::estimate::Estimated;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness;
+use crate::soundness::{
+    self,
+    cap::{Cap, Estimate},
+};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -31,6 +36,9 @@ pub(super) struct WeighArgs {
     /// Give the inertia tensor about this point too (bare numbers in the mesh's unit)
     #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
     about: Option<String>,
+    /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
+    #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
+    accept_open: Option<f64>,
 }
 
 /// Choices of `--nested`.
@@ -169,11 +177,16 @@ fn answer(
     let rule = args.nested.map(NestedRule::from);
     let mut audit = soundness::audit(&m.mesh, metres, 3);
     let chosen = picked(&m.mesh, input)?;
+    let results: Vec<Weighing> = chosen
+        .iter()
+        .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
+        .collect();
     let bodies: Vec<WeighedBody> = chosen
         .iter()
-        .map(|&(i, body)| WeighedBody {
+        .zip(&results)
+        .map(|(&(i, body), weighing)| WeighedBody {
             findings: std::mem::take(&mut audit.bodies[i]),
-            ..weighed(&m.mesh, body, metres, rule, substance, about)
+            ..weighed(&m.mesh, body, weighing, metres, substance, about)
         })
         .collect();
     let missing: Vec<String> = bodies
@@ -184,12 +197,10 @@ fn answer(
     let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
         [one] => Whole {
             figures: one.figures.clone(),
+            estimate: one.estimate.clone(),
             uncertainty: None,
         },
-        _ => Whole {
-            figures: whole(&m.mesh, &chosen, metres, rule, substance, about),
-            uncertainty: None,
-        },
+        _ => whole(&chosen, &results, metres, substance, about),
     });
     let file = WeighedFile {
         path: input.path.to_string_lossy().into_owned(),
@@ -212,11 +223,38 @@ fn answer(
     Ok((file, m.warnings.clone(), fact.clone()))
 }
 
+/// What a body came to, in the file's unit.
+enum Weighing {
+    Closed(SolidIntegrals),
+    Capped(Box<Estimate>),
+    Refused(Refusal),
+}
+
+impl Weighing {
+    fn solid(&self) -> Option<&SolidIntegrals> {
+        match self {
+            Self::Closed(s) => Some(s),
+            Self::Capped(e) => Some(&e.solid),
+            Self::Refused(_) => None,
+        }
+    }
+}
+
+fn weigh(mesh: &Mesh, body: &Body, rule: Option<NestedRule>, accept: Option<f64>) -> Weighing {
+    match mesh.solid(body, rule) {
+        Ok(solid) => Weighing::Closed(solid),
+        Err(refusal) => match open::judge(mesh, body, rule, accept, refusal) {
+            Opened::Accepted(e) => Weighing::Capped(e),
+            Opened::Refused(r) => Weighing::Refused(r),
+        },
+    }
+}
+
 fn weighed(
     mesh: &Mesh,
     body: &Body,
+    weighing: &Weighing,
     metres: f64,
-    rule: Option<NestedRule>,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
 ) -> WeighedBody {
@@ -232,12 +270,11 @@ fn weighed(
             void_m3: volume(NestedRule::Void),
         }
     });
-    let (figures, refused) = match mesh.solid(body, rule) {
-        Ok(solid) => (
-            Figures::of(&solid, &body.bounds, metres, substance, about),
-            None,
-        ),
-        Err(r) => {
+    let of = |solid| Figures::of(solid, &body.bounds, metres, substance, about);
+    let (figures, refused) = match weighing {
+        Weighing::Closed(solid) => (of(solid), None),
+        Weighing::Capped(e) => (of(&e.solid), None),
+        Weighing::Refused(r) => {
             let bounds = body.bounds.map(|p| p.map(|x| x * metres));
             let figures = Figures {
                 area_m2: Some(mesh.area(body) * metres * metres).filter(|a| a.is_finite()),
@@ -249,7 +286,7 @@ fn weighed(
                 kind: r.kind,
                 open_edges: r.open_edges,
                 loops: r.loops,
-                advice: r.advice,
+                advice: r.advice.clone(),
             };
             (figures, Some(refused))
         }
@@ -266,7 +303,10 @@ fn weighed(
         nested,
         findings: Vec::new(),
         refused,
-        estimate: None,
+        estimate: match weighing {
+            Weighing::Capped(e) => Some(Estimated::of(&e.bounds, &e.caps, metres)),
+            _ => None,
+        },
         facets: None,
         uncertainty: None,
     }
@@ -274,26 +314,39 @@ fn weighed(
 
 /// All bodies together: their moments added about the first one's point, in file order.
 fn whole(
-    mesh: &Mesh,
     bodies: &[(usize, &Body)],
+    results: &[Weighing],
     metres: f64,
-    rule: Option<NestedRule>,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
-) -> Figures {
+) -> Whole {
     let mut total: Option<Moments> = None;
     let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
-    for (_, body) in bodies {
-        let Ok(solid) = mesh.solid(body, rule) else {
+    let mut caps: Vec<Cap> = Vec::new();
+    for ((_, body), result) in bodies.iter().zip(results) {
+        let Some(solid) = result.solid() else {
             continue;
         };
+        if let Weighing::Capped(e) = result {
+            caps.extend(e.caps.iter().cloned());
+        }
         let moments = solid.moments.scaled(metres);
         total = Some(total.map_or(moments, |t| t.plus(&moments)));
         area += solid.area * metres * metres;
         absolute += solid.absolute_volume * metres.powi(3);
-        bounds = box_union(bounds, Some(body.bounds.map(|p| p.map(|x| x * metres))));
+        bounds = box_union(bounds, Some(body.bounds));
     }
     let total = total.unwrap_or_else(|| Moments::zero(nalgebra::Vector3::zeros()));
     let condition = Some(absolute / total.zeroth.abs()).filter(|c| c.is_finite());
-    Figures::from_volume(&total, area, condition, bounds, substance, about)
+    let estimate = (!caps.is_empty()).then(|| {
+        let room = bounds.unwrap_or([[0.0; 3]; 2]);
+        let bounds = soundness::cap::bounds(&caps, &total.scaled(1.0 / metres), room);
+        Estimated::of(&bounds, &caps, metres)
+    });
+    let bounds = bounds.map(|b| b.map(|p| p.map(|x| x * metres)));
+    Whole {
+        figures: Figures::from_volume(&total, area, condition, bounds, substance, about),
+        estimate,
+        uncertainty: None,
+    }
 }

@@ -15,7 +15,7 @@ mod words;
 
 pub(crate) use bodies::Part;
 pub use bodies::{Body, Mesh, NestedRule, Refusal};
-pub(crate) use shells::Shell;
+pub(crate) use shells::{Shell, middle};
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};
 pub use weld::MOST_TRIANGLES;

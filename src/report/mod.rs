@@ -5,6 +5,7 @@ pub mod check;
 pub mod check_text;
 pub mod digits;
 mod document;
+pub mod estimate;
 mod footer;
 mod look;
 pub mod materials;

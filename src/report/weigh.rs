@@ -2,6 +2,7 @@
 
 use serde::Serialize;
 
+use super::estimate::Estimated;
 use crate::error::Error;
 use crate::masses::Figures;
 use crate::soundness::Finding;
@@ -49,6 +50,9 @@ pub struct Whole {
     /// Volume, mass, centres, inertia.
     #[serde(flatten)]
     pub figures: Figures,
+    /// How far they may be off for the open bodies among them; absent where all are closed.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub estimate: Option<Estimated>,
     /// How far the figures may be off; null where it was not computed.
     pub uncertainty: Option<()>,
 }
@@ -80,7 +84,7 @@ pub struct WeighedBody {
     /// Why it was not weighed.
     pub refused: Option<Refused>,
     /// How the figures of an open body were come by.
-    pub estimate: Option<()>,
+    pub estimate: Option<Estimated>,
     /// What the facets do to the figures of a curved body.
     pub facets: Option<()>,
     /// How far the figures may be off; null where it was not computed.

@@ -1,7 +1,8 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{Scale, significant, tensor};
+use super::digits::{Scale, length_in, significant, tensor};
+use super::estimate::{Estimated, IF};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh::{WeighBody, WeighedBody, WeighedFile};
@@ -69,7 +70,15 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         out.push_str(&refusal(b, look));
     }
     for b in bodies {
+        if let Some(e) = &b.estimate {
+            out.push_str(&estimated(&b.id, &b.figures, e, unit, look));
+        }
         out.push_str(&remarks(b, look));
+    }
+    if let (Some(whole), true) = (&file.whole, bodies.len() > 1)
+        && let Some(e) = &whole.estimate
+    {
+        out.push_str(&estimated("total", &whole.figures, e, unit, look));
     }
     for f in file
         .findings
@@ -86,7 +95,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
     if readable.len() <= IN_FULL {
         for b in &readable {
-            out.push_str(&in_full(&b.id, &b.figures, unit, look));
+            out.push_str(&in_full(&b.id, &b.figures, b.estimate.as_ref(), unit, look));
         }
     } else {
         out.push_str(&format!(
@@ -97,7 +106,13 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     if readable.len() > 1
         && let Some(whole) = &file.whole
     {
-        out.push_str(&in_full("all bodies together", &whole.figures, unit, look));
+        out.push_str(&in_full(
+            "all bodies together",
+            &whole.figures,
+            whole.estimate.as_ref(),
+            unit,
+            look,
+        ));
     }
     out.push_str(
         "\nself-overlap: not tested; surfaces that cut each other would count some space twice\n",
@@ -125,6 +140,64 @@ fn refusal(b: &WeighedBody, look: Look) -> String {
         look.marked("REFUSED", Mark::Fail),
         crate::text::shown(&b.id),
         crate::text::shown(&r.advice)
+    )
+}
+
+/// Figures of a volume with this bound that may be shown: the last one is of the bound's size.
+fn digits_of(volume: Option<f64>, estimate: Option<&Estimated>) -> u32 {
+    match (volume, estimate.map(|e| e.volume_bound_m3)) {
+        (_, None) => 6,
+        (Some(v), Some(Some(b))) if b > 0.0 && v > 0.0 => {
+            (v.log10().floor() - b.log10().floor() + 1.0).clamp(1.0, 6.0) as u32
+        }
+        (Some(_), Some(Some(_))) => 6,
+        _ => 1,
+    }
+}
+
+/// Decimal places of a length known to within `bound`.
+fn unit_digits(bound: f64, unit: LengthUnit) -> usize {
+    let b = length_in(bound, unit);
+    if b > 0.0 {
+        (-b.log10().floor()).clamp(0.0, 6.0) as usize
+    } else {
+        6
+    }
+}
+
+/// A bound to two figures, rounded up: it must not look smaller than it is.
+fn at_most(x: f64) -> String {
+    let short = significant(x, 2);
+    if x > 0.0 && short.parse::<f64>().is_ok_and(|s| s < x) {
+        let step = 10f64.powf(x.log10().floor() - 1.0);
+        return significant(x + step / 2.0, 2);
+    }
+    short
+}
+
+/// The bounds of an estimate, never without what they rest on.
+fn estimated(id: &str, f: &Figures, e: &Estimated, unit: LengthUnit, look: Look) -> String {
+    let (Some(bound), Some(volume)) = (e.volume_bound_m3, f.volume_m3) else {
+        return String::new();
+    };
+    let mass = f.density_kg_m3.map_or(String::new(), |d| {
+        let m = bound * d;
+        let scale = Scale::for_mass(m);
+        format!(", mass ± {} {}", at_most(scale.of(m)), scale.symbol)
+    });
+    let centre = e.centre_bound_m.map_or(String::new(), |c| {
+        format!(
+            ", centre ± {} {}",
+            at_most(length_in(c, unit)),
+            unit.symbol()
+        )
+    });
+    format!(
+        "{} {}: open and weighed with its holes capped; volume ± {} cm3 ({} %){mass}{centre} {IF}\n",
+        look.marked("ESTIMATE", Mark::Fail),
+        crate::text::shown(id),
+        at_most(bound * 1e6),
+        at_most(100.0 * bound / volume),
     )
 }
 
@@ -156,7 +229,13 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 }
 
 /// Centre, tensor, principal moments and axes of one thing.
-fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
+fn in_full(
+    title: &str,
+    f: &Figures,
+    estimate: Option<&Estimated>,
+    unit: LengthUnit,
+    look: Look,
+) -> String {
     let mut out = format!(
         "\n{}\n",
         look.marked(&crate::text::shown(title), Mark::Heading)
@@ -165,6 +244,26 @@ fn in_full(title: &str, f: &Figures, unit: LengthUnit, look: Look) -> String {
         return out;
     };
     let u = unit.symbol();
+    if let Some(e) = estimate {
+        // Digits of a centre and a tensor that only stand within bounds would be read as known.
+        let centre = e.centre_bound_m.map_or_else(
+            || "centre: nothing bounds it\n".to_owned(),
+            |b| {
+                let digits = unit_digits(b, unit);
+                let c = centre.map(|x| format!("{:.digits$}", length_in(x, unit)));
+                format!(
+                    "centre  ({}, {}, {}) {u} ± {} {u}, {IF}\n",
+                    c[0],
+                    c[1],
+                    c[2],
+                    at_most(length_in(b, unit))
+                )
+            },
+        );
+        out.push_str(&centre);
+        out.push_str("inertia and axes with their bound: --json\n");
+        return out;
+    }
     // kg·mm² and the like read better than kg·m² on parts of a hand's size.
     let k = 1.0 / (unit.metres() * unit.metres());
     let word = if f.mass_kg.is_some() {
@@ -264,16 +363,22 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
         Column::text("size", &format!("box, {u}")),
     ]);
     for b in bodies {
-        let name = if b.refused.is_some() {
-            format!("{} (refused)", b.id)
-        } else {
-            b.id.clone()
+        let name = match (&b.refused, &b.estimate) {
+            (Some(_), _) => format!("{} (refused)", b.id),
+            (_, Some(_)) => format!("{} (estimate)", b.id),
+            _ => b.id.clone(),
         };
-        table.row(cells(&name, &b.figures, unit, scale));
+        table.row(cells(&name, &b.figures, b.estimate.as_ref(), unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => table.total(cells("total", &whole.figures, unit, scale)),
+            Some(whole) => table.total(cells(
+                "total",
+                &whole.figures,
+                whole.estimate.as_ref(),
+                unit,
+                scale,
+            )),
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
@@ -282,22 +387,38 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     table
 }
 
-fn cells(name: &str, f: &Figures, unit: LengthUnit, scale: Scale) -> Vec<Cell> {
+fn cells(
+    name: &str,
+    f: &Figures,
+    estimate: Option<&Estimated>,
+    unit: LengthUnit,
+    scale: Scale,
+) -> Vec<Cell> {
+    let digits = digits_of(f.volume_m3, estimate);
     let figure = |x: Option<f64>, k: f64| {
-        x.map_or_else(Cell::empty, |x| Cell::figure(significant(x * k, 6), x * k))
+        x.map_or_else(Cell::empty, |x| {
+            Cell::figure(significant(x * k, digits), x * k)
+        })
     };
     let mut row = vec![
         Cell::text(name),
         figure(f.volume_m3, 1e6),
         figure(f.area_m2, 1e4),
         f.mass_kg.map_or_else(Cell::empty, |m| {
-            Cell::figure(significant(scale.of(m), 6), scale.of(m))
+            Cell::figure(significant(scale.of(m), digits), scale.of(m))
         }),
     ];
     match (&f.centroid_m, &f.bounds_m) {
         (Some(c), Some(b)) => {
             let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
-            row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
+            let shown = coordinates(c, size, unit);
+            match estimate {
+                None => row.extend(shown.map(|(text, x)| Cell::figure(text, x))),
+                Some(e) => row.extend(shown.map(|(_, x)| match e.centre_bound_m {
+                    Some(b) => Cell::figure(format!("{x:.*}", unit_digits(b, unit)), x),
+                    None => Cell::empty(),
+                })),
+            }
         }
         _ => row.extend([Cell::empty(), Cell::empty(), Cell::empty()]),
     }

@@ -1,6 +1,8 @@
 //! What is wrong with a mesh, where, how often, and what it can do to the volume.
 
 mod audit;
+pub mod cap;
+mod cross;
 mod finding;
 
 pub use audit::{Audit, audit};
