@@ -2,6 +2,7 @@
 
 mod balance;
 mod check;
+mod copy;
 mod inputs;
 mod materials;
 mod meshes;

@@ -75,6 +75,19 @@ fn of_file(file: &CheckedFile, look: Look) -> String {
             look,
         ));
     }
+    let unit = unit_of(file.unit);
+    for (copy, verb) in [(&file.mended, "MENDED"), (&file.copied, "COPIED")] {
+        if let Some(copy) = copy {
+            out.push('\n');
+            out.push_str(&super::copy::render(copy, verb, unit, look));
+        }
+    }
+    if let Some(path) = &file.picture {
+        out.push_str(&format!(
+            "\npicture: {}, with the numbers of this list\n",
+            crate::text::shown(path)
+        ));
+    }
     out
 }
 

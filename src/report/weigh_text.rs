@@ -1,7 +1,7 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{Scale, length_in, significant, tensor};
+use super::digits::{Scale, at_most, length_in, significant, tensor};
 use super::estimate::{Estimated, IF};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
@@ -163,16 +163,6 @@ fn unit_digits(bound: f64, unit: LengthUnit) -> usize {
     } else {
         6
     }
-}
-
-/// A bound to two figures, rounded up: it must not look smaller than it is.
-fn at_most(x: f64) -> String {
-    let short = significant(x, 2);
-    if x > 0.0 && short.parse::<f64>().is_ok_and(|s| s < x) {
-        let step = 10f64.powf(x.log10().floor() - 1.0);
-        return significant(x + step / 2.0, 2);
-    }
-    short
 }
 
 /// The bounds of an estimate, never without what they rest on.

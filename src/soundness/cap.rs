@@ -49,6 +49,8 @@ pub struct Cap {
     pub(crate) triangles: Vec<[u32; 3]>,
     /// Name of the shell, as an index into the soup's names.
     pub(crate) name: u32,
+    /// A triangle of the mesh along its rim.
+    pub(crate) beside: u32,
     /// How many loops it closes.
     pub loops: usize,
     /// Its area A.
@@ -108,6 +110,7 @@ struct Rim {
     ids: Vec<u32>,
     points: Vec<Point>,
     name: u32,
+    beside: u32,
     plane: Option<Plane>,
 }
 
@@ -216,6 +219,7 @@ fn rims_of(mesh: &Mesh, shell: &Shell) -> Result<Vec<Rim>, NoCap> {
             ids,
             points,
             name: shell.name,
+            beside: l.triangles.first().copied().unwrap_or(shell.first),
         });
     }
     Ok(rims)
@@ -314,6 +318,7 @@ fn cap(rims: &[Rim], group: &[usize]) -> Result<Cap, NoCap> {
             .map(|t| t.map(|i| ids[i as usize]))
             .collect(),
         name: outer.name,
+        beside: outer.beside,
         loops: group.len(),
         area: cover.area,
         flat: deviation.is_some(),

@@ -4,6 +4,7 @@ mod audit;
 pub mod cap;
 mod cross;
 mod finding;
+pub mod mend;
 
 pub use audit::{Audit, audit};
 pub use finding::{EffectIs, Finding, FindingKind, Place, Severity, TESTED};
