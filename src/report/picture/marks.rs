@@ -31,8 +31,22 @@ pub(super) fn draw(
             (FindingKind::InsideOut | FindingKind::NestedSolid, _) => {
                 shells(out, view, mesh, edges, n)
             }
+            (FindingKind::WindingConflict | FindingKind::NonManifoldEdge, _) => {
+                shared_edges(out, view, mesh, n)
+            }
             _ => facets(out, view, mesh, n),
         };
+        // Places that lie close together share a number.
+        let mut apart: Vec<[f64; 3]> = Vec::new();
+        for p in targets {
+            if apart
+                .iter()
+                .all(|q| (p[0] - q[0]).hypot(p[1] - q[1]) > 2.0 * APART)
+            {
+                apart.push(p);
+            }
+        }
+        let targets = apart;
         labels.extend(
             targets
                 .into_iter()
@@ -142,6 +156,30 @@ fn shells(
     targets
 }
 
+/// The edges that all facets of a place have in common.
+fn shared_edges(out: &mut String, view: &View, mesh: &Mesh, n: &Numbered<'_>) -> Vec<[f64; 3]> {
+    let corners = &mesh.found().corners;
+    let mut edges = Vec::new();
+    for place in &n.finding.places {
+        let Some((&first, rest)) = place.triangles.split_first() else {
+            continue;
+        };
+        let shared: Vec<[f64; 3]> = corners[first as usize]
+            .into_iter()
+            .filter(|v| rest.iter().all(|&t| corners[t as usize].contains(v)))
+            .map(|v| mesh.soup.triangles.vertex(v))
+            .collect();
+        if let [p, q] = shared[..] {
+            edges.push([p, q]);
+        }
+    }
+    strokes(out, view, &edges);
+    edges
+        .iter()
+        .map(|[p, q]| view.see(&[0, 1, 2].map(|k| (p[k] + q[k]) / 2.0)))
+        .collect()
+}
+
 fn facets(out: &mut String, view: &View, mesh: &Mesh, n: &Numbered<'_>) -> Vec<[f64; 3]> {
     let mut targets = Vec::new();
     let (mut seen, mut hidden) = (String::new(), String::new());
@@ -179,7 +217,11 @@ fn numbers(out: &mut String, view: &View, labels: Vec<(usize, [f64; 3])>) {
         column.sort_by(|a, b| a.1[1].total_cmp(&b.1[1]).then(a.0.cmp(&b.0)));
         let top = view.centre[1] - view.half[1] - 20.0;
         let bottom = view.centre[1] + view.half[1] + 20.0;
-        let mut ys: Vec<f64> = column.iter().map(|c| c.1[1].clamp(top, bottom)).collect();
+        let mut ys: Vec<f64> = column
+            .iter()
+            // Aslant, so that no line runs along a level edge.
+            .map(|c| (c.1[1] - 14.0).clamp(top, bottom))
+            .collect();
         // Pushed apart downwards, then back up from the bottom.
         for i in 1..ys.len() {
             ys[i] = ys[i].max(ys[i - 1] + APART);
@@ -199,7 +241,7 @@ fn numbers(out: &mut String, view: &View, labels: Vec<(usize, [f64; 3])>) {
             let (px, py) = (p[0], p[1]);
             let _ = writeln!(
                 out,
-                "<line x1=\"{x:.1}\" y1=\"{y:.1}\" x2=\"{px:.1}\" y2=\"{py:.1}\" stroke=\"#fff\" stroke-width=\"3.5\"/>\n\
+                "<line x1=\"{x:.1}\" y1=\"{y:.1}\" x2=\"{px:.1}\" y2=\"{py:.1}\" stroke=\"#fff\" stroke-width=\"2.6\"/>\n\
                  <line x1=\"{x:.1}\" y1=\"{y:.1}\" x2=\"{px:.1}\" y2=\"{py:.1}\" stroke=\"#000\" stroke-width=\"1.1\"{dash}/>\n\
                  <circle cx=\"{px:.1}\" cy=\"{py:.1}\" r=\"3.2\" fill=\"#000\" stroke=\"#fff\"/>\n\
                  <circle cx=\"{x:.1}\" cy=\"{y:.1}\" r=\"11\" fill=\"#000\"/>\n\
