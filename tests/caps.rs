@@ -156,7 +156,9 @@ fn every_patch_that_obeys_the_policy_lies_inside_the_bounds() {
             dice.next();
             let mut whole = mesh(&*solid(i % KINDS, &mut dice), 10);
             // Half of them lose what lies beyond a plane: a flat loop, and a lump over it.
-            let plane = (i / KINDS % 2 == 0).then(|| (dice.below(3), dice.between(0.3, 1.15)));
+            let plane = (i / KINDS)
+                .is_multiple_of(2)
+                .then(|| (dice.below(3), dice.between(0.3, 1.15)));
             if let Some((axis, at)) = plane {
                 whole = cut_at(&whole, axis, at as f32);
             }

@@ -426,3 +426,60 @@ fn open_bodies_are_weighed_only_as_far_as_accepted() {
             && line.contains("if the missing surface is no larger than twice its flat cap")
     );
 }
+
+#[test]
+fn an_assembly_takes_an_open_part_with_its_bound() {
+    let folder = Folder::new();
+    let mut bar = cube([0.0; 3], [1.0, 1.0, 100.0]);
+    bar.truncate(10);
+    folder.put("bar.obj", &obj(&[("bar", bar)]));
+    let assembly = |accept: &str| {
+        let text = format!(
+            "[assembly]\nname = \"mast\"\nunit = \"m\"\n\
+             [material.fir]\ndensity = \"500 kg/m3\"\n\
+             [[part]]\nmesh = \"bar.obj\"\nmaterial = \"fir\"\n{accept}\
+             [[item]]\nname = \"lamp\"\nmass = \"50000 kg\"\nat = [0.5, 0.5, 150]\n\
+             [[limit]]\nname = \"crane\"\nmass = {{ to = \"100.1 t\" }}\n\
+             [[limit]]\nname = \"road\"\nmass = {{ to = \"101 t\" }}\n\
+             [[limit]]\nname = \"balance\"\ncentre.z = {{ to = 100.01 }}\n"
+        );
+        s(&folder.put("mast.toml", &text)).to_owned()
+    };
+    for refused in ["", "accept-open = \"0.1 %\"\n"] {
+        let (exit, doc) = json(&["balance", "--json", &assembly(refused)]);
+        assert_eq!(exit, 2, "{doc}");
+        let advice = doc["error"]["advice"].as_str().unwrap();
+        assert!(advice.contains("0.377 %"), "{advice}");
+    }
+    let (exit, doc) = json(&["balance", "--json", &assembly("accept-open = \"1 %\"\n")]);
+    assert_eq!(exit, 0, "{doc}");
+    let part = &doc["parts"][0];
+    assert_eq!(part["basis"], "estimate");
+    let near = |x: &Value, y: f64| assert!((x.as_f64().unwrap() / y - 1.0).abs() < 1e-9, "{x} {y}");
+    // By hand: B = (2/3)/√π m³ of 100; the centre as in the test of weigh; the lamp holds half.
+    let root = std::f64::consts::PI.sqrt();
+    let (b, d) = (2.0 / 3.0 / root, 50.0 + 2.0 / root);
+    let (mass, centre) = (500.0 * b, b * d / (100.0 - b));
+    near(&part["estimate"]["mass_bound_kg"], mass);
+    near(&part["estimate"]["centre_bound_m"], centre);
+    near(&doc["total"]["estimate"]["mass_bound_kg"], mass);
+    let moved = (50_000.0 + mass) * centre + mass * 50.0;
+    near(
+        &doc["total"]["estimate"]["centre_bound_m"],
+        moved / (100_000.0 - mass),
+    );
+    // 100 kg of room is less than the bound of 188 kg; 1000 kg is more.
+    let verdicts: Vec<&str> = doc["limits"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|l| l["verdict"].as_str().unwrap())
+        .collect();
+    assert_eq!(verdicts, ["unsure", "holds", "unsure"]);
+    let text = bismar(&["balance", &assembly("accept-open = \"1 %\"\n")]);
+    let text = String::from_utf8(text.stdout).unwrap();
+    assert!(
+        text.contains("ESTIMATE") && text.contains("if the missing surface is no larger"),
+        "{text}"
+    );
+}
