@@ -136,14 +136,22 @@ pub fn caps(mesh: &Mesh, body: &Body) -> Result<Vec<Cap>, NoCap> {
     let caps = covered.into_iter().collect::<Result<Vec<Cap>, NoCap>>()?;
     let facets = facets_of(mesh, &caps);
     let tree = Tree::over(&facets);
-    if let Some(f) = facets
-        .iter()
+    let of: Vec<usize> = (0..)
+        .zip(&caps)
+        .flat_map(|(c, cap)| std::iter::repeat_n(c, cap.triangles.len()))
+        .collect();
+    let crossing = facets
+        .par_iter()
         .enumerate()
-        .find(|(i, f)| tree.crosses(f, Some(*i)))
-    {
+        .find_map_first(|(i, f)| tree.crossed(f, Some(i)).map(|j| (i, j)));
+    if let Some((i, j)) = crossing {
         return Err(NoCap {
-            reason: "the cap would cut itself or another cap".into(),
-            at: f.1.at[0],
+            reason: if of[i] == of[j] {
+                "the cap of a loop would cut itself".into()
+            } else {
+                "the caps of two loops would cut each other".into()
+            },
+            at: facets[i].at[0],
         });
     }
     Ok(caps)
@@ -455,7 +463,7 @@ pub(crate) fn cuts_mesh(mesh: &Mesh, caps: &[Cap]) -> Option<Point> {
         (0..f.count()).into_par_iter().find_map_first(|t| {
             let at = f.triangle(t);
             let ids = mesh.found().corners[t];
-            tree.crosses(&Facet { ids, at }, None).then_some(at[0])
+            tree.crossed(&Facet { ids, at }, None).map(|_| at[0])
         })
     })
 }

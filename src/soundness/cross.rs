@@ -150,8 +150,8 @@ impl<'a> Tree<'a> {
         }
     }
 
-    /// Whether any of the triangles crosses `f`; `except` is left out.
-    pub(crate) fn crosses(&self, f: &Facet, except: Option<usize>) -> bool {
+    /// One of the triangles that cross `f`; `except` is left out.
+    pub(crate) fn crossed(&self, f: &Facet, except: Option<usize>) -> Option<usize> {
         let b = box_of(std::iter::once(&f.at));
         let mut todo = vec![(0usize, 0usize, self.order.len())];
         while let Some((node, from, to)) = todo.pop() {
@@ -160,11 +160,12 @@ impl<'a> Tree<'a> {
                 continue;
             }
             if 2 * node + 2 >= self.boxes.len() {
-                if self.order[from..to]
+                let hit = self.order[from..to]
                     .iter()
-                    .any(|&i| Some(i as usize) != except && cross(f, &self.facets[i as usize]))
-                {
-                    return true;
+                    .map(|&i| i as usize)
+                    .find(|&i| Some(i) != except && cross(f, &self.facets[i]));
+                if hit.is_some() {
+                    return hit;
                 }
                 continue;
             }
@@ -172,7 +173,7 @@ impl<'a> Tree<'a> {
             todo.push((2 * node + 1, from, middle));
             todo.push((2 * node + 2, middle, to));
         }
-        false
+        None
     }
 }
 
@@ -239,7 +240,7 @@ mod tests {
         );
         assert!(cross(&s, &strange));
         let facets = [strange, facet([2, 1, 3], [y, x, [1.0, 1.0, 0.0]])];
-        assert!(Tree::over(&facets).crosses(&s, None));
-        assert!(!Tree::over(&facets).crosses(&s, Some(0)));
+        assert_eq!(Tree::over(&facets).crossed(&s, None), Some(0));
+        assert_eq!(Tree::over(&facets).crossed(&s, Some(0)), None);
     }
 }
