@@ -146,6 +146,8 @@ pub struct Part {
     pub position: Position,
     /// The mass that the scale showed, of one such part.
     pub measured: Option<Quantity>,
+    /// Open bodies of it are taken capped while the bound is at most this share of the volume.
+    pub accept_open: Option<f64>,
     /// What the CAD model says of it.
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.

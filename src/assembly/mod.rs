@@ -26,6 +26,7 @@ mod expect;
 mod file;
 mod load;
 mod notes;
+mod open;
 mod position;
 mod read;
 mod read_limits;
@@ -48,6 +49,7 @@ pub use file::{
     Shape, Substance, Turn,
 };
 pub use load::{DEEPEST, Input, Loaded, load};
+pub use open::{Capped, MassBounds};
 pub use resolve::{Basis, Piece, Resolved, Source, Weighed, resolve};
 pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance};
 pub use schema::schema;

@@ -188,6 +188,9 @@ impl Context<'_, '_> {
         let material = substance::chosen(&r, self.own);
         let position = position::read(&r, true);
         let measured = measured(&r);
+        let accept_open = r
+            .quantity("accept-open", Dimension::Fraction)
+            .map(|(q, _)| q.value);
         let expect = expect(&r);
         let each = each(&r);
         let mesh = r
@@ -217,6 +220,7 @@ impl Context<'_, '_> {
             material,
             position,
             measured,
+            accept_open,
             expect,
             each,
         })

@@ -2,6 +2,7 @@
 
 use std::collections::{HashMap, HashSet};
 use std::path::PathBuf;
+use std::sync::Arc;
 
 use nalgebra::{Matrix3, Vector3};
 use serde::Serialize;
@@ -12,7 +13,9 @@ use super::expand::{self, Instance, What};
 use super::expect::{self, Expectation};
 use super::file::{Part, Substance};
 use super::load::{Input, Loaded};
-use super::source::MeshFiles;
+use super::open::Capped;
+use super::open::{self, MassBounds};
+use super::source::{MeshBody, MeshFiles};
 use super::{listed, notes, sum};
 use crate::error::{Error, Kind, Warning};
 use crate::moments::Moments;
@@ -27,6 +30,9 @@ pub enum Basis {
     Measured,
     /// Stated for a bought-in item.
     Stated,
+    /// Volume of an open mesh with its holes capped, times density: within a bound if an
+    /// assumption holds.
+    Estimate,
 }
 
 /// What a mass is the mass of.
@@ -69,6 +75,8 @@ pub struct Weighed {
     pub pieces: Vec<Piece>,
     /// Their sum.
     pub moments: Moments,
+    /// How far its figures may be off, where its mesh is open.
+    pub estimate: Option<MassBounds>,
     /// m³, of the mesh.
     pub volume: Option<f64>,
     /// Measured mass / volume, kg/m³.
@@ -126,6 +134,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                     path: instance.path.clone(),
                     groups: instance.groups.to_vec(),
                     source: Source::Item,
+                    estimate: None,
                     basis: Basis::Stated,
                     pieces: vec![Piece {
                         material: None,
@@ -182,9 +191,10 @@ impl Work {
         let mut refused = false;
         for body in &bodies {
             let figures = body.figures();
-            let volume = figures.moments.zeroth;
+            let volume = moments_of(body, part).zeroth;
             let why = match &figures.refused {
-                Some(r) => Some((r.message.clone(), r.advice.clone())),
+                Some(_) if accepted(body, part).is_some() => None,
+                Some(r) => Some((r.message.clone(), open_advice(body, part, &r.advice))),
                 None if !(volume > 0.0 && volume.is_finite()) => Some((
                     format!("its volume is {volume:e} m³"),
                     "check the mesh".to_string(),
@@ -207,7 +217,7 @@ impl Work {
             return None;
         }
         let materials = self.materials(instance, part, &bodies)?;
-        let volume = sum::sum(bodies.iter().map(|b| b.figures().moments.zeroth));
+        let volume = sum::sum(bodies.iter().map(|b| moments_of(b, part).zeroth));
         // Mass moments in the mesh file's axes. Without densities the measured mass is spread
         // evenly over the volume.
         let computed: Vec<Moments> = bodies
@@ -215,7 +225,7 @@ impl Work {
             .zip(&materials)
             .map(|(body, material)| {
                 let density = material.as_ref().map_or(1.0, |m| m.density.value);
-                body.figures().moments.weighted(density)
+                moments_of(body, part).weighted(density)
             })
             .collect();
         let computed_mass = sum::sum(computed.iter().map(|m| m.zeroth));
@@ -225,7 +235,7 @@ impl Work {
             let table = computed_mass / volume;
             let spread = sum::sum(materials.iter().zip(&bodies).map(|(m, b)| {
                 let tolerance = m.as_ref().and_then(|m| m.density.tolerance);
-                tolerance.map_or(0.0, |t| t.amount) * b.figures().moments.zeroth / volume
+                tolerance.map_or(0.0, |t| t.amount) * moments_of(b, part).zeroth / volume
             }));
             out.warnings.extend(notes::odd_density(
                 instance,
@@ -274,7 +284,31 @@ impl Work {
             _ => part.mesh.body.clone(),
         };
         let bounds = self.bounds(instance, part, &bodies);
+        // On the scale the mass is known; only how it is spread is not.
+        let of_bodies: Vec<Option<MassBounds>> = bodies
+            .iter()
+            .zip(&pieces)
+            .map(|(b, p)| {
+                let capped = accepted(b, part)?;
+                let density = p.moments.zeroth / capped.moments.zeroth;
+                Some(open::of_body(capped, density))
+            })
+            .collect();
+        let estimate = open::together(
+            pieces.iter().map(|p| &p.moments).zip(of_bodies),
+            moments.centre().unwrap_or(moments.about),
+            moments.zeroth,
+        )
+        .map(|b| MassBounds {
+            mass_bound_kg: if part.measured.is_some() {
+                0.0
+            } else {
+                b.mass_bound_kg
+            },
+            ..b
+        });
         Some(Weighed {
+            estimate,
             path: instance.path.clone(),
             groups: instance.groups.to_vec(),
             source: Source::Mesh {
@@ -282,10 +316,10 @@ impl Work {
                 body,
                 bodies: ids,
             },
-            basis: if part.measured.is_some() {
-                Basis::Measured
-            } else {
-                Basis::Computed
+            basis: match (part.measured, estimate) {
+                (Some(_), _) => Basis::Measured,
+                (None, Some(_)) => Basis::Estimate,
+                (None, None) => Basis::Computed,
             },
             pieces,
             moments,
@@ -414,5 +448,37 @@ pub(super) fn around(boxes: impl Iterator<Item = [[f64; 3]; 2]>) -> [[f64; 3]; 2
             let greatest = std::array::from_fn(|n| hi[n].max(h[n]));
             [least, greatest]
         },
+    )
+}
+
+/// The capped solid of an open body, where the part accepts its bound.
+fn accepted<'b>(body: &'b Arc<dyn MeshBody>, part: &Part) -> Option<&'b Capped> {
+    let figures = body.figures();
+    figures
+        .refused
+        .as_ref()
+        .filter(|r| r.kind == "not-closed")?;
+    let capped = figures.capped.as_ref()?;
+    let most = part.accept_open? * capped.moments.zeroth;
+    (capped.volume_bound <= most).then_some(capped)
+}
+
+fn moments_of<'b>(body: &'b Arc<dyn MeshBody>, part: &Part) -> &'b Moments {
+    accepted(body, part).map_or(&body.figures().moments, |c| &c.moments)
+}
+
+/// What to do about a body that is refused, with the bound that it would have capped.
+fn open_advice(body: &Arc<dyn MeshBody>, part: &Part, advice: &str) -> String {
+    let Some(c) = &body.figures().capped else {
+        return advice.to_owned();
+    };
+    // Rounded up, so that the percentage named is one that would be accepted.
+    let percent = (1e5 * c.volume_bound / c.moments.zeroth).ceil() / 1e3;
+    let said = match part.accept_open {
+        Some(_) => "more than is accepted,",
+        None => "which accept-open on the part would accept,",
+    };
+    format!(
+        "{advice}; capped, its volume is within {percent} %, {said} if the missing surface is no larger than twice its flat cap"
     )
 }

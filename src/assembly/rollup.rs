@@ -6,6 +6,7 @@ use serde_json::Value;
 
 use super::expect::Expectation;
 use super::load::Loaded;
+use super::open::{self, MassBounds};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
 use super::sum;
 use crate::error::{Error, Kind};
@@ -63,6 +64,9 @@ pub struct Total {
     pub radii_of_gyration_m: [f64; 3],
     /// Box of all meshes, and of items by their shape (points where none is known).
     pub bounds_m: [[f64; 3]; 2],
+    /// How far the figures may be off for the open meshes in it; absent where there is none.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub estimate: Option<MassBounds>,
     /// Moments that all this is derived from.
     #[serde(skip)]
     pub moments: Moments,
@@ -85,6 +89,9 @@ pub struct PartRow {
     pub mass_kg: f64,
     /// What the mass rests on.
     pub basis: Basis,
+    /// How far its figures may be off, where its mesh is open; absent where it is closed.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub estimate: Option<MassBounds>,
     /// Measured mass / volume.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub implied_density_kg_m3: Option<f64>,
@@ -218,7 +225,11 @@ fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
             (value, rounding.max(4.0 * f64::EPSILON * value.abs()))
         }
     };
-    limit.judge(value, rounding)
+    open::unsure(
+        limit.judge(value, rounding),
+        limit.quantity,
+        total.estimate.as_ref(),
+    )
 }
 
 fn total(weighed: &[Weighed]) -> Result<Total, Error> {
@@ -252,6 +263,7 @@ fn total(weighed: &[Weighed]) -> Result<Total, Error> {
         // Rounding may leave the least moment of a rod a little below zero.
         radii_of_gyration_m: p.moments.map(|m| (m.max(0.0) / mass).sqrt()),
         bounds_m: bounds,
+        estimate: open::of_total(weighed, centre, mass),
         moments,
     })
 }
@@ -294,6 +306,7 @@ fn part_row(w: &Weighed, mass: Option<f64>) -> PartRow {
         },
         mass_kg: w.moments.zeroth,
         basis: w.basis,
+        estimate: w.estimate,
         implied_density_kg_m3: w.implied_density,
         density_kg_m3: material.map(|m| m.density.value),
         volume_m3: w.volume,

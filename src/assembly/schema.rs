@@ -143,6 +143,10 @@ struct Part {
     count: Option<u32>,
     /// What the scale showed for one of them; the mesh then says how that mass is spread.
     measured: Option<Quantity>,
+    /// Take open bodies of it with their holes capped, while the bound on the volume is at most
+    /// this per cent of it.
+    #[serde(rename = "accept-open")]
+    accept_open: Option<Quantity>,
     /// Figures that it must have.
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.

@@ -31,6 +31,8 @@ pub struct BodyFigures {
     pub condition: f64,
     /// Why it cannot be weighed, in one sentence with the open edges and loops.
     pub refused: Option<Refusal>,
+    /// Of an open body that can be capped: the capped solid.
+    pub capped: Option<super::Capped>,
 }
 
 /// Why a body cannot be weighed.

@@ -2,11 +2,13 @@
 
 use clap::Args;
 
+use super::copy::{self, CopyArgs};
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
 use super::{Answer, Common, gather};
-use crate::error::{Error, Result};
+use crate::error::{Error, Result, Warning};
 use crate::mesh::{Body, Mesh};
 use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
+use crate::report::copy::Copied;
 use crate::report::{self, InputFact, path_hex};
 use crate::soundness::{self, Depth, Finding, FindingKind, TESTED, TESTED_WITH_OVERLAP};
 
@@ -21,6 +23,8 @@ pub(super) struct CheckArgs {
     /// Skip the test for surfaces that cut each other
     #[arg(long)]
     no_overlap: bool,
+    #[command(flatten)]
+    copy: CopyArgs,
 }
 
 impl CheckArgs {
@@ -44,13 +48,20 @@ impl CheckArgs {
 /// Runs the command.
 pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
     args.meshes.judge()?;
-    let answers = gather(expand(&args.meshes), |input| check_file(input, args));
+    let inputs = expand(&args.meshes);
+    args.copy.check(&args.meshes, &inputs)?;
+    let answers = gather(inputs, |input| check_file(input, args));
     let mut files = Vec::new();
     let mut exit = 0;
     for one in &answers.each {
         match &one.result {
             Ok(file) => {
-                exit = exit.max(u8::from(file.sound != Some(true)));
+                // Mended, it is sound; a copy that was refused is a no whatever the mesh.
+                let fine = match (&file.mended, &file.copied) {
+                    (Some(m), c) => m.written && c.as_ref().is_none_or(|c| c.written),
+                    (None, c) => file.sound == Some(true) && c.as_ref().is_none_or(|c| c.written),
+                };
+                exit = exit.max(u8::from(!fine));
                 files.push(file.clone());
             }
             Err(e) => {
@@ -84,10 +95,13 @@ fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFil
         findings: Vec::new(),
         error: Some(error.clone()),
         bodies: Vec::new(),
+        mended: None,
+        copied: None,
+        picture: None,
     }
 }
 
-type Checked = (CheckedFile, Vec<crate::error::Warning>, InputFact);
+type Checked = (CheckedFile, Vec<Warning>, InputFact);
 
 fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Checked>) {
     let (bytes, fact) = match open(input, args.meshes.hash) {
@@ -121,7 +135,20 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
     let sound = !bodies.is_empty()
         && bodies.iter().all(|b| b.sound)
         && !file_findings.iter().any(Finding::is_unsound);
-    let file = CheckedFile {
+    let mut warnings = m.warnings.clone();
+    let mut said = |(copy, more): (Copied, Vec<Warning>)| {
+        warnings.extend(more);
+        copy
+    };
+    let mended = match &args.copy.mend {
+        Some(out) => Some(said(copy::mended(m, input, out)?)),
+        None => None,
+    };
+    let copied = match &args.copy.write {
+        Some(out) => Some(said(copy::written(m, input, out, sound)?)),
+        None => None,
+    };
+    let mut file = CheckedFile {
         path: input.path.to_string_lossy().into_owned(),
         path_hex: path_hex(&input.path),
         format: Some(m.format),
@@ -134,8 +161,15 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         findings: file_findings,
         error: None,
         bodies,
+        mended,
+        copied,
+        picture: None,
     };
-    Ok((file, m.warnings.clone(), fact.clone()))
+    if let Some(out) = &args.copy.picture {
+        report::picture::draw(out, &m.mesh, &file)?;
+        file.picture = Some(out.to_string_lossy().into_owned());
+    }
+    Ok((file, warnings, fact.clone()))
 }
 
 fn checked(mesh: &Mesh, body: &Body, findings: Vec<Finding>, metres: f64) -> CheckedBody {

@@ -7,11 +7,12 @@ use std::sync::Arc;
 use nalgebra::Matrix3;
 
 use super::inputs::digest;
-use crate::assembly::{BodyFigures, Input, MeshBody, MeshFiles, Refusal};
+use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
 use crate::error::{Error, Result};
 use crate::format::{self, Bytes};
 use crate::mesh::{Body, Mesh};
 use crate::quantity::LengthUnit;
+use crate::soundness::cap::estimate;
 
 /// Reads mesh files for an assembly.
 #[derive(Default)]
@@ -102,6 +103,15 @@ fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
             .ok()
             .and_then(|s| s.condition())
             .unwrap_or(f64::INFINITY),
+        capped: match &solid {
+            Err(r) if r.kind == "not-closed" => estimate(mesh, body, None).ok().map(|e| Capped {
+                moments: e.solid.moments.scaled(metres),
+                volume_bound: e.bounds.volume * metres.powi(3),
+                centre_bound: e.bounds.centre * metres,
+                inertia_bound: e.bounds.inertia * metres.powi(5),
+            }),
+            _ => None,
+        },
         refused: solid.err().map(|r| Refusal {
             kind: r.kind.to_owned(),
             message: match r.kind {

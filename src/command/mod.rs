@@ -2,9 +2,11 @@
 
 mod balance;
 mod check;
+mod copy;
 mod inputs;
 mod materials;
 mod meshes;
+mod open;
 mod schema;
 mod weigh;
 mod whole;

@@ -3,18 +3,21 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::open::{self, Opened};
 use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
-use crate::mesh::{Body, Mesh, NestedRule};
-use crate::moments::Moments;
+use crate::mesh::{Body, Mesh, NestedRule, Refusal};
+use crate::moments::{Moments, SolidIntegrals};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
-use crate::report::weigh::{
-    Estimate, NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole,
-};
+use crate::report::estimate::Estimated;
+use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
-use crate::soundness::{self, Depth, Filled, Finding, FindingKind, Severity};
+use crate::soundness::{
+    self, Depth, Filled, Finding, FindingKind, Severity,
+    cap::{Cap, Estimate},
+};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -40,6 +43,9 @@ pub(super) struct WeighArgs {
     /// see doubled meshes, solids in solids or single shells inside out
     #[arg(long, conflicts_with_all = ["nested", "join"])]
     whole: bool,
+    /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
+    #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
+    accept_open: Option<f64>,
 }
 
 /// Choices of `--nested`.
@@ -174,7 +180,6 @@ fn unread(path: &std::path::Path, error: &Error, whole: bool) -> WeighedFile {
         overlap: "untested",
         bodies: (!whole).then(Vec::new),
         whole: None,
-        whole_estimate: None,
         whole_missing: Vec::new(),
         proved: whole.then_some(None),
         turned: None,
@@ -200,13 +205,18 @@ fn answer(
     let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
     let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
+    let results: Vec<Weighing> = chosen
+        .iter()
+        .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
+        .collect();
     let bodies: Vec<WeighedBody> = chosen
         .iter()
-        .map(|&(i, body)| {
+        .zip(&results)
+        .map(|(&(i, body), weighing)| {
             let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about)
             } else {
-                weighed(&m.mesh, body, metres, rule, substance, about)
+                weighed(&m.mesh, body, weighing, metres, substance, about)
             };
             out.findings = std::mem::take(&mut audit.bodies[i]);
             if let Some(refused) = &mut out.refused {
@@ -220,20 +230,23 @@ fn answer(
         .filter(|b| b.refused.is_some())
         .map(|b| b.id.clone())
         .collect();
-    let (total, whole_estimate) = if !missing.is_empty() || bodies.is_empty() {
-        (None, None)
-    } else if let [one] = &bodies[..] {
-        (Some(one.figures.clone()), one.estimate)
-    } else {
-        let sum = together(&m.mesh, &chosen, metres, rule, substance, about);
-        if args.filled {
-            let (f, e) = whole_filled(&m.mesh, &chosen, metres, &sum, substance, about);
-            (Some(f), e)
-        } else {
-            (Some(sum), None)
+    let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
+        [one] => Whole {
+            figures: one.figures.clone(),
+            estimate: one.estimate.clone(),
+            uncertainty: None,
+        },
+        _ => {
+            let sum = together(&chosen, &results, rule, metres, substance, about);
+            if args.filled {
+                whole_filled(&m.mesh, &chosen, metres, sum, substance, about)
+            } else {
+                sum
+            }
         }
-    };
-    let mass = total.as_ref().and_then(|f| f.mass_kg);
+    });
+    let estimated = whole.as_ref().is_some_and(|w| w.estimate.is_some());
+    let mass = whole.as_ref().and_then(|w| w.figures.mass_kg);
     audit.file.extend(soundness::unit_suspect(
         &m.mesh,
         m.unit,
@@ -255,15 +268,11 @@ fn answer(
         },
         overlap: match &cuts {
             None => "untested",
-            Some(none) if none.is_empty() && whole_estimate.is_none() => "none",
+            Some(none) if none.is_empty() && !estimated => "none",
             Some(_) => "counted-once",
         },
         bodies: Some(bodies),
-        whole: total.map(|figures| Whole {
-            figures,
-            uncertainty: None,
-        }),
-        whole_estimate,
+        whole,
         whole_missing: missing,
         proved: None,
         turned: None,
@@ -271,11 +280,38 @@ fn answer(
     Ok((file, m.warnings.clone(), fact.clone()))
 }
 
+/// What a body came to, in the file's unit.
+enum Weighing {
+    Closed(SolidIntegrals),
+    Capped(Box<Estimate>),
+    Refused(Refusal),
+}
+
+impl Weighing {
+    fn solid(&self) -> Option<&SolidIntegrals> {
+        match self {
+            Self::Closed(s) => Some(s),
+            Self::Capped(e) => Some(&e.solid),
+            Self::Refused(_) => None,
+        }
+    }
+}
+
+fn weigh(mesh: &Mesh, body: &Body, rule: Option<NestedRule>, accept: Option<f64>) -> Weighing {
+    match mesh.solid(body, rule) {
+        Ok(solid) => Weighing::Closed(solid),
+        Err(refusal) => match open::judge(mesh, body, rule, accept, refusal) {
+            Opened::Accepted(e) => Weighing::Capped(e),
+            Opened::Refused(r) => Weighing::Refused(r),
+        },
+    }
+}
+
 fn weighed(
     mesh: &Mesh,
     body: &Body,
+    weighing: &Weighing,
     metres: f64,
-    rule: Option<NestedRule>,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
 ) -> WeighedBody {
@@ -291,12 +327,11 @@ fn weighed(
             void_m3: volume(NestedRule::Void),
         }
     });
-    let (figures, refused) = match mesh.solid(body, rule) {
-        Ok(solid) => (
-            Figures::of(&solid, &body.bounds, metres, substance, about),
-            None,
-        ),
-        Err(r) => {
+    let of = |solid| Figures::of(solid, &body.bounds, metres, substance, about);
+    let (figures, refused) = match weighing {
+        Weighing::Closed(solid) => (of(solid), None),
+        Weighing::Capped(e) => (of(&e.solid), None),
+        Weighing::Refused(r) => {
             let bounds = body.bounds.map(|p| p.map(|x| x * metres));
             let figures = Figures {
                 area_m2: Some(mesh.area(body) * metres * metres).filter(|a| a.is_finite()),
@@ -308,7 +343,7 @@ fn weighed(
                 kind: r.kind,
                 open_edges: r.open_edges,
                 loops: r.loops,
-                advice: r.advice,
+                advice: r.advice.clone(),
             };
             (figures, Some(refused))
         }
@@ -325,7 +360,10 @@ fn weighed(
         nested,
         findings: Vec::new(),
         refused,
-        estimate: None,
+        estimate: match weighing {
+            Weighing::Capped(e) => Some(Estimated::of(&e.bounds, &e.caps, metres)),
+            _ => None,
+        },
         facets: None,
         uncertainty: None,
     }
@@ -349,12 +387,14 @@ fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit)
 /// The error that `--filled` refines to, as a part of the volume.
 const FILLED_TOLERANCE: f64 = 1e-6;
 
-fn estimate(filled: &Filled, metres: f64) -> Estimate {
-    Estimate {
+fn estimate(filled: &Filled, metres: f64) -> Estimated {
+    Estimated {
         method: "columns of rays, each region counted once",
-        condition: "three standard errors hold, and no overlap smaller than a lattice cell was missed",
-        volume_bound_m3: filled.volume_error * metres.powi(3),
-        centre_bound_m: filled.centre_error * metres,
+        if_: "three standard errors hold, and no overlap smaller than a lattice cell was missed"
+            .to_owned(),
+        volume_bound_m3: Some(filled.volume_error * metres.powi(3)),
+        centre_bound_m: Some(filled.centre_error * metres),
+        inertia_bound_m5: None,
     }
 }
 
@@ -366,7 +406,8 @@ fn filled(
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
 ) -> WeighedBody {
-    let sum = weighed(mesh, body, metres, Some(NestedRule::Sum), substance, about);
+    let raw = weigh(mesh, body, Some(NestedRule::Sum), None);
+    let sum = weighed(mesh, body, &raw, metres, substance, about);
     let Ok(found) = soundness::filled_bodies(mesh, &[body], FILLED_TOLERANCE) else {
         return sum;
     };
@@ -386,10 +427,10 @@ fn whole_filled(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
     metres: f64,
-    sum: &Figures,
+    sum: Whole,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
-) -> (Figures, Option<Estimate>) {
+) -> Whole {
     let apart = |a: &Body, b: &Body| {
         (0..3).any(|k| a.bounds[1][k] <= b.bounds[0][k] || b.bounds[1][k] <= a.bounds[0][k])
     };
@@ -397,44 +438,62 @@ fn whole_filled(
     let none_meet = || (0..all.len()).all(|i| (i + 1..all.len()).all(|j| apart(all[i], all[j])));
     // The same space can be shared only where boxes are.
     if all.len() <= 1000 && none_meet() && soundness::cuts(mesh, 0).is_empty() {
-        return (sum.clone(), None);
+        return sum;
     }
     let Ok(found) = soundness::filled_bodies(mesh, &all, FILLED_TOLERANCE) else {
-        return (sum.clone(), None);
+        return sum;
     };
     let volume = found.moments.scaled(metres);
-    let area = sum.area_m2.unwrap_or(f64::NAN);
-    let figures =
-        Figures::from_volume(&volume, area, sum.condition, sum.bounds_m, substance, about);
-    (figures, Some(estimate(&found, metres)))
+    let f = &sum.figures;
+    let area = f.area_m2.unwrap_or(f64::NAN);
+    let figures = Figures::from_volume(&volume, area, f.condition, f.bounds_m, substance, about);
+    Whole {
+        figures,
+        estimate: Some(estimate(&found, metres)),
+        uncertainty: None,
+    }
 }
 
 /// All bodies together: their moments added about the first one's point, in file order. Where
 /// nested solids count once, a body inside one of them adds nothing.
 fn together(
-    mesh: &Mesh,
     bodies: &[(usize, &Body)],
-    metres: f64,
+    results: &[Weighing],
     rule: Option<NestedRule>,
+    metres: f64,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
-) -> Figures {
+) -> Whole {
     let mut total: Option<Moments> = None;
     let (mut area, mut absolute, mut bounds) = (0.0, 0.0, None);
-    for (_, body) in bodies {
+    let mut caps: Vec<Cap> = Vec::new();
+    for ((_, body), result) in bodies.iter().zip(results) {
         if rule == Some(NestedRule::Union) && body.is_in_nested() {
             continue;
         }
-        let Ok(solid) = mesh.solid(body, rule) else {
+        let Some(solid) = result.solid() else {
             continue;
         };
+        if let Weighing::Capped(e) = result {
+            caps.extend(e.caps.iter().cloned());
+        }
         let moments = solid.moments.scaled(metres);
         total = Some(total.map_or(moments, |t| t.plus(&moments)));
         area += solid.area * metres * metres;
         absolute += solid.absolute_volume * metres.powi(3);
-        bounds = box_union(bounds, Some(body.bounds.map(|p| p.map(|x| x * metres))));
+        bounds = box_union(bounds, Some(body.bounds));
     }
     let total = total.unwrap_or_else(|| Moments::zero(nalgebra::Vector3::zeros()));
     let condition = Some(absolute / total.zeroth.abs()).filter(|c| c.is_finite());
-    Figures::from_volume(&total, area, condition, bounds, substance, about)
+    let estimate = (!caps.is_empty()).then(|| {
+        let room = bounds.unwrap_or([[0.0; 3]; 2]);
+        let bounds = soundness::cap::bounds(&caps, &total.scaled(1.0 / metres), room);
+        Estimated::of(&bounds, &caps, metres)
+    });
+    let bounds = bounds.map(|b| b.map(|p| p.map(|x| x * metres)));
+    Whole {
+        figures: Figures::from_volume(&total, area, condition, bounds, substance, about),
+        estimate,
+        uncertainty: None,
+    }
 }

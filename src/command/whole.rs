@@ -227,6 +227,7 @@ fn tell(
                 condition: None,
                 ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
             },
+            estimate: None,
             uncertainty: None,
         });
     }
@@ -243,7 +244,6 @@ fn tell(
         bodies: None,
         turned: whole.is_some().then_some(turned),
         whole,
-        whole_estimate: None,
         whole_missing: Vec::new(),
         proved: Some(closed.then_some("edges-cancel")),
     };

@@ -5,12 +5,15 @@ mod kinds;
 mod number;
 pub mod obj;
 pub mod stl;
+mod whole;
+pub mod write;
 
 use std::fmt;
 use std::path::Path;
 
 pub use crate::bytes::Bytes;
 pub use number::MAX_COORDINATE;
+pub use whole::write_whole;
 
 use crate::error::{Error, Kind, Result};
 use crate::mesh::Soup;

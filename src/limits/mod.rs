@@ -74,6 +74,8 @@ pub enum Verdict {
     Holds,
     /// The margin is below zero.
     Broken,
+    /// The value may lie on either side within its bound.
+    Unsure,
 }
 
 /// A limit against the value that was found. Values are in `unit`.

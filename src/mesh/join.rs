@@ -9,7 +9,7 @@ use super::near::{distance, length};
 use super::shells::{Members, Shells};
 use super::{Mesh, Soup, Triangles, each};
 use crate::error::Result;
-use crate::format::Bytes;
+use crate::bytes::Bytes;
 use crate::geometry::{Corners, Point};
 
 /// What joining did to a mesh.

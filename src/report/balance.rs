@@ -3,12 +3,12 @@
 use serde::Serialize;
 
 use super::Document;
-use super::digits::{length_in, significant};
+use super::digits::{at_most, length_in, significant};
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
 use super::words::{box_size, direction, point};
-use crate::assembly::{Balance, Basis, PartRow, Source, Total};
+use crate::assembly::{Balance, Basis, MassBounds, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, Judged, PercentOf, Verdict};
 use crate::quantity::LengthUnit;
@@ -41,6 +41,14 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     out.push_str("\n\n");
     out.push_str(&parts(b, unit).render(look));
     out.push_str(&subtotals(b, look));
+    for p in &b.parts {
+        if let Some(e) = &p.estimate {
+            out.push_str(&estimated(&p.path, e, unit, look));
+        }
+    }
+    if let Some(e) = b.total.as_ref().and_then(|t| t.estimate.as_ref()) {
+        out.push_str(&estimated("the whole", e, unit, look));
+    }
     match &b.total {
         Some(total) => out.push_str(&whole(total, body.about.as_ref(), unit, look)),
         None => out.push_str(&format!(
@@ -70,6 +78,7 @@ fn basis_word(basis: Basis) -> &'static str {
         Basis::Computed => "computed",
         Basis::Measured => "measured",
         Basis::Stated => "stated",
+        Basis::Estimate => "estimate",
     }
 }
 
@@ -312,10 +321,26 @@ fn expectations(b: &Balance, unit: LengthUnit, look: Look) -> String {
     format!("\n{}", table.render(look))
 }
 
+/// The bounds of an open mesh, never without what they rest on.
+fn estimated(of: &str, e: &MassBounds, unit: LengthUnit, look: Look) -> String {
+    let scale = super::digits::Scale::for_mass(e.mass_bound_kg);
+    format!(
+        "{} {}: an open mesh with its holes capped; mass ± {} {}, centre ± {} {} {}\n",
+        look.marked("ESTIMATE", Mark::Fail),
+        crate::text::shown(of),
+        at_most(scale.of(e.mass_bound_kg)),
+        scale.symbol,
+        at_most(length_in(e.centre_bound_m, unit)),
+        unit.symbol(),
+        super::estimate::IF
+    )
+}
+
 fn verdict(v: Verdict) -> (&'static str, Mark) {
     match v {
         Verdict::Holds => ("holds", Mark::Pass),
         Verdict::Broken => ("BROKEN", Mark::Fail),
+        Verdict::Unsure => ("UNSURE", Mark::Unsure),
     }
 }
 

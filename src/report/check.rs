@@ -2,6 +2,7 @@
 
 use serde::Serialize;
 
+use super::copy::Copied;
 use crate::error::Error;
 use crate::soundness::{Finding, FindingKind};
 
@@ -40,6 +41,15 @@ pub struct CheckedFile {
     pub error: Option<Error>,
     /// Its bodies.
     pub bodies: Vec<CheckedBody>,
+    /// The mended copy, where one was asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub mended: Option<Copied>,
+    /// The plain copy, where one was asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub copied: Option<Copied>,
+    /// Where the picture was drawn, if one was asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub picture: Option<String>,
 }
 
 /// What is said of one body.

@@ -2,12 +2,12 @@
 
 use super::Document;
 use super::check::{CheckBody, CheckedFile};
-use super::digits::significant;
+use super::digits::{at_most, significant};
 use super::footer::footer;
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::words::{box_size, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
-use crate::soundness::{EffectIs, Finding, Severity};
+use crate::soundness::{EffectIs, Finding, FindingKind, Severity};
 
 /// As text.
 pub fn render(document: &Document<CheckBody>, look: Look) -> String {
@@ -75,6 +75,19 @@ fn of_file(file: &CheckedFile, look: Look) -> String {
             look,
         ));
     }
+    let unit = unit_of(file.unit);
+    for (copy, verb) in [(&file.mended, "MENDED"), (&file.copied, "COPIED")] {
+        if let Some(copy) = copy {
+            out.push('\n');
+            out.push_str(&super::copy::render(copy, verb, unit, look));
+        }
+    }
+    if let Some(path) = &file.picture {
+        out.push_str(&format!(
+            "\npicture: {}, with the numbers of this list\n",
+            crate::text::shown(path)
+        ));
+    }
     out
 }
 
@@ -101,18 +114,26 @@ fn finding(
     );
     let effect = match (f.volume_effect_m3, f.volume_effect_is) {
         (Some(v), Some(is)) => {
+            // A bound that rests on an assumption never stands without it.
+            let shown = if is == EffectIs::Bound {
+                at_most(v * 1e6)
+            } else {
+                significant(v * 1e6, 6)
+            };
+            let on = if f.kind == FindingKind::Hole {
+                format!(", {}", super::estimate::IF)
+            } else {
+                String::new()
+            };
             let (cm3, is) = (
-                v * 1e6,
+                shown,
                 match is {
                     EffectIs::Exact => "exact",
                     EffectIs::Bound => "at most, either way",
                     EffectIs::Estimate => "estimate",
                 },
             );
-            format!(
-                "   volume would change by {} cm3 ({is})\n",
-                significant(cm3, 6)
-            )
+            format!("   volume would change by {cm3} cm3 ({is}{on})\n")
         }
         _ => "   effect on the volume: not known\n".to_owned(),
     };

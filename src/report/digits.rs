@@ -26,6 +26,16 @@ pub fn significant(value: f64, digits: u32) -> String {
     to_place(value, lead(value, digits) + 1 - digits)
 }
 
+/// A bound to two figures, rounded up: it must not look smaller than it is.
+pub fn at_most(x: f64) -> String {
+    let short = significant(x, 2);
+    if x > 0.0 && short.parse::<f64>().is_ok_and(|s| s < x) {
+        let step = 10f64.powf(x.log10().floor() - 1.0);
+        return significant(x + step / 2.0, 2);
+    }
+    short
+}
+
 /// `value` to the decimal place of the second significant digit of its standard uncertainty; to
 /// [`DEFAULT_DIGITS`] where there is none. A value below that place shows as zero.
 pub fn figure(value: f64, standard: Option<f64>) -> String {

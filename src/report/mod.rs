@@ -3,11 +3,14 @@
 pub mod balance;
 pub mod check;
 pub mod check_text;
+pub mod copy;
 pub mod digits;
 mod document;
+pub mod estimate;
 mod footer;
 mod look;
 pub mod materials;
+pub mod picture;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;

@@ -2,6 +2,7 @@
 
 use serde::Serialize;
 
+use super::estimate::Estimated;
 use crate::error::Error;
 use crate::masses::Figures;
 use crate::soundness::Finding;
@@ -39,9 +40,6 @@ pub struct WeighedFile {
     pub bodies: Option<Vec<WeighedBody>>,
     /// All bodies together; null where one of them cannot be weighed.
     pub whole: Option<Whole>,
-    /// How those were come by, where they are not exact for the mesh.
-    #[serde(skip_serializing_if = "Option::is_none")]
-    pub whole_estimate: Option<Estimate>,
     /// The bodies for want of which there is no whole.
     pub whole_missing: Vec<String>,
     /// What was proved of the surface, null for nothing; absent where bodies were asked for.
@@ -58,6 +56,9 @@ pub struct Whole {
     /// Volume, mass, centres, inertia.
     #[serde(flatten)]
     pub figures: Figures,
+    /// How far they may be off for the open bodies among them; absent where all are closed.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub estimate: Option<Estimated>,
     /// How far the figures may be off; null where it was not computed.
     pub uncertainty: Option<()>,
 }
@@ -89,25 +90,11 @@ pub struct WeighedBody {
     /// Why it was not weighed.
     pub refused: Option<Refused>,
     /// How the figures were come by, where they are not exact for the mesh.
-    pub estimate: Option<Estimate>,
+    pub estimate: Option<Estimated>,
     /// What the facets do to the figures of a curved body.
     pub facets: Option<()>,
     /// How far the figures may be off; null where it was not computed.
     pub uncertainty: Option<()>,
-}
-
-/// Figures that are estimated, and how far off they may be.
-#[derive(Clone, Copy, Debug, Serialize)]
-pub struct Estimate {
-    /// How they were come by.
-    pub method: &'static str,
-    /// Under which assumption the bounds hold.
-    #[serde(rename = "if")]
-    pub condition: &'static str,
-    /// How far off the volume may be, m³.
-    pub volume_bound_m3: f64,
-    /// How far off the centroid may be, m.
-    pub centre_bound_m: f64,
 }
 
 /// Volumes of a body that holds a solid within its solid.

@@ -1,10 +1,11 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{self, DEFAULT_DIGITS, Scale, significant, tensor};
+use super::digits::{Scale, at_most, length_in, significant, tensor};
+use super::estimate::Estimated;
 use super::footer::{CAUTION, footer};
 use super::table::{Cell, Column, Look, Mark, Table};
-use super::weigh::{Estimate, WeighBody, WeighedBody, WeighedFile};
+use super::weigh::{WeighBody, WeighedBody, WeighedFile};
 use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
 use crate::error::Result;
 use crate::masses::Figures;
@@ -66,7 +67,15 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         out.push_str(&refusal(b, look));
     }
     for b in bodies {
+        if let Some(e) = &b.estimate {
+            out.push_str(&estimated(&b.id, &b.figures, e, unit, look));
+        }
         out.push_str(&remarks(b, look));
+    }
+    if let (Some(whole), true) = (&file.whole, bodies.len() > 1)
+        && let Some(e) = &whole.estimate
+    {
+        out.push_str(&estimated("total", &whole.figures, e, unit, look));
     }
     for f in file
         .findings
@@ -97,13 +106,10 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         out.push_str(&in_full(
             "all bodies together",
             &whole.figures,
-            file.whole_estimate.as_ref(),
+            whole.estimate.as_ref(),
             unit,
             look,
         ));
-    }
-    if let Some(e) = &file.whole_estimate {
-        out.push_str(&estimated("all bodies together", e));
     }
     out.push_str(match file.overlap {
         "untested" => "\nself-overlap: not tested; surfaces that cut each other would count some space twice (check tests it, --filled counts it once)\n",
@@ -111,18 +117,6 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         _ => "\nself-overlap: found; each region is counted once\n",
     });
     out
-}
-
-/// How far off an estimate may be.
-fn estimated(id: &str, e: &Estimate) -> String {
-    format!(
-        "{}: by {}, volume ± {} cm3, centre ± {} mm, if {}\n",
-        crate::text::shown(id),
-        e.method,
-        significant(e.volume_bound_m3 * 1e6, 2),
-        significant(e.centre_bound_m * 1e3, 2),
-        e.condition
-    )
 }
 
 /// What the figures are of.
@@ -164,6 +158,56 @@ fn refusal(b: &WeighedBody, look: Look) -> String {
     )
 }
 
+/// Figures of a volume with this bound that may be shown: the last one is of the bound's size.
+fn digits_of(volume: Option<f64>, estimate: Option<&Estimated>) -> u32 {
+    match (volume, estimate.map(|e| e.volume_bound_m3)) {
+        (_, None) => 6,
+        (Some(v), Some(Some(b))) if b > 0.0 && v > 0.0 => {
+            (v.log10().floor() - b.log10().floor() + 1.0).clamp(1.0, 6.0) as u32
+        }
+        (Some(_), Some(Some(_))) => 6,
+        _ => 1,
+    }
+}
+
+/// Decimal places of a length known to within `bound`.
+fn unit_digits(bound: f64, unit: LengthUnit) -> usize {
+    let b = length_in(bound, unit);
+    if b > 0.0 {
+        (-b.log10().floor()).clamp(0.0, 6.0) as usize
+    } else {
+        6
+    }
+}
+
+/// The bounds of an estimate, never without what they rest on.
+fn estimated(id: &str, f: &Figures, e: &Estimated, unit: LengthUnit, look: Look) -> String {
+    let (Some(bound), Some(volume)) = (e.volume_bound_m3, f.volume_m3) else {
+        return String::new();
+    };
+    let mass = f.density_kg_m3.map_or(String::new(), |d| {
+        let m = bound * d;
+        let scale = Scale::for_mass(m);
+        format!(", mass ± {} {}", at_most(scale.of(m)), scale.symbol)
+    });
+    let centre = e.centre_bound_m.map_or(String::new(), |c| {
+        format!(
+            ", centre ± {} {}",
+            at_most(length_in(c, unit)),
+            unit.symbol()
+        )
+    });
+    format!(
+        "{} {}: {}; volume ± {} cm3 ({} %){mass}{centre} {}\n",
+        look.marked("ESTIMATE", Mark::Fail),
+        crate::text::shown(id),
+        e.how(),
+        at_most(bound * 1e6),
+        at_most(100.0 * bound / volume),
+        e.assumption(),
+    )
+}
+
 fn remarks(b: &WeighedBody, look: Look) -> String {
     let mut out = String::new();
     for f in b
@@ -180,9 +224,6 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
             crate::text::shown(&f.advice)
         ));
     }
-    if let Some(e) = &b.estimate {
-        out.push_str(&estimated(&b.id, e));
-    }
     if let Some(n) = &b.nested {
         out.push_str(&format!(
             "   sum {} cm3 · union {} cm3 · void {} cm3\n",
@@ -198,11 +239,10 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
 pub(super) fn in_full(
     title: &str,
     f: &Figures,
-    estimate: Option<&Estimate>,
+    estimate: Option<&Estimated>,
     unit: LengthUnit,
     look: Look,
 ) -> String {
-    let shown = supported_digits(f, estimate);
     let mut out = format!(
         "\n{}\n",
         look.marked(&crate::text::shown(title), Mark::Heading)
@@ -211,6 +251,27 @@ pub(super) fn in_full(
         return out;
     };
     let u = unit.symbol();
+    if let Some(e) = estimate {
+        // Digits of a centre and a tensor that only stand within bounds would be read as known.
+        let centre = e.centre_bound_m.map_or_else(
+            || "centre: nothing bounds it\n".to_owned(),
+            |b| {
+                let digits = unit_digits(b, unit);
+                let c = centre.map(|x| format!("{:.digits$}", length_in(x, unit)));
+                format!(
+                    "centre  ({}, {}, {}) {u} ± {} {u}, {}\n",
+                    c[0],
+                    c[1],
+                    c[2],
+                    at_most(length_in(b, unit)),
+                    e.assumption()
+                )
+            },
+        );
+        out.push_str(&centre);
+        out.push_str("inertia and axes with their bound: --json\n");
+        return out;
+    }
     // kg·mm² and the like read better than kg·m² on parts of a hand's size.
     let k = 1.0 / (unit.metres() * unit.metres());
     let word = if f.mass_kg.is_some() {
@@ -220,7 +281,7 @@ pub(super) fn in_full(
     };
     out.push_str(&format!(
         "{word}  {}   frame: the file's own axes and origin\n",
-        estimated_point(centre, estimate, unit)
+        point(centre, unit)
     ));
     let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
         Some(i) => (i, format!("kg {u}2"), k),
@@ -229,7 +290,7 @@ pub(super) fn in_full(
     out.push_str(&matrix(
         &format!("inertia about the {word}, {name}; off-diagonals are the tensor's own, −∫xy"),
         &tensor_si.map(|r| r.map(|x| x * scale)),
-        shown,
+        6,
     ));
     let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
     if let (Some(moments), Some(axes), Some(radii)) =
@@ -251,8 +312,8 @@ pub(super) fn in_full(
             };
             t.row(vec![
                 Cell::text(&(i + 1).to_string()),
-                Cell::figure(significant(moments[i] * scale, shown), moments[i]),
-                Cell::figure(significant(radii[i] / unit.metres(), shown), radii[i]),
+                Cell::figure(significant(moments[i] * scale, 6), moments[i]),
+                Cell::figure(significant(radii[i] / unit.metres(), 6), radii[i]),
                 Cell::text(&axis),
             ]);
         }
@@ -270,33 +331,10 @@ pub(super) fn in_full(
         out.push_str(&matrix(
             &format!("inertia about {}, {name}", point(&about.point_m, unit)),
             &tensor_si.map(|r| r.map(|x| x * scale)),
-            shown,
+            6,
         ));
     }
     out
-}
-
-/// Digits that an estimate's relative error supports; three times the volume's, since moments of
-/// a higher order weigh what is far off more.
-fn supported_digits(f: &Figures, estimate: Option<&Estimate>) -> u32 {
-    let relative = f
-        .volume_m3
-        .zip(estimate)
-        .map(|(v, e)| 3.0 * e.volume_bound_m3 / v.abs())
-        .filter(|r| r.is_finite() && *r > 0.0);
-    relative.map_or(DEFAULT_DIGITS, |r| {
-        // The cast saturates.
-        ((-r.log10()).floor() as u32 + 1).clamp(1, DEFAULT_DIGITS)
-    })
-}
-
-fn estimated_point(at_m: &[f64; 3], estimate: Option<&Estimate>, unit: LengthUnit) -> String {
-    let Some(e) = estimate else {
-        return point(at_m, unit);
-    };
-    let off = Some(e.centre_bound_m / unit.metres());
-    let p = at_m.map(|x| digits::figure(x / unit.metres(), off));
-    format!("({}, {}, {}) {}", p[0], p[1], p[2], unit.symbol())
 }
 
 /// A tensor as three aligned rows under its title.
@@ -325,19 +363,22 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
     let scale = Scale::for_mass(heaviest);
     let mut table = columns("body", unit, scale);
     for b in bodies {
-        let name = if b.refused.is_some() {
-            format!("{} (refused)", b.id)
-        } else {
-            b.id.clone()
+        let name = match (&b.refused, &b.estimate) {
+            (Some(_), _) => format!("{} (refused)", b.id),
+            (_, Some(_)) => format!("{} (estimate)", b.id),
+            _ => b.id.clone(),
         };
         table.row(cells(&name, &b.figures, b.estimate.as_ref(), unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
-            Some(whole) => {
-                let estimate = file.whole_estimate.as_ref();
-                table.total(cells("total", &whole.figures, estimate, unit, scale));
-            }
+            Some(whole) => table.total(cells(
+                "total",
+                &whole.figures,
+                whole.estimate.as_ref(),
+                unit,
+                scale,
+            )),
             None => table.total(vec![
                 Cell::text("total: none, a body is missing").marked(Mark::Fail),
             ]),
@@ -364,35 +405,35 @@ pub(super) fn columns(what: &str, unit: LengthUnit, scale: Scale) -> Table {
 pub(super) fn cells(
     name: &str,
     f: &Figures,
-    estimate: Option<&Estimate>,
+    estimate: Option<&Estimated>,
     unit: LengthUnit,
     scale: Scale,
 ) -> Vec<Cell> {
-    // No more digits than an estimate's own bound supports.
-    let figure = |x: Option<f64>, k: f64, off: Option<f64>| {
+    let digits = digits_of(f.volume_m3, estimate);
+    let figure = |x: Option<f64>, k: f64| {
         x.map_or_else(Cell::empty, |x| {
-            Cell::figure(digits::figure(x * k, off.map(|o| o * k)), x * k)
+            Cell::figure(significant(x * k, digits), x * k)
         })
     };
-    let volume_off = estimate.map(|e| e.volume_bound_m3);
-    let mass_off = volume_off.zip(f.density_kg_m3).map(|(v, d)| v * d);
-    let centre_off = estimate.map(|e| e.centre_bound_m);
     let mut row = vec![
         Cell::text(name),
-        figure(f.volume_m3, 1e6, volume_off),
-        figure(f.area_m2, 1e4, None),
+        figure(f.volume_m3, 1e6),
+        figure(f.area_m2, 1e4),
         f.mass_kg.map_or_else(Cell::empty, |m| {
-            let off = mass_off.map(|o| scale.of(o));
-            Cell::figure(digits::figure(scale.of(m), off), scale.of(m))
+            Cell::figure(significant(scale.of(m), digits), scale.of(m))
         }),
     ];
     match (&f.centroid_m, &f.bounds_m) {
-        (Some(c), _) if centre_off.is_some() => {
-            row.extend(c.map(|x| figure(Some(x), 1.0 / unit.metres(), centre_off)));
-        }
         (Some(c), Some(b)) => {
             let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
-            row.extend(coordinates(c, size, unit).map(|(text, x)| Cell::figure(text, x)));
+            let shown = coordinates(c, size, unit);
+            match estimate {
+                None => row.extend(shown.map(|(text, x)| Cell::figure(text, x))),
+                Some(e) => row.extend(shown.map(|(_, x)| match e.centre_bound_m {
+                    Some(b) => Cell::figure(format!("{x:.*}", unit_digits(b, unit)), x),
+                    None => Cell::empty(),
+                })),
+            }
         }
         _ => row.extend([Cell::empty(), Cell::empty(), Cell::empty()]),
     }

@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use super::cap::{self, centre_of_polyline};
 use super::facets::{OddFacets, odd_facets};
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
 use super::gaps::{Gaps, report_joined};
@@ -215,12 +216,16 @@ impl Look<'_> {
                     }
                 })
                 .collect();
+            // What capping leaves open, under the assumption that the caps state.
+            let bound = cap::estimate(self.mesh, body, None)
+                .ok()
+                .map(|e| (e.bounds.volume * self.metres.powi(3), EffectIs::Bound));
             put(self.finding(
                 FindingKind::Hole,
                 Severity::Blocks,
                 holes.len() as u64,
                 places,
-                None,
+                bound,
                 "the surface is open here: look for a missing or unstitched face in the model, and export again",
             ));
         }
@@ -593,24 +598,5 @@ impl Look<'_> {
                 ),
             );
         }
-    }
-}
-
-/// Centre of a closed polyline by its length, and the length.
-fn centre_of_polyline(points: &[[f64; 3]]) -> ([f64; 3], f64) {
-    let mut length = 0.0;
-    let mut weighted = [0.0; 3];
-    for (i, p) in points.iter().enumerate() {
-        let q = &points[(i + 1) % points.len()];
-        let l = (0..3).map(|k| (q[k] - p[k]).powi(2)).sum::<f64>().sqrt();
-        length += l;
-        for k in 0..3 {
-            weighted[k] += l * (p[k] + (q[k] - p[k]) / 2.0);
-        }
-    }
-    if length > 0.0 {
-        (weighted.map(|w| w / length), length)
-    } else {
-        (points[0], 0.0)
     }
 }

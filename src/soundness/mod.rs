@@ -1,12 +1,15 @@
 //! What is wrong with a mesh, where, how often, and what it can do to the volume.
 
 mod audit;
+pub mod cap;
 mod columns;
 mod crack;
+mod cross;
 mod facets;
 mod filled;
 mod finding;
 mod gaps;
+pub mod mend;
 mod notes;
 mod overlap;
 mod shared_space;

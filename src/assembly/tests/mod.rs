@@ -94,6 +94,17 @@ impl Block {
                     message: "it has 4 open edges in 1 loop".into(),
                     advice: "close the hole".into(),
                 }),
+                // As if the block's upper side were missing in part.
+                capped: self.refused.then(|| super::Capped {
+                    moments: Moments {
+                        zeroth: volume,
+                        second: Matrix3::from_diagonal(&(d.component_mul(&d) * (volume / 12.0))),
+                        ..Moments::zero((lo + hi) / 2.0)
+                    },
+                    volume_bound: 0.01 * volume,
+                    centre_bound: 0.02 * d.z,
+                    inertia_bound: f64::INFINITY,
+                }),
             },
         })
     }
