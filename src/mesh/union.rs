@@ -39,13 +39,9 @@ impl Sets {
             }
             let above = self.0[parent as usize].load(Ordering::Relaxed);
             if above != parent {
-                // Halving: any ancestor is a right parent, so a lost race does no harm.
-                let _ = self.0[x as usize].compare_exchange_weak(
-                    parent,
-                    above,
-                    Ordering::Relaxed,
-                    Ordering::Relaxed,
-                );
+                // Halving. Any ancestor is a right parent of what is no root, so whichever of
+                // several threads writes last does no harm.
+                self.0[x as usize].store(above, Ordering::Relaxed);
             }
             x = parent;
         }
