@@ -157,7 +157,9 @@ fn the_whole_counts_shared_space_once_too() {
     let (exit, file) = run(&["weigh", "--filled"], &facets);
     assert_eq!(exit, 0);
     let whole = file["whole"]["volume_m3"].as_f64().unwrap();
-    let bound = file["whole"]["estimate"]["volume_bound_m3"].as_f64().unwrap();
+    let bound = file["whole"]["estimate"]["volume_bound_m3"]
+        .as_f64()
+        .unwrap();
     assert!(
         (whole - 15.0).abs() <= bound && bound < 1e-3,
         "{whole} {bound}"

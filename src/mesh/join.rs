@@ -8,8 +8,8 @@ use super::boundary::{Boundary, Merge};
 use super::near::{distance, length};
 use super::shells::{Members, Shells};
 use super::{Mesh, Soup, Triangles, each};
-use crate::error::Result;
 use crate::bytes::Bytes;
+use crate::error::Result;
 use crate::geometry::{Corners, Point};
 
 /// What joining did to a mesh.
