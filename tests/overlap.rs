@@ -169,3 +169,53 @@ fn the_whole_counts_shared_space_once_too() {
         assert_eq!(body["estimate"], Value::Null);
     }
 }
+
+#[test]
+fn balance_says_which_parts_occupy_the_same_space() {
+    let folder = tempfile::tempdir().unwrap();
+    let cube = std::fs::read_to_string("fixtures/cube.obj").unwrap();
+    std::fs::write(folder.path().join("cube.obj"), cube).unwrap();
+    // Cubes of side 10: the second, mirrored, from 5 to 15; the third touches the second.
+    let text = r#"
+        [assembly]
+        unit = "mm"
+        [material.light]
+        density = "1 g/cm3"
+        [material.heavy]
+        density = "4 g/cm3"
+        [[part]]
+        name = "one"
+        mesh = "cube.obj"
+        material = "light"
+        [[part]]
+        name = "two"
+        mesh = "cube.obj"
+        material = "heavy"
+        mirror = "x"
+        at = [15, 0, 0]
+        [[part]]
+        name = "three"
+        mesh = "cube.obj"
+        material = "heavy"
+        at = [15, 0, 0]
+    "#;
+    let file = folder.path().join("a.toml");
+    std::fs::write(&file, text).unwrap();
+    let out = std::process::Command::new(env!("CARGO_BIN_EXE_bismar"))
+        .args(["balance", "--json"])
+        .arg(&file)
+        .output()
+        .unwrap();
+    let document: serde_json::Value = serde_json::from_slice(&out.stdout).unwrap();
+    let [overlap] = &document["overlaps"].as_array().unwrap()[..] else {
+        panic!("{}", document["overlaps"]);
+    };
+    assert_eq!(
+        (&overlap["a"], &overlap["b"]),
+        (&"one".into(), &"two".into())
+    );
+    let figure = |key: &str| overlap[key].as_f64().unwrap();
+    let error = figure("volume_error_m3");
+    assert!((figure("volume_m3") - 500e-9).abs() <= error && error < 1e-9);
+    assert!((figure("mass_in_b_kg") / figure("mass_in_a_kg") - 4.0).abs() < 1e-12);
+}

@@ -27,6 +27,7 @@ mod file;
 mod load;
 mod notes;
 mod open;
+mod overlap;
 mod position;
 mod read;
 mod read_limits;
@@ -50,6 +51,7 @@ pub use file::{
 };
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
+pub use overlap::{Overlap, Stand};
 pub use resolve::{Basis, Piece, Resolved, Source, Weighed, resolve};
 pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance};
 pub use schema::schema;

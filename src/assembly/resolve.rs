@@ -15,6 +15,7 @@ use super::file::{Part, Substance};
 use super::load::{Input, Loaded};
 use super::open::Capped;
 use super::open::{self, MassBounds};
+use super::overlap::Stand;
 use super::source::{MeshBody, MeshFiles};
 use super::{listed, notes, sum};
 use crate::error::{Error, Kind, Warning};
@@ -73,6 +74,8 @@ pub struct Weighed {
     pub basis: Basis,
     /// Its bodies, or the item itself.
     pub pieces: Vec<Piece>,
+    /// Its closed bodies where they stand; none for items and open meshes.
+    pub stands: Vec<Stand>,
     /// Their sum.
     pub moments: Moments,
     /// How far its figures may be off, where its mesh is open.
@@ -140,6 +143,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                         material: None,
                         moments,
                     }],
+                    stands: Vec::new(),
                     moments,
                     volume: None,
                     implied_density: None,
@@ -307,7 +311,18 @@ impl Work {
             },
             ..b
         });
+        let stands = bodies
+            .iter()
+            .zip(&pieces)
+            .filter(|(b, _)| b.figures().refused.is_none())
+            .map(|(b, p)| Stand {
+                body: b.clone(),
+                placement: instance.placement,
+                density: p.moments.zeroth / b.figures().moments.zeroth,
+            })
+            .collect();
         Some(Weighed {
+            stands,
             estimate,
             path: instance.path.clone(),
             groups: instance.groups.to_vec(),

@@ -7,6 +7,7 @@ use serde_json::Value;
 use super::expect::Expectation;
 use super::load::Loaded;
 use super::open::{self, MassBounds};
+use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
 use super::sum;
 use crate::error::{Error, Kind};
@@ -30,8 +31,8 @@ pub struct Balance {
     pub by_group: Vec<GroupRow>,
     /// Subtotals by what a mass rests on.
     pub by_basis: Vec<BasisRow>,
-    /// Bodies that overlap; null: not computed.
-    pub overlaps: Option<Value>,
+    /// Parts that occupy the same space.
+    pub overlaps: Vec<Overlap>,
     /// Each limit's verdict, in file order; none where there is no total.
     pub limits: Vec<Judged>,
     /// null: not computed.
@@ -204,7 +205,7 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
         by_group: by_group(weighed, mass),
         by_basis: by_basis(weighed, mass),
         total,
-        overlaps: None,
+        overlaps: overlap::overlaps(weighed),
         limits,
         uncertainty: None,
         expectations: resolved.expectations.clone(),

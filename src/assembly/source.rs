@@ -51,6 +51,12 @@ pub trait MeshBody: Send + Sync {
     /// Its figures.
     fn figures(&self) -> &BodyFigures;
 
+    /// Its facets (m, the file's frame), facing outward, voids included; none where they are not
+    /// at hand, and then nothing is said of the space that it shares.
+    fn facets(&self) -> Vec<[[f64; 3]; 3]> {
+        Vec::new()
+    }
+
     /// The exact bounds (m) of the body's vertices after `turn` about the file's origin.
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2];
 }

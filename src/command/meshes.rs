@@ -33,6 +33,14 @@ impl MeshBody for Placed {
         &self.figures
     }
 
+    fn facets(&self) -> Vec<[[f64; 3]; 3]> {
+        let facets = self.mesh.outward_facets(&self.body);
+        facets
+            .into_iter()
+            .map(|t| t.map(|p| p.map(|x| x * self.metres)))
+            .collect()
+    }
+
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {
         self.mesh
             .bounds_turned(&self.body, turn)

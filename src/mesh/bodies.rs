@@ -219,6 +219,21 @@ impl Mesh {
         )
     }
 
+    /// The facets of a body (file unit) as they count: shells that were turned are turned.
+    pub fn outward_facets(&self, body: &Body) -> Vec<[[f64; 3]; 3]> {
+        each!(&self.soup.triangles, f => {
+            let mut out = Vec::with_capacity(body.triangles);
+            for role in &body.shells {
+                let select = self.found.shells[role.shell].members.select();
+                for i in 0..select.len(f.count()) {
+                    let [a, b, c] = f.triangle(select.get(i));
+                    out.push(if role.turned { [a, c, b] } else { [a, b, c] });
+                }
+            }
+            out
+        })
+    }
+
     /// The box of `turn`·vertices of a body (file unit).
     pub fn bounds_turned(&self, body: &Body, turn: &nalgebra::Matrix3<f64>) -> [[f64; 3]; 2] {
         struct Turned<'a, C>(&'a C, &'a nalgebra::Matrix3<f64>);

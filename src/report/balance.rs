@@ -67,7 +67,7 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     } else if b.total.is_some() {
         out.push_str("\nno limits are stated\n");
     }
-    out.push_str("\noverlap between parts: not tested\n\n");
+    out.push_str(&overlaps(b, unit, look));
     out.push_str(&format!("{CAUTION}\n"));
     out.push_str(&footer(document, look));
     out
@@ -333,6 +333,43 @@ fn estimated(of: &str, e: &MassBounds, unit: LengthUnit, look: Look) -> String {
         at_most(length_in(e.centre_bound_m, unit)),
         unit.symbol(),
         super::estimate::IF
+    )
+}
+
+fn overlaps(b: &Balance, unit: LengthUnit, look: Look) -> String {
+    if b.overlaps.is_empty() {
+        return "\nno two meshes occupy the same space (bought-in items are not looked at)\n\n"
+            .to_owned();
+    }
+    let mut table = Table::new(vec![
+        Column::text("a", "same space"),
+        Column::text("b", "and"),
+        Column::figures("volume_m3", "volume", "cm3"),
+        Column::figures("volume_error_m3", "± at most", "cm3"),
+        Column::figures("mass_in_a_kg", "weighs in first", "kg"),
+        Column::figures("mass_in_b_kg", "in second", "kg"),
+        Column::text("at", "about"),
+    ]);
+    for o in &b.overlaps {
+        let cm3 = |x: f64| Cell::figure(significant(x * 1e6, 3), x);
+        let kg = |x: f64| Cell::figure(significant(x, 3), x);
+        table.row(vec![
+            Cell::text(&o.a),
+            Cell::text(&o.b),
+            cm3(o.volume_m3),
+            cm3(o.volume_error_m3),
+            kg(o.mass_in_a_kg),
+            kg(o.mass_in_b_kg),
+            Cell::text(&o.at_m.map_or(String::new(), |p| point(&p, unit))),
+        ]);
+    }
+    format!(
+        "\n{}{}\n\n",
+        table.render(look),
+        look.marked(
+            "the total counts this space twice: cut one part, or move it",
+            Mark::Fail
+        )
     )
 }
 

@@ -22,6 +22,10 @@ use crate::moments::{self, Moments};
 const COARSEST: usize = 32;
 const FINEST: usize = 512;
 
+/// How much of the smaller solid the first look at a contact may miss: surfaces that nowhere pass
+/// through each other for certain share space only if one lies in the other along a whole face.
+const CONTACT_LOOK: f64 = 1e-2;
+
 /// Space that two solids both occupy, in the facets' unit.
 #[derive(Clone, Debug)]
 pub struct SharedSpace {
@@ -154,6 +158,16 @@ impl<'a> Solid<'a> {
             }
         }
         let smaller = self.whole.zeroth.abs().min(other.whole.zeroth.abs());
+        if !cuts {
+            // Contact is the rule in assemblies. If a coarse look finds no space at all, nothing
+            // that a finer one could find is more than that look's error.
+            let wanted = tolerance.max(CONTACT_LOOK) * smaller;
+            let (moments, _) = common_space(self.facets, other.facets, region, wanted);
+            // Faces in contact are rounded apart: what their rays find is dust.
+            if moments.zeroth <= 1e-9 * smaller {
+                return None;
+            }
+        }
         let (moments, error) = common_space(self.facets, other.facets, region, tolerance * smaller);
         // Where surfaces were only seen to touch, what is within the error is contact.
         let real = cuts || moments.zeroth > error.max(1e-9 * smaller);
