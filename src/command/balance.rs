@@ -54,7 +54,8 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     });
     let exit = balance.exit();
     let errors: Vec<Error> = balance.error.iter().chain(&balance.more).cloned().collect();
-    let warnings = resolved.warnings.clone();
+    let mut warnings = resolved.warnings.clone();
+    warnings.extend(files.warnings);
     let inputs = resolved.inputs.iter().map(fact).collect();
     let document = Document {
         schema: "bismar/balance/1",

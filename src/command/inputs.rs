@@ -129,11 +129,21 @@ pub(super) fn split_pick(name: &Path) -> (PathBuf, Option<String>) {
     if name.exists() {
         return (name.to_path_buf(), None);
     }
-    match name.to_str().and_then(|s| s.rsplit_once('#')) {
-        Some((path, pick)) if !path.is_empty() && !pick.is_empty() => {
-            (PathBuf::from(path), Some(pick.to_owned()))
-        }
-        _ => (name.to_path_buf(), None),
+    let Some(text) = name.to_str() else {
+        return (name.to_path_buf(), None);
+    };
+    let mut splits = text
+        .rmatch_indices('#')
+        .map(|(at, _)| (&text[..at], &text[at + 1..]));
+    let usable = |(path, pick): &(&str, &str)| !path.is_empty() && !pick.is_empty();
+    let last = splits.clone().next().filter(usable);
+    // Names of bodies may hold the sign too: the last one that a file stands before.
+    match splits
+        .find(|s| usable(s) && Path::new(s.0).exists())
+        .or(last)
+    {
+        Some((path, pick)) => (PathBuf::from(path), Some(pick.to_owned())),
+        None => (name.to_path_buf(), None),
     }
 }
 
@@ -298,8 +308,19 @@ pub(super) fn picked<'a>(mesh: &'a Mesh, input: &Input) -> Result<Vec<(usize, &'
         .clone()
         .filter(|(_, b)| b.name.as_ref() == Some(pick))
         .collect();
+    let with_id: Vec<_> = all.filter(|(_, b)| b.id == *pick).collect();
+    if let ([_, ..], [(_, one)]) = (&chosen[..], &with_id[..])
+        && one.name.as_ref() != Some(pick)
+    {
+        return Err(Error::new(
+            Kind::AmbiguousName,
+            format!("\"{pick}\" is the id of one body and the name of another"),
+            "give the bodies other names, or weigh the whole file",
+        )
+        .in_file(&input.path));
+    }
     if chosen.is_empty() {
-        chosen = all.filter(|(_, b)| b.id == *pick).collect();
+        chosen = with_id;
     }
     if chosen.is_empty() {
         let mut names: Vec<&str> = mesh.bodies().iter().map(|b| b.id.as_str()).collect();

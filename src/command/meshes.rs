@@ -8,17 +8,21 @@ use nalgebra::Matrix3;
 
 use super::inputs::digest;
 use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
-use crate::error::{Error, Result};
+use crate::error::{Error, Result, Warning};
 use crate::format::{self, Bytes};
 use crate::mesh::{Body, Mesh};
 use crate::quantity::LengthUnit;
+use crate::report::kind_word;
 use crate::soundness::cap::estimate;
+use crate::soundness::{self, Depth, EffectIs, Finding, Severity};
 
 /// Reads mesh files for an assembly.
 #[derive(Default)]
 pub(super) struct Files {
     read: BTreeMap<(PathBuf, &'static str), Vec<Arc<dyn MeshBody>>>,
     inputs: BTreeMap<PathBuf, Input>,
+    /// What throws doubt on the meshes that were read.
+    pub(super) warnings: Vec<Warning>,
 }
 
 struct Placed {
@@ -70,6 +74,7 @@ impl MeshFiles for Files {
             .file_stem()
             .map_or("body".into(), |s| s.to_string_lossy());
         let mesh = Arc::new(Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?);
+        self.warnings.extend(doubts(&mesh, path, metres));
         let bodies: Vec<Arc<dyn MeshBody>> = mesh
             .bodies()
             .iter()
@@ -90,6 +95,42 @@ impl MeshFiles for Files {
     fn input(&mut self, path: &Path) -> Option<Input> {
         self.inputs.get(path).cloned()
     }
+}
+
+/// What was dropped, turned or is in doubt, as warnings: an assembly must not swallow it.
+fn doubts(mesh: &Mesh, path: &Path, metres: f64) -> Vec<Warning> {
+    let audit = soundness::audit(mesh, metres, 1, Depth::Figures);
+    let warning = |on: &str, f: &Finding| {
+        let effect = match (f.volume_effect_m3, f.volume_effect_is) {
+            (Some(v), Some(EffectIs::Bound)) => {
+                format!("; its volume may be off by {:.3} cm3", v.abs() * 1e6)
+            }
+            _ => String::new(),
+        };
+        Warning {
+            kind: f.kind.name(),
+            message: format!("{on}: {} {}{effect}", f.count, kind_word(f.kind, f.count)),
+            path: Some(path.to_string_lossy().into_owned()),
+            line: f.places.first().and_then(|p| p.line),
+            advice: f.advice.clone(),
+        }
+    };
+    let of_bodies = mesh
+        .bodies()
+        .iter()
+        .zip(&audit.bodies)
+        .flat_map(|(b, list)| {
+            list.iter()
+                .filter(|f| f.severity == Severity::Doubts)
+                .map(|f| warning(&format!("body `{}`", b.id), f))
+                .collect::<Vec<_>>()
+        });
+    let of_file = audit
+        .file
+        .iter()
+        .filter(|f| f.severity == Severity::Doubts)
+        .map(|f| warning("the file", f));
+    of_bodies.chain(of_file).collect()
 }
 
 fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
@@ -133,7 +174,10 @@ fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
                 "nested-solid" => "a solid lies within its solid".to_owned(),
                 _ => "it holds no volume".to_owned(),
             },
-            advice: r.advice,
+            advice: match r.kind {
+                "nested-solid" => "turn the inner shell inward if it is a hollow, else unite the solids, and export again".to_owned(),
+                _ => r.advice,
+            },
         }),
     }
 }

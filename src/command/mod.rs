@@ -138,11 +138,8 @@ fn usage(e: &clap::Error, args: &[std::ffi::OsString]) -> u8 {
         return if e.exit_code() == 0 { 0 } else { 2 };
     }
     let text = e.to_string();
-    let message = text
-        .lines()
-        .next()
-        .unwrap_or_default()
-        .trim_start_matches("error: ");
+    let message = text.split("\n\n").next().unwrap_or_default();
+    let message = message.trim_start_matches("error: ").replace('\n', " ");
     let error = Error::new(Kind::Usage, message, "see bismar --help");
     failure(
         vec![error],

@@ -41,7 +41,7 @@ pub(super) struct WeighArgs {
     about: Option<String>,
     /// Give totals alone, in one reading with little memory: proves that edges cancel, and does not
     /// see doubled meshes, solids in solids or single shells inside out
-    #[arg(long, conflicts_with_all = ["nested", "join"])]
+    #[arg(long, conflicts_with_all = ["nested", "join", "filled", "accept_open"])]
     whole: bool,
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
@@ -413,8 +413,9 @@ fn filled(
     };
     let volume = found.moments.scaled(metres);
     let f = &sum.figures;
-    let area = f.area_m2.unwrap_or(f64::NAN);
-    let figures = Figures::from_volume(&volume, area, f.condition, f.bounds_m, substance, about);
+    // The area of what is left when space is counted once is not known.
+    let figures =
+        Figures::from_volume(&volume, f64::NAN, f.condition, f.bounds_m, substance, about);
     WeighedBody {
         figures,
         estimate: Some(estimate(&found, metres)),
@@ -445,8 +446,9 @@ fn whole_filled(
     };
     let volume = found.moments.scaled(metres);
     let f = &sum.figures;
-    let area = f.area_m2.unwrap_or(f64::NAN);
-    let figures = Figures::from_volume(&volume, area, f.condition, f.bounds_m, substance, about);
+    // The area of what is left when space is counted once is not known.
+    let figures =
+        Figures::from_volume(&volume, f64::NAN, f.condition, f.bounds_m, substance, about);
     Whole {
         figures,
         estimate: Some(estimate(&found, metres)),

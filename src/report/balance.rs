@@ -4,10 +4,10 @@ use serde::Serialize;
 
 use super::Document;
 use super::digits::{at_most, length_in, significant};
-use super::footer::{CAUTION, footer};
+use super::footer::{CAUTION, footer, nominal};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
-use super::words::{box_size, direction, point};
+use super::words::{box_size, direction, point, point_in};
 use crate::assembly::{Balance, Basis, MassBounds, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, Judged, PercentOf, Verdict};
@@ -68,6 +68,7 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         out.push_str("\nno limits are stated\n");
     }
     out.push_str(&overlaps(b, unit, look));
+    out.push_str(&nominal(&document.warnings));
     out.push_str(&format!("{CAUTION}\n"));
     out.push_str(&footer(document, look));
     out
@@ -231,7 +232,7 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
     ));
     out.push_str(&format!(
         "balance point  {}   frame: the assembly's axes and origin\n",
-        point(&t.centre_of_mass_m, unit)
+        point_in(&t.centre_of_mass_m, &t.bounds_m, unit)
     ));
     out.push_str(&format!(
         "box            {} {}\n",

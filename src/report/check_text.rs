@@ -133,7 +133,9 @@ fn finding(
                     EffectIs::Estimate => "estimate",
                 },
             );
-            format!("   volume would change by {cm3} cm3 ({is}{on})\n")
+            format!(
+                "   the volume as the facets stand in the file would change by {cm3} cm3 ({is}{on})\n"
+            )
         }
         _ => "   effect on the volume: not known\n".to_owned(),
     };

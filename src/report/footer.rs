@@ -2,10 +2,24 @@
 
 use super::document::{Document, InputFact};
 use super::table::{Look, Mark};
+use crate::error::Warning;
 use crate::text::shown;
 
 /// The usual caution, said once on every sheet with masses.
 pub const CAUTION: &str = "Figures are estimates from the meshes and the stated densities; verify by weighing; local codes and a licensed professional decide.";
+
+/// What a printed sheet must not lose with the standard error: tolerances that are not in it, and
+/// what throws doubt on its meshes.
+pub(super) fn nominal(warnings: &[Warning]) -> String {
+    let kept = |w: &&Warning| w.kind == "tolerances-ignored" || w.path.is_some();
+    let quiet = |w: &&Warning| w.kind != "unit-assumed" && w.kind != "body-unused";
+    warnings
+        .iter()
+        .filter(kept)
+        .filter(quiet)
+        .map(|w| format!("mind: {}\n", shown(&w.message)))
+        .collect()
+}
 
 /// Version, options, inputs with size and hash.
 pub fn footer<B>(document: &Document<B>, look: Look) -> String {

@@ -19,3 +19,4 @@ mod words;
 
 pub use document::{Document, Failure, InputFact, PROGRAM, Program, path_hex, to_json};
 pub use footer::{CAUTION, footer};
+pub(crate) use words::kind_word;

@@ -3,14 +3,16 @@
 use super::Document;
 use super::digits::{Scale, at_most, length_in, significant, tensor};
 use super::estimate::Estimated;
-use super::footer::{CAUTION, footer};
+use super::footer::{CAUTION, footer, nominal};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh::{WeighBody, WeighedBody, WeighedFile};
-use super::words::{box_size, coordinates, direction, file_heading, kind_word, point, unit_of};
+use super::words::{
+    box_size, coordinates, direction, file_heading, kind_word, point, point_in, unit_of,
+};
 use crate::error::Result;
 use crate::masses::Figures;
 use crate::quantity::LengthUnit;
-use crate::soundness::{FindingKind, Severity};
+use crate::soundness::{EffectIs, FindingKind, Severity};
 
 /// Bodies of one file that are shown with their tensors; more are shown as a table alone.
 const IN_FULL: usize = 8;
@@ -31,6 +33,7 @@ pub fn render(document: &Document<WeighBody>, look: Look) -> String {
             .any(|f| f.mass_kg.is_some())
     });
     if weighed {
+        out.push_str(&nominal(&document.warnings));
         out.push_str(&format!("{CAUTION}\n"));
     }
     out.push_str(&footer(document, look));
@@ -215,9 +218,20 @@ fn remarks(b: &WeighedBody, look: Look) -> String {
         .iter()
         .filter(|f| f.severity == Severity::Doubts || b.turned)
     {
+        let (label, mark) = match f.severity {
+            Severity::Notes => ("note", Mark::Dim),
+            _ => ("DOUBT", Mark::Fail),
+        };
+        // What was mended is in the figures; what could not be is how far off they may be.
+        let off = match (f.volume_effect_m3, f.volume_effect_is) {
+            (Some(v), Some(EffectIs::Bound)) if v != 0.0 => {
+                format!("; the volume may be off by {} cm3", at_most(v.abs() * 1e6))
+            }
+            _ => String::new(),
+        };
         out.push_str(&format!(
-            "{} {}: {} {}; {}\n",
-            look.marked("note", Mark::Fail),
+            "{} {}: {} {}{off}; {}\n",
+            look.marked(label, mark),
             crate::text::shown(&b.id),
             f.count,
             kind_word(f.kind, f.count),
@@ -281,7 +295,9 @@ pub(super) fn in_full(
     };
     out.push_str(&format!(
         "{word}  {}   frame: the file's own axes and origin\n",
-        point(centre, unit)
+        f.bounds_m
+            .as_ref()
+            .map_or_else(|| point(centre, unit), |b| point_in(centre, b, unit))
     ));
     let (tensor_si, name, scale) = match &f.inertia_kg_m2 {
         Some(i) => (i, format!("kg {u}2"), k),

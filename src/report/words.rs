@@ -90,6 +90,15 @@ pub(super) fn coordinates(at_m: &[f64; 3], size_m: f64, unit: LengthUnit) -> [(S
     })
 }
 
+/// A point, with dust below the rounding of the thing's size shown as zero.
+pub(super) fn point_in(at_m: &[f64; 3], bounds_m: &[[f64; 3]; 2], unit: LengthUnit) -> String {
+    let size = (0..3)
+        .map(|k| bounds_m[1][k] - bounds_m[0][k])
+        .fold(0.0, f64::max);
+    let p = coordinates(at_m, size, unit).map(|(text, _)| trimmed(&text));
+    format!("({}, {}, {}) {}", p[0], p[1], p[2], unit.symbol())
+}
+
 /// A direction as its three components, to five places.
 pub(super) fn direction(axis: &[f64; 3]) -> String {
     axis.map(|x| {
@@ -118,7 +127,7 @@ fn trimmed(text: &str) -> String {
 }
 
 /// What a finding counts, in words.
-pub(super) fn kind_word(kind: FindingKind, count: u64) -> &'static str {
+pub(crate) fn kind_word(kind: FindingKind, count: u64) -> &'static str {
     let one = count == 1;
     match kind {
         FindingKind::Hole if one => "hole",

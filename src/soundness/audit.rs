@@ -95,6 +95,9 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, depth: Depth) -> Audit {
     out
 }
 
+/// Triangles that one place lists: enough to find it by, little where thousands meet.
+const MOST_TRIANGLES: usize = 64;
+
 pub(super) struct Look<'a> {
     pub(super) mesh: &'a Mesh,
     pub(super) metres: f64,
@@ -244,6 +247,16 @@ impl Look<'_> {
                 "neighbouring facets face opposite ways: turn the facets that face inward, or export again with consistent normals",
             ));
         }
+        if body.closed && self.mesh.solid_by(body, NestedRule::Sum).moments.zeroth == 0.0 {
+            put(self.finding(
+                FindingKind::Degenerate,
+                Severity::Blocks,
+                1,
+                vec![self.place(self.corner(body.first), vec![body.first])],
+                None,
+                "the surface is closed but holds no volume: export the solid, not a sheet",
+            ));
+        }
         self.inside_out(body, put);
         self.nested(body, put);
         if body.joined.len() > 1 {
@@ -335,7 +348,12 @@ impl Look<'_> {
             (sum, union, void)
         });
         let said = effect.map_or(String::new(), |(sum, union, void)| {
-            format!(" (sum {sum:.6e} m3, union {union:.6e} m3, void {void:.6e} m3)")
+            format!(
+                " (sum {:.4} cm3, union {:.4} cm3, void {:.4} cm3)",
+                sum * 1e6,
+                union * 1e6,
+                void * 1e6
+            )
         });
         put(self.finding(
             FindingKind::NestedSolid,
@@ -379,7 +397,8 @@ impl Look<'_> {
                     let places = by_body.entry((h, severity)).or_default();
                     if places.len() < self.places {
                         let at = self.middle_of_edge(edge[0].low, edge[0].high);
-                        places.push(self.place(at, triangles.clone()));
+                        let first = triangles.iter().copied().take(MOST_TRIANGLES).collect();
+                        places.push(self.place(at, first));
                     }
                 }
             }

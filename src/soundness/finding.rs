@@ -79,6 +79,14 @@ pub const TESTED: &[FindingKind] = &[
     FindingKind::TinyShell,
 ];
 
+impl FindingKind {
+    /// As JSON spells it.
+    pub fn name(self) -> String {
+        let text = serde_json::to_value(self).unwrap_or_default();
+        text.as_str().unwrap_or_default().to_owned()
+    }
+}
+
 /// How bad a finding is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Serialize)]
 #[serde(rename_all = "lowercase")]
