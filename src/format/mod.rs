@@ -25,7 +25,7 @@ pub enum Format {
     StlBinary,
     /// STL as text.
     StlText,
-    /// Wavefront OBJ.
+    /// OBJ.
     Obj,
 }
 
@@ -34,7 +34,7 @@ pub enum Format {
 pub enum Family {
     /// STL of either kind.
     Stl,
-    /// Wavefront OBJ.
+    /// OBJ.
     Obj,
 }
 

@@ -1,4 +1,4 @@
-//! Wavefront OBJ: vertices, polygons, and the names that are in force over them.
+//! OBJ: vertices, polygons, and the names that are in force over them.
 //!
 //! The statements are those of appendix B1 of the Advanced Visualizer manual (common practice
 //! since). `v` and `f` make the mesh; `o`, `g` and `usemtl` name it; texture coordinates,
