@@ -1,4 +1,4 @@
-//! One file a file format: bytes in, [`Soup`](crate::mesh::Soup) out, errors with their place.
+//! One file a file format: bytes in, [`Soup`] out, errors with their place.
 
 mod chunk;
 mod kinds;

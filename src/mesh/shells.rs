@@ -436,8 +436,13 @@ pub(crate) fn bounds(f: &impl Corners, select: Select<'_>) -> [[f64; 3]; 2] {
         for i in k * 4096..n.min((k + 1) * 4096) {
             for p in f.triangle(select.get(i)) {
                 for a in 0..3 {
-                    b[0][a] = b[0][a].min(p[a]);
-                    b[1][a] = b[1][a].max(p[a]);
+                    // Coordinates are no NaN; plain comparisons are one instruction each.
+                    if p[a] < b[0][a] {
+                        b[0][a] = p[a];
+                    }
+                    if p[a] > b[1][a] {
+                        b[1][a] = p[a];
+                    }
                 }
             }
         }
