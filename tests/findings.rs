@@ -231,6 +231,57 @@ fn a_cracked_body_is_weighed_as_its_refusal_says() {
     }
 }
 
+#[test]
+fn a_cracked_part_is_joined_as_its_refusal_says() {
+    let folder = tempfile::tempdir().unwrap();
+    let from = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures/crack-one-ulp.stl");
+    std::fs::copy(from, folder.path().join("tank.stl")).unwrap();
+    let balance = |join: &str| {
+        let text = format!(
+            "[assembly]\nunit = \"cm\"\n[[part]]\nmesh = \"tank.stl\"\nunit = \"mm\"\nmaterial = \"steel S235\"\n{join}\n"
+        );
+        let file = folder.path().join("rover.toml");
+        std::fs::write(&file, text).unwrap();
+        let out = std::process::Command::new(env!("CARGO_BIN_EXE_bismar"))
+            .args(["balance", "--json"])
+            .arg(file)
+            .output()
+            .unwrap();
+        let json: serde_json::Value = serde_json::from_slice(&out.stdout).unwrap();
+        (out.status.code().unwrap(), json)
+    };
+    let (exit, json) = balance("");
+    let advice = json["error"]["advice"]
+        .as_str()
+        .unwrap_or_else(|| panic!("{json}"));
+    let join = advice
+        .split("state ")
+        .nth(1)
+        .and_then(|rest| rest.split(" on the part").next())
+        .unwrap_or_else(|| panic!("{advice}"));
+    assert_eq!((exit, join.starts_with("join = \"")), (2, true), "{advice}");
+    let (exit, json) = balance(join);
+    assert_eq!(exit, 0, "{json}");
+    // A cube of 10 mm of 7850 kg/m3.
+    let mass = json["total"]["mass_kg"].as_f64().unwrap();
+    assert!((mass / 7.85e-3 - 1.0).abs() < 1e-12, "{mass}");
+    let kinds: Vec<&str> = json["warnings"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|w| w["kind"].as_str().unwrap())
+        .collect();
+    assert!(
+        kinds.contains(&"joined") && kinds.contains(&"crack"),
+        "{kinds:?}"
+    );
+    // The unit of a bare length is the assembly's: 4.8e-8 cm, the crack's 2^-21 mm and a little.
+    assert_eq!(balance("join = 4.8e-8").0, 0);
+    assert_eq!(balance("join = 4.7e-8").0, 2);
+    let (exit, json) = balance("join = 0");
+    assert_eq!((exit, &json["error"]["line"]), (2, &7.into()), "{json}");
+}
+
 /// What metamorphic tests do to a mesh.
 fn moved(facets: &[Facet], axis: [f64; 3], angle: f64, by: [f64; 3]) -> Vec<Facet> {
     let axis = nalgebra::Unit::new_normalize(nalgebra::Vector3::from(axis));

@@ -254,6 +254,47 @@ fn what_would_be_a_guess_is_refused_and_nothing_is_written() {
 }
 
 #[test]
+fn a_crack_is_mended_by_the_join_that_its_refusal_names() {
+    let folder = Folder::new();
+    // The lid of a box of 2 × 3 × 4 hovers 0.001 above it.
+    let mut box_ = cube([0.0; 3], [2.0, 3.0, 4.0]);
+    for facet in &mut box_[10..] {
+        facet.iter_mut().for_each(|p| p[2] += 0.001);
+    }
+    let source = folder.put("box.obj", &obj(&[("box", box_)]));
+    let out = folder.path("whole.obj");
+    let run = |join: &[&str]| {
+        let mut arguments = vec!["check", "--json", "--unit", "m", s(&source)];
+        arguments.extend(["--mend", s(&out)]);
+        arguments.extend(join);
+        json(&arguments)
+    };
+    let (exit, doc) = run(&[]);
+    let refused = doc["files"][0]["mended"]["refused"][0].as_str().unwrap();
+    assert!(exit == 1 && !out.exists(), "{doc}");
+    let distance = refused
+        .split("--join ")
+        .nth(1)
+        .and_then(|rest| rest.split(' ').next())
+        .unwrap_or_else(|| panic!("{refused}"));
+    let (exit, doc) = run(&["--join", distance]);
+    assert_eq!(exit, 0, "{doc}");
+    let steps = doc["files"][0]["mended"]["steps"].as_array().unwrap();
+    let [step] = &steps[..] else {
+        panic!("{steps:?}")
+    };
+    assert_eq!(
+        (&step["action"], &step["count"]),
+        (&"vertices-joined".into(), &4.into())
+    );
+    // From the first vertex, in z = 0: the lid at 4.001 over 2 × 3 came down to 4, and the third
+    // of what it spans changed.
+    let change = step["volume_change_m3"].as_f64().unwrap();
+    assert!((change + 0.001 * 6.0 / 3.0).abs() < 1e-12, "{change}");
+    assert!((sound_volumes(&out)[0].1 - 24.0).abs() < 1e-12);
+}
+
+#[test]
 fn copies_say_what_rounding_does() {
     let folder = Folder::new();
     let source = folder.put(

@@ -9,16 +9,18 @@ use super::file::Part;
 use super::listed;
 use super::source::{MeshBody, MeshFiles};
 use crate::error::{Error, Kind, Warning};
-use crate::quantity::LengthUnit;
 
 pub(super) type Bodies = Vec<Arc<dyn MeshBody>>;
+
+/// A file, its unit, and the bits of the distance within which it is joined.
+type Reading = (PathBuf, &'static str, Option<u64>);
 
 /// The bodies that parts took. Entries are known by their address: they live as long as the
 /// loaded file, and a repeat is the same entry.
 #[derive(Default)]
 pub(super) struct Choice {
-    /// Bodies by file and unit; none where the file could not be read.
-    files: HashMap<(PathBuf, &'static str), Option<Bodies>>,
+    /// Bodies by file, unit and distance of joining; none where the file could not be read.
+    files: BTreeMap<Reading, Option<Bodies>>,
     /// Mesh files in the order of their first use.
     pub(super) order: Vec<PathBuf>,
     /// Ids of the bodies that some part took, by file.
@@ -46,12 +48,16 @@ impl Choice {
             return;
         }
         let path = &part.mesh.path;
-        let file = (path.clone(), part.unit.symbol());
+        let file = (
+            path.clone(),
+            part.unit.symbol(),
+            part.join.map(f64::to_bits),
+        );
         if !self.files.contains_key(&file) {
             if !self.order.contains(path) {
                 self.order.push(path.clone());
             }
-            let bodies = self.read(path, part.unit, meshes);
+            let bodies = self.read(part, meshes);
             self.files.insert(file.clone(), bodies);
         }
         let Some(Some(bodies)) = self.files.get(&file) else {
@@ -78,13 +84,9 @@ impl Choice {
         }
     }
 
-    fn read(
-        &mut self,
-        path: &Path,
-        unit: LengthUnit,
-        meshes: &mut dyn MeshFiles,
-    ) -> Option<Bodies> {
-        match meshes.bodies(path, unit) {
+    fn read(&mut self, part: &Part, meshes: &mut dyn MeshFiles) -> Option<Bodies> {
+        let path: &Path = &part.mesh.path;
+        match meshes.bodies(path, part.unit, part.join) {
             Ok(bodies) if bodies.is_empty() => {
                 self.errors.push(
                     Error::new(
@@ -110,8 +112,12 @@ impl Choice {
     /// Warns of bodies that stand in no part, a warning a file.
     pub(super) fn unused_bodies(&self, warnings: &mut Vec<Warning>) {
         for path in &self.order {
-            let file = self.files.iter().find(|((p, _), _)| p == path);
-            let (Some((_, Some(bodies))), Some(taken)) = (file, self.taken.get(path)) else {
+            let of_file = self.files.iter().filter(|((p, _, _), _)| p == path);
+            // Joining leaves no more bodies than there were: those that stay are what can be unused.
+            let bodies = of_file
+                .filter_map(|(_, bodies)| bodies.as_ref())
+                .min_by_key(|bodies| bodies.len());
+            let (Some(bodies), Some(taken)) = (bodies, self.taken.get(path)) else {
                 continue;
             };
             let ids = bodies.iter().map(|b| b.figures().id.as_str());

@@ -148,6 +148,8 @@ pub struct Part {
     pub measured: Option<Quantity>,
     /// Open bodies of it are taken capped while the bound is at most this share of the volume.
     pub accept_open: Option<f64>,
+    /// Vertices on open edges of its mesh are made one within this distance, m.
+    pub join: Option<f64>,
     /// What the CAD model says of it.
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.

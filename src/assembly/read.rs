@@ -191,6 +191,7 @@ impl Context<'_, '_> {
         let accept_open = r
             .quantity("accept-open", Dimension::Fraction)
             .map(|(q, _)| q.value);
+        let join = join(&r);
         let expect = expect(&r);
         let each = each(&r);
         let mesh = r
@@ -221,6 +222,7 @@ impl Context<'_, '_> {
             position,
             measured,
             accept_open,
+            join,
             expect,
             each,
         })
@@ -315,6 +317,17 @@ fn measured(r: &Reader<'_, '_>) -> Option<Quantity> {
     let advice = "write what the scale showed, above zero";
     r.shared
         .fault(line, Kind::BadNumber, "`measured` is zero".into(), advice);
+    None
+}
+
+fn join(r: &Reader<'_, '_>) -> Option<f64> {
+    let (distance, line) = r.quantity("join", Dimension::Length)?;
+    if distance.value > 0.0 {
+        return Some(distance.value);
+    }
+    let message = "`join` is not a distance above zero".into();
+    let advice = "state the distance that `bismar check` names for the crack";
+    r.shared.fault(line, Kind::Usage, message, advice);
     None
 }
 

@@ -147,6 +147,9 @@ struct Part {
     /// this per cent of it.
     #[serde(rename = "accept-open")]
     accept_open: Option<Quantity>,
+    /// Vertices on open edges of its mesh that lie within this distance of each other are made
+    /// one, as `bismar check` names it for a crack.
+    join: Option<Length>,
     /// Figures that it must have.
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.

@@ -63,11 +63,16 @@ pub trait MeshBody: Send + Sync {
 
 /// Mesh files, read when asked for and kept.
 pub trait MeshFiles {
-    /// All bodies of a file, in file order.
+    /// All bodies of a file, in file order. Within `join` (m) vertices on open edges are made one.
     ///
     /// # Errors
     /// Whatever keeps the file from being read.
-    fn bodies(&mut self, path: &Path, unit: LengthUnit) -> Result<Vec<Arc<dyn MeshBody>>, Error>;
+    fn bodies(
+        &mut self,
+        path: &Path,
+        unit: LengthUnit,
+        join: Option<f64>,
+    ) -> Result<Vec<Arc<dyn MeshBody>>, Error>;
 
     /// Length and hash of a file that was read.
     fn input(&mut self, path: &Path) -> Option<Input>;

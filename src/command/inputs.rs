@@ -10,7 +10,7 @@ use crate::format::{self, Bytes, Family};
 use crate::mesh::{Body, Joined, Mesh, ReaderNote};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::InputFact;
-use crate::soundness::rounded_up;
+use crate::soundness::{Finding, FindingKind, Severity, rounded_up};
 
 /// Options that say how meshes are read.
 #[derive(Args, Clone, Debug)]
@@ -243,7 +243,7 @@ pub(super) fn join_distance(text: &str, unit: LengthUnit) -> Result<f64> {
 }
 
 /// What joining did, in words.
-fn joined_said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
+pub(super) fn joined_said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
     let (within, sign) = (rounded_up(joined.distance), unit.symbol());
     let message = match joined.vertices {
         0 => format!("no two vertices on open edges lie within {within} {sign}: none was joined"),
@@ -262,6 +262,21 @@ fn joined_said(joined: &Joined, unit: LengthUnit, path: &Path) -> Warning {
             "stitch the surface in the model and export again, so that nothing has to be joined"
                 .to_owned(),
     }
+}
+
+/// The distance within which joining closes a body that nothing but cracks keeps open, with its
+/// unit, as `--join` and `join =` take it.
+pub(super) fn closing_distance(findings: &[Finding], unit: LengthUnit) -> Option<String> {
+    let mut blocks = findings.iter().filter(|f| f.severity == Severity::Blocks);
+    let (Some(crack), None) = (blocks.next(), blocks.next()) else {
+        return None;
+    };
+    let join = crack.join_m.filter(|_| crack.kind == FindingKind::Crack)?;
+    Some(format!(
+        "{} {}",
+        rounded_up(join / unit.metres()),
+        unit.symbol()
+    ))
 }
 
 /// The unit of a mesh, whether it was assumed, and the warnings: of the reader, and of that.

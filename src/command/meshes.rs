@@ -6,7 +6,7 @@ use std::sync::Arc;
 
 use nalgebra::Matrix3;
 
-use super::inputs::digest;
+use super::inputs::{closing_distance, digest, joined_said};
 use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
 use crate::error::{Error, Result, Warning};
 use crate::format::{self, Bytes};
@@ -14,14 +14,17 @@ use crate::mesh::{Body, Mesh};
 use crate::quantity::LengthUnit;
 use crate::report::kind_word;
 use crate::soundness::cap::estimate;
-use crate::soundness::{self, Depth, EffectIs, Finding, Severity};
+use crate::soundness::{self, Audit, Depth, EffectIs, Finding, Severity};
+
+/// A file, its unit, and the bits of the distance within which vertices were joined.
+type Reading = (PathBuf, &'static str, Option<u64>);
 
 /// Reads mesh files for an assembly.
 #[derive(Default)]
 pub(super) struct Files {
-    read: BTreeMap<(PathBuf, &'static str), Vec<Arc<dyn MeshBody>>>,
+    read: BTreeMap<Reading, Vec<Arc<dyn MeshBody>>>,
     inputs: BTreeMap<PathBuf, Input>,
-    /// What throws doubt on the meshes that were read.
+    /// What throws doubt on the meshes that were read, and what was joined.
     pub(super) warnings: Vec<Warning>,
 }
 
@@ -53,8 +56,13 @@ impl MeshBody for Placed {
 }
 
 impl MeshFiles for Files {
-    fn bodies(&mut self, path: &Path, unit: LengthUnit) -> Result<Vec<Arc<dyn MeshBody>>, Error> {
-        let key = (path.to_path_buf(), unit.symbol());
+    fn bodies(
+        &mut self,
+        path: &Path,
+        unit: LengthUnit,
+        join: Option<f64>,
+    ) -> Result<Vec<Arc<dyn MeshBody>>, Error> {
+        let key = (path.to_path_buf(), unit.symbol(), join.map(f64::to_bits));
         if let Some(bodies) = self.read.get(&key) {
             return Ok(bodies.clone());
         }
@@ -69,18 +77,29 @@ impl MeshFiles for Files {
         );
         let soup = format::read(bytes, path, None)?;
         // Formats that state their unit are believed before the assembly's word for all.
-        let metres = soup.unit.unwrap_or(unit).metres();
+        let unit = soup.unit.unwrap_or(unit);
+        let metres = unit.metres();
         let stem = path
             .file_stem()
             .map_or("body".into(), |s| s.to_string_lossy());
-        let mesh = Arc::new(Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?);
-        self.warnings.extend(doubts(&mesh, path, metres));
+        let mut mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?;
+        if let Some(distance) = join {
+            mesh = mesh
+                .join(distance / metres, &stem)
+                .map_err(|e| e.in_file(path))?;
+            self.warnings
+                .extend(mesh.joined().map(|j| joined_said(j, unit, path)));
+        }
+        let mesh = Arc::new(mesh);
+        let audit = soundness::audit(&mesh, metres, 1, Depth::Figures);
+        self.warnings.extend(doubts(&mesh, &audit, path));
         let bodies: Vec<Arc<dyn MeshBody>> = mesh
             .bodies()
             .iter()
-            .map(|body| {
+            .zip(&audit.bodies)
+            .map(|(body, findings)| {
                 let placed = Placed {
-                    figures: figures(&mesh, body, metres),
+                    figures: figures(&mesh, body, findings, unit),
                     body: body.clone(),
                     mesh: Arc::clone(&mesh),
                     metres,
@@ -98,8 +117,7 @@ impl MeshFiles for Files {
 }
 
 /// What was dropped, turned or is in doubt, as warnings: an assembly must not swallow it.
-fn doubts(mesh: &Mesh, path: &Path, metres: f64) -> Vec<Warning> {
-    let audit = soundness::audit(mesh, metres, 1, Depth::Figures);
+fn doubts(mesh: &Mesh, audit: &Audit, path: &Path) -> Vec<Warning> {
     let warning = |on: &str, f: &Finding| {
         let effect = match (f.volume_effect_m3, f.volume_effect_is) {
             (Some(v), Some(EffectIs::Bound)) => {
@@ -133,7 +151,9 @@ fn doubts(mesh: &Mesh, path: &Path, metres: f64) -> Vec<Warning> {
     of_bodies.chain(of_file).collect()
 }
 
-fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
+fn figures(mesh: &Mesh, body: &Body, findings: &[Finding], unit: LengthUnit) -> BodyFigures {
+    let metres = unit.metres();
+    let closes = closing_distance(findings, unit);
     let solid = mesh.solid(body, None);
     let moments = match &solid {
         Ok(s) => s.moments.scaled(metres),
@@ -174,8 +194,11 @@ fn figures(mesh: &Mesh, body: &Body, metres: f64) -> BodyFigures {
                 "nested-solid" => "a solid lies within its solid".to_owned(),
                 _ => "it holds no volume".to_owned(),
             },
-            advice: match r.kind {
-                "nested-solid" => "turn the inner shell inward if it is a hollow, else unite the solids, and export again".to_owned(),
+            advice: match (r.kind, closes) {
+                ("not-closed", Some(distance)) => format!(
+                    "the surface is cracked: stitch it in the model and export again, or state join = \"{distance}\" on the part"
+                ),
+                ("nested-solid", _) => "turn the inner shell inward if it is a hollow, else unite the solids, and export again".to_owned(),
                 _ => r.advice,
             },
         }),

@@ -2,7 +2,7 @@
 
 use clap::{Args, ValueEnum};
 
-use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::inputs::{Input, MeshArgs, ReadMesh, closing_distance, expand, open, picked, read};
 use super::open::{self, Opened};
 use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
@@ -15,7 +15,7 @@ use crate::report::estimate::Estimated;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
 use crate::soundness::{
-    self, Depth, Filled, Finding, FindingKind, Severity,
+    self, Depth, Filled, Finding,
     cap::{Cap, Estimate},
 };
 
@@ -371,15 +371,9 @@ fn weighed(
 
 /// Of a body that only cracks keep open, the refusal names the distance that closes it.
 fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit) {
-    let mut blocks = findings.iter().filter(|f| f.severity == Severity::Blocks);
-    let (Some(crack), None) = (blocks.next(), blocks.next()) else {
-        return;
-    };
-    if let (FindingKind::Crack, Some(join)) = (crack.kind, crack.join_m) {
+    if let Some(distance) = closing_distance(findings, unit) {
         refused.advice = format!(
-            "the surface is cracked: stitch it in the model and export again, or weigh it with --join \"{} {}\"",
-            soundness::rounded_up(join / unit.metres()),
-            unit.symbol()
+            "the surface is cracked: stitch it in the model and export again, or weigh it with --join \"{distance}\""
         );
     }
 }

@@ -10,7 +10,8 @@ use super::shells::{Members, Shells};
 use super::{Mesh, Soup, Triangles, each};
 use crate::bytes::Bytes;
 use crate::error::Result;
-use crate::geometry::{Corners, Point};
+use crate::geometry::{Corners, Point, Select};
+use crate::moments::integrate;
 
 /// What joining did to a mesh.
 #[derive(Clone, Debug)]
@@ -21,6 +22,8 @@ pub struct Joined {
     pub vertices: usize,
     /// How far the farthest moved (file unit).
     pub farthest: f64,
+    /// What the file's signed volume, summed about its first vertex, changed by (file unit³).
+    pub volume_change: f64,
     pub(crate) seams: Vec<Seam>,
 }
 
@@ -54,6 +57,7 @@ impl Mesh {
             distance,
             vertices: moves.len(),
             farthest: 0.0,
+            volume_change: 0.0,
             seams: Vec::new(),
         };
         if moves.is_empty() {
@@ -70,7 +74,16 @@ impl Mesh {
         }
         let moved = moved_triangles(&self.found, &moves);
         joined.seams = seams(&self, &boundary, &rep, &moved);
+        // The first vertex never moves: others move to it.
+        let apex = self.soup.triangles.vertex(0);
+        let sum = |soup: &Soup| {
+            each!(&soup.triangles, f => integrate(f, Select::List(&moved), apex, apex))
+                .moments
+                .zeroth
+        };
+        let before = sum(&self.soup);
         let soup = moved_soup(self.soup, &self.found, &moves, &moved);
+        joined.volume_change = sum(&soup) - before;
         let mut mesh = Self::new(soup, stem)?;
         mesh.joined = Some(joined);
         Ok(mesh)

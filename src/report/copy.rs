@@ -35,7 +35,7 @@ pub struct StepDone {
     pub action: Action,
     /// The body, where it was one.
     pub body: Option<String>,
-    /// How many facets, holes or shells.
+    /// How many vertices, facets, holes or shells.
     pub count: u64,
     /// What the file's signed volume, summed about its first vertex, changed by, m³.
     pub volume_change_m3: f64,
@@ -83,6 +83,8 @@ pub(super) fn render(copy: &Copied, verb: &str, unit: LengthUnit, look: Look) ->
     ));
     for s in &copy.steps {
         let what = match (s.action, s.count == 1) {
+            (Action::VerticesJoined, true) => "vertex on open edges joined to a neighbour",
+            (Action::VerticesJoined, _) => "vertices on open edges joined to a neighbour",
             (Action::PolygonsCut, true) => "polygon that is not flat cut into triangles",
             (Action::PolygonsCut, _) => "polygons that are not flat cut into triangles",
             (Action::DuplicatesDropped, true) => "duplicate facet dropped",

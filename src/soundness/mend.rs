@@ -6,7 +6,7 @@
 //! knows the part: then nothing is mended at all, and the reasons are given.
 
 use super::cap::{Cap, caps, cuts_mesh, facets_of};
-use super::{Depth, Severity, audit};
+use super::{Depth, Finding, FindingKind, Severity, audit, rounded_up};
 use crate::error::Result;
 use crate::geometry::{Corners, LooseFacets, Select};
 use crate::mesh::{Mesh, Run, Soup, Triangles, each};
@@ -19,7 +19,7 @@ pub struct Step {
     pub action: Action,
     /// The body, where it was one.
     pub body: Option<String>,
-    /// How many facets were dropped, polygons cut, holes capped or shells turned.
+    /// How many facets were dropped, vertices moved, polygons cut, holes capped or shells turned.
     pub count: u64,
     /// What the file's signed volume, summed about its first vertex, changed by (file unit³).
     pub volume_change: f64,
@@ -32,6 +32,8 @@ pub struct Step {
 #[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize)]
 #[serde(rename_all = "kebab-case")]
 pub enum Action {
+    /// Vertices on open edges were made one, within the distance that was asked for.
+    VerticesJoined,
     /// Polygons that are not flat stand as the triangles that they were cut into.
     PolygonsCut,
     /// Facets that repeat or face another one in the same place.
@@ -125,6 +127,15 @@ pub fn mend(mesh: &Mesh, stem: &str) -> Result<std::result::Result<Mended, Vec<S
             .moments
             .zeroth
     };
+    if let Some(joined) = mesh.joined().filter(|j| j.vertices > 0) {
+        steps.push(Step {
+            action: Action::VerticesJoined,
+            body: None,
+            count: joined.vertices as u64,
+            volume_change: joined.volume_change,
+            volume_bound: None,
+        });
+    }
     let warped = soup.warped.iter().filter(|w| !w.within_rounding).count();
     if warped > 0 {
         steps.push(Step {
@@ -138,7 +149,16 @@ pub fn mend(mesh: &Mesh, stem: &str) -> Result<std::result::Result<Mended, Vec<S
     // Caps first, while vertices have their numbers; they are added behind.
     let mut reasons = Vec::new();
     let mut added: Vec<(String, Vec<Cap>)> = Vec::new();
-    for body in mesh.bodies().iter().filter(|b| !b.closed) {
+    let cracked = cracked(mesh);
+    for (b, body) in mesh.bodies().iter().enumerate().filter(|(_, b)| !b.closed) {
+        if let Some(distance) = cracked[b] {
+            reasons.push(format!(
+                "{} is cracked: --join {} (in the mesh's unit) joins its rims, which a cap would leave apart",
+                body.id,
+                rounded_up(distance)
+            ));
+            continue;
+        }
         match caps(mesh, body) {
             Err(e) => reasons.push(format!(
                 "{} cannot be closed: {} near {}",
@@ -225,6 +245,21 @@ pub fn mend(mesh: &Mesh, stem: &str) -> Result<std::result::Result<Mended, Vec<S
     } else {
         Err(left)
     })
+}
+
+/// For each body the distance that closes its cracks (file unit), where it has any.
+fn cracked(mesh: &Mesh) -> Vec<Option<f64>> {
+    if mesh.bodies().iter().all(|b| b.closed) {
+        return vec![None; mesh.bodies().len()];
+    }
+    let crack = |list: &Vec<Finding>| {
+        let mut cracks = list
+            .iter()
+            .filter(|f| (f.kind, f.severity) == (FindingKind::Crack, Severity::Blocks));
+        cracks.find_map(|f| f.join_m)
+    };
+    let found = audit(mesh, 1.0, 1, Depth::Figures);
+    found.bodies.iter().map(crack).collect()
 }
 
 /// What would still be wrong with a mesh, in words; nothing where it is sound.

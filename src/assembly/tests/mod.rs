@@ -117,7 +117,12 @@ pub(super) struct Bench {
 }
 
 impl MeshFiles for Bench {
-    fn bodies(&mut self, path: &Path, unit: LengthUnit) -> Result<Vec<Arc<dyn MeshBody>>, Error> {
+    fn bodies(
+        &mut self,
+        path: &Path,
+        unit: LengthUnit,
+        _: Option<f64>,
+    ) -> Result<Vec<Arc<dyn MeshBody>>, Error> {
         let name = path.file_name().unwrap().to_string_lossy().into_owned();
         let blocks = self.meshes.get(&name).ok_or_else(|| {
             Error::new(Kind::Truncated, "this mesh ends early", "export it again")
