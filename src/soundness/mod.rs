@@ -11,6 +11,8 @@ mod finding;
 mod gaps;
 pub mod mend;
 mod notes;
+mod of_facets;
+mod of_shells;
 mod overlap;
 mod shared_space;
 mod sizes;
