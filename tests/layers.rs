@@ -8,7 +8,7 @@ use std::path::{Path, PathBuf};
 /// Lowest first; modules of one row may not name each other.
 const ROWS: &[&[&str]] = &[
     &["text"],
-    &["error"],
+    &["error", "progress"],
     &["bytes", "geometry", "quantity"],
     &["moments"],
     &["mesh"],

@@ -8,7 +8,8 @@ use serde::Serialize;
 use super::resolve::Weighed;
 use super::source::MeshBody;
 use crate::moments::Placement;
-use crate::soundness::shared_spaces;
+use crate::progress::Progress;
+use crate::soundness::shared_spaces_watched;
 
 /// A closed body where it stands in the assembly.
 #[derive(Clone)]
@@ -56,7 +57,7 @@ const CONTACT: f64 = 1e-6;
 /// All pairs of bodies that occupy the same space, in the order of the parts.
 ///
 /// Boxes are compared first; only bodies whose boxes meet are looked at by their facets.
-pub(super) fn overlaps(weighed: &[Weighed]) -> Vec<Overlap> {
+pub(super) fn overlaps(weighed: &[Weighed], progress: Progress<'_>) -> Vec<Overlap> {
     let stands: Vec<(usize, &Stand, [[f64; 3]; 2])> = weighed
         .iter()
         .enumerate()
@@ -81,7 +82,7 @@ pub(super) fn overlaps(weighed: &[Weighed]) -> Vec<Overlap> {
     let facets: Vec<Vec<[[f64; 3]; 3]>> =
         chosen.iter().map(|&i| placed_facets(stands[i].1)).collect();
     let slices: Vec<&[[[f64; 3]; 3]]> = facets.iter().map(Vec::as_slice).collect();
-    shared_spaces(&slices, TOLERANCE)
+    shared_spaces_watched(&slices, TOLERANCE, progress)
         .into_iter()
         .filter_map(|found| {
             let (i, a, _) = stands[chosen[found.a]];

@@ -13,6 +13,7 @@ use super::sum;
 use crate::error::{Error, Kind};
 use crate::limits::{Judged, Measured, Verdict};
 use crate::moments::{Moments, principal};
+use crate::progress::Progress;
 
 /// The answer to `balance`. Its fields are those of the JSON document; SI units, in the names;
 /// lengths and axes are the assembly's.
@@ -186,6 +187,18 @@ impl Balance {
 /// # Errors
 /// `empty` where nothing has any mass, `not-finite` where a sum is too large for a double.
 pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Error>> {
+    balance_watched(loaded, resolved, Progress::NONE)
+}
+
+/// As [`balance`], and says how far it is.
+///
+/// # Errors
+/// As [`balance`].
+pub fn balance_watched(
+    loaded: &Loaded,
+    resolved: &Resolved,
+    progress: Progress<'_>,
+) -> Result<Balance, Vec<Error>> {
     let weighed = &resolved.weighed;
     let mut refused = resolved.refused.iter().cloned();
     let error = refused.next();
@@ -205,7 +218,7 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
         by_group: by_group(weighed, mass),
         by_basis: by_basis(weighed, mass),
         total,
-        overlaps: overlap::overlaps(weighed),
+        overlaps: overlap::overlaps(weighed, progress),
         limits,
         uncertainty: None,
         expectations: resolved.expectations.clone(),

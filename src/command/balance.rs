@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use clap::Args;
 
 use super::meshes::Files;
+use super::progress::Terminal;
 use super::{Answer, Common, failure, point};
 use crate::assembly::{self, Input};
 use crate::error::{Error, Result};
@@ -35,12 +36,13 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
         None => None,
         Some(text) => Some(point(text, loaded.file.unit)?),
     };
-    let mut files = Files::default();
+    let terminal = Terminal::new(common);
+    let mut files = Files::watched(terminal.progress());
     let resolved = match assembly::resolve(&loaded, &mut files) {
         Ok(resolved) => resolved,
         Err(errors) => return Ok(failure(errors, common)),
     };
-    let balance = match assembly::balance(&loaded, &resolved) {
+    let balance = match assembly::balance_watched(&loaded, &resolved, terminal.progress()) {
         Ok(balance) => balance,
         Err(errors) => return Ok(failure(errors, common)),
     };

@@ -4,9 +4,11 @@ use clap::Args;
 
 use super::copy::{self, CopyArgs};
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::progress::Terminal;
 use super::{Answer, Common, gather};
 use crate::error::{Error, Result, Warning};
 use crate::mesh::{Body, Mesh};
+use crate::progress::Progress;
 use crate::report::check::{CheckBody, CheckedBody, CheckedFile};
 use crate::report::copy::Copied;
 use crate::report::{self, InputFact, path_hex};
@@ -50,7 +52,10 @@ pub(super) fn run(args: &CheckArgs, common: &Common) -> Result<Answer> {
     args.meshes.judge()?;
     let inputs = expand(&args.meshes);
     args.copy.check(&args.meshes, &inputs)?;
-    let answers = gather(inputs, |input| check_file(input, args));
+    let terminal = Terminal::new(common);
+    let progress = terminal.progress();
+    let answers = gather(inputs, |input| check_file(input, args, progress));
+    drop(terminal);
     let mut files = Vec::new();
     let mut exit = 0;
     for one in &answers.each {
@@ -103,18 +108,30 @@ fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFil
 
 type Checked = (CheckedFile, Vec<Warning>, InputFact);
 
-fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Checked>) {
+fn check_file(
+    input: &Input,
+    args: &CheckArgs,
+    progress: Progress<'_>,
+) -> (Option<InputFact>, Result<Checked>) {
     let (bytes, fact) = match open(input, args.meshes.hash) {
         Ok(opened) => opened,
         Err(e) => return (None, Err(e)),
     };
-    let result = read(bytes, input, &args.meshes).and_then(|m| answer(&m, input, args, &fact));
+    let result = read(bytes, input, &args.meshes, progress)
+        .and_then(|m| answer(&m, input, args, &fact, progress));
     (Some(fact), result)
 }
 
-fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Result<Checked> {
+fn answer(
+    m: &ReadMesh,
+    input: &Input,
+    args: &CheckArgs,
+    fact: &InputFact,
+    progress: Progress<'_>,
+) -> Result<Checked> {
     let metres = m.unit.metres();
-    let mut audit = soundness::audit(&m.mesh, metres, args.places, args.overlap());
+    let mut audit =
+        soundness::audit_watched(&m.mesh, metres, args.places, args.overlap(), progress);
     audit.file.extend(soundness::unit_suspect(
         &m.mesh,
         m.unit,

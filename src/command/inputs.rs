@@ -8,6 +8,7 @@ use sha2::{Digest, Sha256};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Family};
 use crate::mesh::{Body, Joined, Mesh, ReaderNote};
+use crate::progress::Progress;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::InputFact;
 use crate::soundness::{Finding, FindingKind, Severity, rounded_up};
@@ -199,7 +200,13 @@ pub(super) fn digest(bytes: &[u8]) -> String {
 }
 
 /// Reads and welds one mesh.
-pub(super) fn read(bytes: Bytes, input: &Input, args: &MeshArgs) -> Result<ReadMesh> {
+pub(super) fn read(
+    bytes: Bytes,
+    input: &Input,
+    args: &MeshArgs,
+    progress: Progress<'_>,
+) -> Result<ReadMesh> {
+    let _stage = progress.stage(format!("reading {}", input.path.display()), 0);
     let kind = format::detect(&bytes, &input.path, args.format)?;
     let soup = format::read(bytes, &input.path, args.format)?;
     let (unit, unit_assumed, mut warnings) = said(soup.unit, &soup.notes, input, args);

@@ -11,6 +11,7 @@ use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
 use crate::error::{Error, Result, Warning};
 use crate::format::{self, Bytes};
 use crate::mesh::{Body, Mesh};
+use crate::progress::Progress;
 use crate::quantity::LengthUnit;
 use crate::report::kind_word;
 use crate::soundness::cap::estimate;
@@ -21,11 +22,23 @@ type Reading = (PathBuf, &'static str, Option<u64>);
 
 /// Reads mesh files for an assembly.
 #[derive(Default)]
-pub(super) struct Files {
+pub(super) struct Files<'a> {
     read: BTreeMap<Reading, Vec<Arc<dyn MeshBody>>>,
     inputs: BTreeMap<PathBuf, Input>,
+    /// Is told which mesh is read.
+    progress: Progress<'a>,
     /// What throws doubt on the meshes that were read, and what was joined.
     pub(super) warnings: Vec<Warning>,
+}
+
+impl<'a> Files<'a> {
+    /// Tells `progress` which mesh is read.
+    pub(super) fn watched(progress: Progress<'a>) -> Self {
+        Self {
+            progress,
+            ..Self::default()
+        }
+    }
 }
 
 struct Placed {
@@ -55,7 +68,7 @@ impl MeshBody for Placed {
     }
 }
 
-impl MeshFiles for Files {
+impl MeshFiles for Files<'_> {
     fn bodies(
         &mut self,
         path: &Path,
@@ -66,6 +79,7 @@ impl MeshFiles for Files {
         if let Some(bodies) = self.read.get(&key) {
             return Ok(bodies.clone());
         }
+        let _stage = (self.progress).stage(format!("reading {}", path.display()), 0);
         let bytes = Bytes::open(path)?;
         self.inputs.insert(
             path.to_path_buf(),

@@ -7,6 +7,7 @@ mod inputs;
 mod materials;
 mod meshes;
 mod open;
+mod progress;
 mod schema;
 mod weigh;
 mod whole;

@@ -4,12 +4,14 @@ use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, closing_distance, expand, open, picked, read};
 use super::open::{self, Opened};
+use super::progress::Terminal;
 use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule, Refusal};
 use crate::moments::{Moments, SolidIntegrals};
+use crate::progress::Progress;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::estimate::Estimated;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
@@ -82,6 +84,8 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     if args.whole {
         whole::without_picks(&inputs)?;
     }
+    let terminal = Terminal::new(common);
+    let progress = terminal.progress();
     let mut answers = gather(inputs, |input| {
         if args.whole {
             return whole::answer(input, &args.meshes, substance.as_ref(), |unit| {
@@ -92,10 +96,11 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             Ok(opened) => opened,
             Err(e) => return (None, Err(e)),
         };
-        let result = read(bytes, input, &args.meshes)
-            .and_then(|m| answer(&m, input, args, substance.as_ref(), &fact));
+        let result = read(bytes, input, &args.meshes, progress)
+            .and_then(|m| answer(&m, input, args, substance.as_ref(), &fact, progress));
         (Some(fact), result)
     });
+    drop(terminal);
     let mut files = Vec::new();
     let mut exit = 0;
     for one in &answers.each {
@@ -192,6 +197,7 @@ fn answer(
     args: &WeighArgs,
     substance: Option<&Substance>,
     fact: &InputFact,
+    progress: Progress<'_>,
 ) -> Result<(WeighedFile, Vec<Warning>, InputFact)> {
     let metres = m.unit.metres();
     let about = about_point(args.about.as_deref(), m.unit)?;
@@ -201,7 +207,10 @@ fn answer(
     } else {
         args.nested.map(NestedRule::from)
     };
-    let cuts = args.filled.then(|| soundness::cuts(&m.mesh, 0));
+    let cuts = args.filled.then(|| {
+        let _stage = progress.stage("seeking surfaces that cut each other", 0);
+        soundness::cuts(&m.mesh, 0)
+    });
     let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
     let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
@@ -214,7 +223,7 @@ fn answer(
         .zip(&results)
         .map(|(&(i, body), weighing)| {
             let mut out = if is_cut(i) {
-                filled(&m.mesh, body, metres, substance, about)
+                filled(&m.mesh, body, metres, substance, about, progress)
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
@@ -239,7 +248,7 @@ fn answer(
         _ => {
             let sum = together(&chosen, &results, rule, metres, substance, about);
             if args.filled {
-                whole_filled(&m.mesh, &chosen, metres, sum, substance, about)
+                whole_filled(&m.mesh, &chosen, metres, sum, substance, about, progress)
             } else {
                 sum
             }
@@ -399,10 +408,11 @@ fn filled(
     metres: f64,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
+    progress: Progress<'_>,
 ) -> WeighedBody {
     let raw = weigh(mesh, body, Some(NestedRule::Sum), None);
     let sum = weighed(mesh, body, &raw, metres, substance, about);
-    let Ok(found) = soundness::filled_bodies(mesh, &[body], FILLED_TOLERANCE) else {
+    let Ok(found) = soundness::filled_bodies(mesh, &[body], FILLED_TOLERANCE, progress) else {
         return sum;
     };
     let volume = found.moments.scaled(metres);
@@ -425,6 +435,7 @@ fn whole_filled(
     sum: Whole,
     substance: Option<&Substance>,
     about: Option<[f64; 3]>,
+    progress: Progress<'_>,
 ) -> Whole {
     let apart = |a: &Body, b: &Body| {
         (0..3).any(|k| a.bounds[1][k] <= b.bounds[0][k] || b.bounds[1][k] <= a.bounds[0][k])
@@ -435,7 +446,7 @@ fn whole_filled(
     if all.len() <= 1000 && none_meet() && soundness::cuts(mesh, 0).is_empty() {
         return sum;
     }
-    let Ok(found) = soundness::filled_bodies(mesh, &all, FILLED_TOLERANCE) else {
+    let Ok(found) = soundness::filled_bodies(mesh, &all, FILLED_TOLERANCE, progress) else {
         return sum;
     };
     let volume = found.moments.scaled(metres);

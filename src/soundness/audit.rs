@@ -8,6 +8,7 @@ use super::gaps::{Gaps, report_joined};
 use super::sizes::tiny_shells;
 use crate::geometry::Corners;
 use crate::mesh::{Mesh, Pinch, each, pinches};
+use crate::progress::Progress;
 
 /// Findings of a mesh: those of each body, in the order of bodies, and those of no one body.
 #[derive(Clone, Debug, Default)]
@@ -44,6 +45,18 @@ pub enum Depth {
 ///
 /// `metres` is the length of the file's unit; `places` the most places that a finding lists.
 pub fn audit(mesh: &Mesh, metres: f64, places: usize, depth: Depth) -> Audit {
+    audit_watched(mesh, metres, places, depth, Progress::NONE)
+}
+
+/// As [`audit`], and says how far it is.
+pub fn audit_watched(
+    mesh: &Mesh,
+    metres: f64,
+    places: usize,
+    depth: Depth,
+    progress: Progress<'_>,
+) -> Audit {
+    let stage = progress.stage("looking for faults of the surface", 0);
     let look = Look {
         mesh,
         metres,
@@ -80,8 +93,9 @@ pub fn audit(mesh: &Mesh, metres: f64, places: usize, depth: Depth) -> Audit {
     look.gaps.report(&look, &home, &mut put);
     report_joined(&look, &home, &mut put);
     look.notes(&home, &mut put);
+    drop(stage);
     if depth == Depth::Full {
-        let found = super::overlap::self_overlap(mesh, metres, places);
+        let found = super::overlap::self_overlap(mesh, metres, places, progress);
         out.file.extend(found.file);
         for (list, more) in out.bodies.iter_mut().zip(found.bodies) {
             list.extend(more);

@@ -53,6 +53,8 @@ pub(crate) struct Estimates {
     /// whose shadow is 3/8 of a lattice cell escapes eight lattices with that chance (the rule of
     /// three), and it is no longer than the box.
     pub(crate) unseen: f64,
+    /// How often rays passed through surfaces, over all replicates.
+    pub(crate) passages: u64,
 }
 
 impl Estimates {
@@ -75,9 +77,16 @@ pub(crate) fn integrate(
         .iter()
         .map(|view| 0.375 * view.step * view.step * view.depth)
         .fold(0.0, f64::max);
+    let mut passages = 0;
+    let replicates = draws.map(|view| {
+        let (moments, passed) = view.integrate(pieces, value);
+        passages += passed;
+        moments
+    });
     Estimates {
-        replicates: draws.map(|view| view.integrate(pieces, value)),
+        replicates,
         unseen,
+        passages,
     }
 }
 
@@ -112,6 +121,7 @@ struct View {
 }
 
 /// A ray's passage through a triangle.
+#[derive(Clone, Copy)]
 struct Hit {
     column: u32,
     x: f64,
@@ -179,7 +189,7 @@ impl View {
         mut self,
         pieces: &[Piece<'_>],
         value: &(impl Fn([i32; 2]) -> f64 + Sync),
-    ) -> Moments {
+    ) -> (Moments, u64) {
         let rows = (BAND / self.count[0]).max(1);
         let bands = self.count[1].div_ceil(rows);
         // Which triangles each band of rows meets, in order, and where everything begins.
@@ -216,18 +226,20 @@ impl View {
             }
         }
         self.before = least - 1.0 - least.abs();
-        let sums: Vec<Moments> = sorted
+        let sums: Vec<(Moments, u64)> = sorted
             .par_iter()
             .enumerate()
             .map(|(band, met)| self.band(band * rows, rows, met, pieces, value))
             .collect();
         let zero = Moments::zero(Vector3::zeros());
-        let total = sums.iter().fold(zero, |sum, next| sum.plus(next));
+        let total = sums.iter().fold(zero, |sum, next| sum.plus(&next.0));
+        let passages = sums.iter().map(|s| s.1).sum();
         let back = Placement {
             turn: self.turn.transpose(),
             at: self.middle,
         };
-        total.weighted(self.step * self.step).placed(&back)
+        let moments = total.weighted(self.step * self.step).placed(&back);
+        (moments, passages)
     }
 
     /// The sum over the lattice points of the rows from `row` on, without the factor of the step.
@@ -238,7 +250,7 @@ impl View {
         met: &[(u16, u32)],
         pieces: &[Piece<'_>],
         value: &(impl Fn([i32; 2]) -> f64 + Sync),
-    ) -> Moments {
+    ) -> (Moments, u64) {
         let end = self.count[1].min(row + rows);
         let mut hits: Vec<Hit> = Vec::new();
         for &(p, t) in met {
@@ -259,16 +271,18 @@ impl View {
                 }
             }
         }
-        hits.sort_unstable_by(|a, b| {
-            (a.column, a.group, a.change)
-                .cmp(&(b.column, b.group, b.change))
-                .then(a.x.total_cmp(&b.x))
-        });
-        // By column, then along it; the first sort made the order of ties the same every time.
-        hits.sort_by(|a, b| a.column.cmp(&b.column).then(a.x.total_cmp(&b.x)));
+        let passages = hits.len() as u64;
+        let (mut hits, starts) = by_column(hits, rows * self.count[0]);
         let mut sum = Moments::zero(Vector3::zeros());
-        for column in hits.chunk_by(|a, b| a.column == b.column) {
-            let c = column[0].column as usize;
+        for (c, range) in starts.windows(2).enumerate() {
+            let column = &mut hits[range[0]..range[1]];
+            if column.is_empty() {
+                continue;
+            }
+            // Ties are ordered too, so that the sum is the same every time.
+            column.sort_unstable_by(|a, b| {
+                (a.x.total_cmp(&b.x)).then((a.group, a.change).cmp(&(b.group, b.change)))
+            });
             let (y, z) = (
                 self.at(0, c % self.count[0]),
                 self.at(1, row + c / self.count[0]),
@@ -302,7 +316,7 @@ impl View {
                 z * z * zeroth,
             );
         }
-        sum
+        (sum, passages)
     }
 
     fn at(&self, axis: usize, i: usize) -> f64 {
@@ -348,6 +362,26 @@ impl View {
         let to = (place(high).ceil() + 2.0).max(0.0) as usize;
         from.max(ys.start)..to.min(ys.end)
     }
+}
+
+/// The hits of each column together, and where each column's begin: a counting sort, since a
+/// column holds few of them and there are many columns.
+fn by_column(hits: Vec<Hit>, columns: usize) -> (Vec<Hit>, Vec<usize>) {
+    let mut starts = vec![0usize; columns + 1];
+    for h in &hits {
+        starts[h.column as usize + 1] += 1;
+    }
+    for c in 0..columns {
+        starts[c + 1] += starts[c];
+    }
+    let mut next = starts.clone();
+    let mut out = hits.clone();
+    for h in hits {
+        let at = &mut next[h.column as usize];
+        out[*at] = h;
+        *at += 1;
+    }
+    (out, starts)
 }
 
 /// Where the line along x at (y, z), which passes through the triangle, pierces it.

@@ -12,10 +12,15 @@ use super::columns::{Lattice, Piece, REPLICATES, finer, integrate, mean, three_e
 use crate::geometry::{Corners, LooseFacets, Point, Select};
 use crate::mesh::{Body, Mesh, NestedRule, Part, Refusal, each};
 use crate::moments::{self, Moments};
+use crate::progress::Progress;
 
 /// Coarsest and finest lattices, in points along a side.
 const COARSEST: usize = 64;
 const FINEST: usize = 512;
+/// Passages of rays through surfaces that one lattice may ask for, which is seconds of work: some
+/// sixty a ray on the finest. Where thousands of solids share one place the lattice stays coarser,
+/// and the error figure says so.
+const MOST_PASSAGES: u64 = 1 << 27;
 
 /// Moments of a filled body, with how far off they may be (three standard errors, and what rays may
 /// have missed), in the facets' unit.
@@ -59,7 +64,13 @@ pub fn filled(facets: &[[Point; 3]], tolerance: f64) -> Filled {
 /// # Errors
 /// The first refusal of [`Mesh::solid`] with nested solids allowed: a body that is not closed has
 /// no winding number.
-pub fn filled_bodies(mesh: &Mesh, bodies: &[&Body], tolerance: f64) -> Result<Filled, Refusal> {
+pub fn filled_bodies(
+    mesh: &Mesh,
+    bodies: &[&Body],
+    tolerance: f64,
+    progress: Progress<'_>,
+) -> Result<Filled, Refusal> {
+    let _stage = progress.stage("counting each region once", 0);
     let mut raw: Option<Moments> = None;
     let mut bounds = [[f64::INFINITY; 3], [f64::NEG_INFINITY; 3]];
     for body in bodies {
@@ -98,6 +109,7 @@ pub(super) fn pieces_of<'a>(
 
 fn fill(pieces: &[Piece<'_>], raw: Moments, bounds: [Point; 2], tolerance: f64) -> Filled {
     let mut side = COARSEST;
+    let mut finest = FINEST;
     loop {
         let lattice = Lattice { bounds, side };
         let found = integrate(pieces, lattice, &|w| match w[0] {
@@ -107,7 +119,10 @@ fn fill(pieces: &[Piece<'_>], raw: Moments, bounds: [Point; 2], tolerance: f64) 
         });
         let moments = raw.plus(&mean(&found.replicates));
         let volume_error = found.volume_error();
-        if volume_error <= tolerance * moments.zeroth.abs() || side >= FINEST {
+        // Passages grow as the square of the side.
+        let room = (MOST_PASSAGES as f64 / found.passages.max(1) as f64).sqrt();
+        finest = finest.min((side as f64 * room.max(1.0)) as usize);
+        if volume_error <= tolerance * moments.zeroth.abs() || side >= finest {
             let all: [Moments; REPLICATES] = found.replicates.map(|m| raw.plus(&m));
             let centre = |m: &Moments| m.centre().unwrap_or(m.about);
             let middle = centre(&moments);
@@ -128,6 +143,6 @@ fn fill(pieces: &[Piece<'_>], raw: Moments, bounds: [Point; 2], tolerance: f64) 
                 second_error: second_error + found.unseen * reach * reach,
             };
         }
-        side = finer(side, volume_error, tolerance * moments.zeroth.abs(), FINEST);
+        side = finer(side, volume_error, tolerance * moments.zeroth.abs(), finest);
     }
 }

@@ -21,6 +21,7 @@ use crate::geometry::{
     BoxTree, Corners, Meeting, Point, Select, meeting, meeting_point, meeting_sharing, unfolded,
 };
 use crate::mesh::{Body, Mesh, NestedRule, Part, each, strictly_inside};
+use crate::progress::Progress;
 
 /// Pairs of bodies that get a finding of their own; the rest is counted in one more.
 const MOST_PAIRS: usize = 100;
@@ -60,14 +61,25 @@ pub fn cuts(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
 /// effect on the volume is what counting each region once would change, estimated (see
 /// [`filled_bodies`] and [`shared_spaces`](super::shared_spaces)), for closed bodies; with solids
 /// nested in the body it is not given, since their finding states it.
-pub fn self_overlap(mesh: &Mesh, metres: f64, places: usize) -> OverlapFindings {
+pub fn self_overlap(
+    mesh: &Mesh,
+    metres: f64,
+    places: usize,
+    progress: Progress<'_>,
+) -> OverlapFindings {
     let mut out = OverlapFindings {
         file: Vec::new(),
         bodies: vec![Vec::new(); mesh.bodies().len()],
     };
     let mut rest = (0u64, 0u64);
     let cubed = metres.powi(3);
-    for ((a, b), cuts) in cuts(mesh, places) {
+    let found = {
+        let _stage = progress.stage("seeking surfaces that cut each other", 0);
+        cuts(mesh, places)
+    };
+    let stage = progress.stage("measuring what counts twice", found.len());
+    for ((a, b), cuts) in found {
+        stage.advance(1);
         let (x, y) = (&mesh.bodies()[a], &mesh.bodies()[b]);
         if a == b {
             let once = once_counted(mesh, x);
@@ -113,7 +125,7 @@ pub fn self_overlap(mesh: &Mesh, metres: f64, places: usize) -> OverlapFindings 
 /// What counting once changes a body's volume by, the volume then, and its error (file unit³).
 fn once_counted(mesh: &Mesh, body: &Body) -> Option<(f64, f64, f64)> {
     let raw = mesh.solid(body, None).ok()?.moments.zeroth;
-    let once = filled_bodies(mesh, &[body], TOLERANCE).ok()?;
+    let once = filled_bodies(mesh, &[body], TOLERANCE, Progress::NONE).ok()?;
     let volume = once.moments.zeroth;
     Some((volume - raw, volume, once.volume_error))
 }
@@ -240,7 +252,7 @@ impl Homes {
 /// What one part of the work found.
 #[derive(Default)]
 struct Found {
-    by_bodies: BTreeMap<(u32, u32), Tally>,
+    by_bodies: HashMap<(u32, u32), Tally>,
     /// Triangles that meet others along edges of both.
     along: Vec<u32>,
     /// How long that list may grow before it is freed of repetitions.
@@ -309,7 +321,7 @@ fn search(
     if !along.is_empty() {
         parts.extend(along_edges(homes, facets, ids, &along, places));
     }
-    let mut out: BTreeMap<(usize, usize), Cuts> = BTreeMap::new();
+    let mut out: HashMap<(usize, usize), Cuts> = HashMap::new();
     for part in parts {
         for ((a, b), tally) in part.by_bodies {
             let cuts = out.entry((a as usize, b as usize)).or_default();
@@ -321,7 +333,7 @@ fn search(
         cuts.pairs.sort_unstable();
         cuts.pairs.truncate(places);
     }
-    out
+    out.into_iter().collect()
 }
 
 enum Judged {

@@ -17,6 +17,7 @@ use crate::geometry::{
 };
 use crate::mesh::{Body, Mesh, each};
 use crate::moments::{self, Moments};
+use crate::progress::Progress;
 
 /// Coarsest and finest lattices, in points along a side.
 const COARSEST: usize = 32;
@@ -46,6 +47,15 @@ pub struct SharedSpace {
 /// until its error is below `tolerance` times the smaller solid's volume, or the finest lattice is
 /// reached; the error says which. Solids in contact share nothing.
 pub fn shared_spaces(solids: &[&[[Point; 3]]], tolerance: f64) -> Vec<SharedSpace> {
+    shared_spaces_watched(solids, tolerance, Progress::NONE)
+}
+
+/// As [`shared_spaces`], and says how far it is.
+pub fn shared_spaces_watched(
+    solids: &[&[[Point; 3]]],
+    tolerance: f64,
+    progress: Progress<'_>,
+) -> Vec<SharedSpace> {
     let boxes: Vec<[Point; 2]> = solids.par_iter().map(|s| bounds(s)).collect();
     let pairs = pairs_of_boxes(&boxes);
     let mut wanted = vec![false; solids.len()];
@@ -57,9 +67,11 @@ pub fn shared_spaces(solids: &[&[[Point; 3]]], tolerance: f64) -> Vec<SharedSpac
         .into_par_iter()
         .map(|i| wanted[i].then(|| Solid::new(solids[i], boxes[i])))
         .collect();
+    let stage = progress.stage("seeking space that parts share", pairs.len());
     pairs
         .into_par_iter()
         .filter_map(|(a, b)| {
+            stage.advance(1);
             let (x, y) = (prepared[a].as_ref()?, prepared[b].as_ref()?);
             let (moments, volume_error) = x.shared_with(y, tolerance)?;
             Some(SharedSpace {
