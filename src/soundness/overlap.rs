@@ -12,7 +12,8 @@
 //! three corners are reported as duplicates, within a name; triangles without area never count.
 //! The signs are exact, and so are the counts.
 
-use std::collections::{BTreeMap, BinaryHeap, HashMap};
+use std::collections::{BTreeMap, BTreeSet, BinaryHeap, HashMap};
+use std::sync::{Mutex, PoisonError};
 
 use super::filled::filled_bodies;
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
@@ -25,6 +26,8 @@ use crate::progress::Progress;
 
 /// Pairs of bodies that get a finding of their own; the rest is counted in one more.
 const MOST_PAIRS: usize = 100;
+/// Up to this many bodies, all pairs are among those.
+const FEW_BODIES: usize = 14;
 /// Of those, how many have their shared volume estimated.
 const MOST_VOLUMES: usize = 20;
 /// The error that an estimated volume is refined to, as a part of the body's volume.
@@ -49,10 +52,39 @@ pub struct OverlapFindings {
 }
 
 /// Pairs of triangles that overlap, by the bodies they belong to (lower index first; twice the same
-/// for a body with itself). Each entry lists up to `places` pairs.
+/// for a body with itself). Each entry lists up to `places` pairs; where there are very many bodies,
+/// only the first hundred pairs of bodies, and bodies with themselves, list any.
 pub fn cuts(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
-    let homes = Homes::of(mesh);
-    each!(&mesh.soup.triangles, f => search(mesh, &homes, f, places))
+    let mut homes = Homes::of(mesh);
+    each!(&mesh.soup.triangles, f => {
+        if mesh.bodies().len() <= FEW_BODIES || places == 0 {
+            return search(mesh, &homes, f, places);
+        }
+        // Of very many pairs only the first are listed with their places: counts come first.
+        let mut found = search(mesh, &homes, f, 0);
+        let listed = |pairs: &BTreeMap<(usize, usize), Cuts>| -> Vec<(usize, usize)> {
+            let selves = pairs.keys().filter(|(a, b)| a == b);
+            let others = pairs.keys().filter(|(a, b)| a != b).take(MOST_PAIRS);
+            selves.chain(others).copied().collect()
+        };
+        let wanted = listed(&found);
+        let bodies: BTreeSet<usize> = wanted.iter().flat_map(|&(a, b)| [a, b]).collect();
+        homes.members = Some(triangles_of(mesh, bodies.iter().map(|&b| &mesh.bodies()[b])));
+        let mut places = search(mesh, &homes, f, places);
+        for key in wanted {
+            if let (Some(cuts), Some(first)) = (found.get_mut(&key), places.remove(&key)) {
+                cuts.pairs = first.pairs;
+            }
+        }
+        found
+    })
+}
+
+/// Triangles of bodies, ascending.
+fn triangles_of<'a>(mesh: &Mesh, bodies: impl Iterator<Item = &'a Body>) -> Vec<u32> {
+    let mut all: Vec<u32> = bodies.flat_map(|b| mesh.members(b)).collect();
+    all.sort_unstable();
+    all
 }
 
 /// Tests every body against itself and against the others of the file.
@@ -213,11 +245,7 @@ impl Homes {
         }
         let n = mesh.soup.triangles.count();
         let held: usize = shells.iter().map(|s| s.count).sum();
-        let members = (held != n).then(|| {
-            let mut all: Vec<u32> = mesh.bodies().iter().flat_map(|b| mesh.members(b)).collect();
-            all.sort_unstable();
-            all
-        });
+        let members = (held != n).then(|| triangles_of(mesh, mesh.bodies().iter()));
         let shell_of = (shells.len() > 1).then(|| {
             let mut shell_of = vec![0u32; n];
             for (i, shell) in shells.iter().enumerate() {
@@ -252,7 +280,6 @@ impl Homes {
 /// What one part of the work found.
 #[derive(Default)]
 struct Found {
-    by_bodies: HashMap<(u32, u32), Tally>,
     /// Triangles that meet others along edges of both.
     along: Vec<u32>,
     /// How long that list may grow before it is freed of repetitions.
@@ -286,10 +313,43 @@ impl Found {
             self.limit = 2 * self.along.len();
         }
     }
+}
 
-    fn put(&mut self, a: &Home, b: &Home, pair: (u32, u32), places: usize) {
+/// What was found, by the two bodies. Threads share it, since each of very many pairs of bodies
+/// would else be held once for every part of the work that met it. It does not depend on the order
+/// in which it is filled.
+struct Tallies {
+    shards: Vec<Mutex<HashMap<(u32, u32), Tally>>>,
+    places: usize,
+}
+
+impl Tallies {
+    fn new(places: usize) -> Self {
+        Self {
+            shards: (0..256).map(|_| Mutex::default()).collect(),
+            places,
+        }
+    }
+
+    fn put(&self, a: &Home, b: &Home, pair: (u32, u32)) {
         let key = (a.body.min(b.body), a.body.max(b.body));
-        self.by_bodies.entry(key).or_default().add(pair, places);
+        let shard = key.0.wrapping_mul(31).wrapping_add(key.1) as usize % self.shards.len();
+        let mut tallies = self.shards[shard]
+            .lock()
+            .unwrap_or_else(PoisonError::into_inner);
+        tallies.entry(key).or_default().add(pair, self.places);
+    }
+
+    fn into_cuts(self) -> BTreeMap<(usize, usize), Cuts> {
+        let cuts = |tally: Tally| Cuts {
+            count: tally.count,
+            pairs: tally.first.into_sorted_vec(),
+        };
+        self.shards
+            .into_iter()
+            .flat_map(|shard| shard.into_inner().unwrap_or_else(PoisonError::into_inner))
+            .map(|((a, b), tally)| ((a as usize, b as usize), cuts(tally)))
+            .collect()
     }
 }
 
@@ -304,36 +364,22 @@ fn search(
     }
     let ids = &mesh.found().corners;
     let tree = BoxTree::new(facets, homes.select());
-    let mut parts = tree.pairs_within(facets, |found: &mut Found, t, u, p, q| {
+    let tallies = Tallies::new(places);
+    let parts = tree.pairs_within(facets, |found: &mut Found, t, u, p, q| {
         let (a, b) = (homes.home(t), homes.home(u));
         match judged(ids, t, u, p, q, a, b) {
             Judged::Free => {}
-            Judged::Overlap => found.put(a, b, (t, u), places),
+            Judged::Overlap => tallies.put(a, b, (t, u)),
             Judged::AlongEdges => found.note_along(t, u),
         }
     });
-    let mut along: Vec<u32> = parts
-        .iter_mut()
-        .flat_map(|p| std::mem::take(&mut p.along))
-        .collect();
+    let mut along: Vec<u32> = parts.into_iter().flat_map(|p: Found| p.along).collect();
     along.sort_unstable();
     along.dedup();
     if !along.is_empty() {
-        parts.extend(along_edges(homes, facets, ids, &along, places));
+        along_edges(homes, facets, ids, &along, &tallies);
     }
-    let mut out: HashMap<(usize, usize), Cuts> = HashMap::new();
-    for part in parts {
-        for ((a, b), tally) in part.by_bodies {
-            let cuts = out.entry((a as usize, b as usize)).or_default();
-            cuts.count += tally.count;
-            cuts.pairs.extend(tally.first);
-        }
-    }
-    for cuts in out.values_mut() {
-        cuts.pairs.sort_unstable();
-        cuts.pairs.truncate(places);
-    }
-    out.into_iter().collect()
+    tallies.into_cuts()
 }
 
 enum Judged {
@@ -416,8 +462,8 @@ fn along_edges(
     facets: &impl Corners,
     ids: &[[u32; 3]],
     along: &[u32],
-    places: usize,
-) -> Vec<Found> {
+    tallies: &Tallies,
+) {
     // By edge: the triangles that pass it, and whether they do so from low to high.
     let mut at_edge: HashMap<(u32, u32), Vec<(u32, bool)>> = HashMap::new();
     for &t in along {
@@ -468,7 +514,7 @@ fn along_edges(
         strictly_inside(&low, &high, &far(from), &far(to), apex)
     };
     let tree = BoxTree::new(facets, Select::List(along));
-    tree.pairs_within(facets, |found: &mut Found, t, u, p, q| {
+    tree.pairs_within(facets, |_: &mut (), t, u, p, q| {
         let (a, b) = (homes.home(t), homes.home(u));
         if !matches!(judged(ids, t, u, p, q, a, b), Judged::AlongEdges) {
             return;
@@ -478,9 +524,9 @@ fn along_edges(
         };
         let hollow = wrong_side(a, b) > 0;
         if enters(&p[(e + 2) % 3], u, f, hollow) || enters(&q[(f + 2) % 3], t, e, hollow) {
-            found.put(a, b, (t, u), places);
+            tallies.put(a, b, (t, u));
         }
-    })
+    });
 }
 
 #[cfg(test)]
