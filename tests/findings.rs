@@ -282,6 +282,58 @@ fn a_cracked_part_is_joined_as_its_refusal_says() {
     assert_eq!((exit, &json["error"]["line"]), (2, &7.into()), "{json}");
 }
 
+#[test]
+fn a_box_written_twice_with_other_diagonals_is_in_doubt_when_weighed() {
+    let corner = |i: usize| [i & 1, i >> 1 & 1, i >> 2 & 1];
+    // Each side as its four corners in order, outward.
+    let sides = [
+        [0, 2, 3, 1],
+        [4, 5, 7, 6],
+        [0, 1, 5, 4],
+        [2, 6, 7, 3],
+        [0, 4, 6, 2],
+        [1, 3, 7, 5],
+    ];
+    let text = |starts: &[usize]| {
+        let mut text = "o peg\n".to_owned();
+        for i in 0..8 {
+            let [x, y, z] = corner(i);
+            text += &format!("v {x} {y} {z}\n");
+        }
+        for side in starts
+            .iter()
+            .flat_map(|&s| sides.map(|q| [0, 1, 2, 3].map(|k| q[(k + s) % 4] + 1)))
+        {
+            let [a, b, c, d] = side;
+            text += &format!("f {a} {b} {c}\nf {a} {c} {d}\n");
+        }
+        text
+    };
+    let folder = tempfile::tempdir().unwrap();
+    let weigh = |text: String| {
+        let file = folder.path().join("peg.obj");
+        std::fs::write(&file, text).unwrap();
+        let out = std::process::Command::new(env!("CARGO_BIN_EXE_bismar"))
+            .args(["weigh", "--json", "--unit", "m"])
+            .arg(file)
+            .output()
+            .unwrap();
+        let json: serde_json::Value = serde_json::from_slice(&out.stdout).unwrap();
+        let body = &json["files"][0]["bodies"][0];
+        let findings = body["findings"].as_array().unwrap();
+        findings
+            .iter()
+            .find(|f| f["kind"] == "self-overlap")
+            .map(|f| (f["severity"].clone(), f["count"].as_u64().unwrap()))
+    };
+    assert_eq!(weigh(text(&[0])), None);
+    // On each side either facet of one meets both of the other, at two of the side's edges.
+    let found = weigh(text(&[0, 1]));
+    assert_eq!(found, Some(("doubts".into(), 24)));
+    // Exact repeats are dropped, and said as such.
+    assert_eq!(weigh(text(&[0, 0])), None);
+}
+
 /// What metamorphic tests do to a mesh.
 fn moved(facets: &[Facet], axis: [f64; 3], angle: f64, by: [f64; 3]) -> Vec<Facet> {
     let axis = nalgebra::Unit::new_normalize(nalgebra::Vector3::from(axis));

@@ -87,6 +87,9 @@ pub fn audit_watched(
         look.shells_of(body, &mut |f| put(Some(b), f));
     }
     look.busy_edges(&home, &mut put);
+    if depth != Depth::Full {
+        look.written_twice(&home, &mut put);
+    }
     look.degenerate(&home, &mut put);
     look.duplicates(&home, &mut put);
     look.warped(&home, &mut put);
@@ -95,7 +98,7 @@ pub fn audit_watched(
     look.notes(&home, &mut put);
     drop(stage);
     if depth == Depth::Full {
-        let found = super::overlap::self_overlap(mesh, metres, places, progress);
+        let found = super::overlap::self_overlap_watched(mesh, metres, places, progress);
         out.file.extend(found.file);
         for (list, more) in out.bodies.iter_mut().zip(found.bodies) {
             list.extend(more);

@@ -1,10 +1,10 @@
 //! Findings of single facets and edges: busy edges, facets without area, doubled or warped ones.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use super::audit::{Home, Look};
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
-use crate::geometry::Corners;
+use crate::geometry::{Corners, Meeting, Point, meeting_point, meeting_sharing};
 use crate::mesh::each;
 
 /// Triangles that one place lists: enough to find it by, little where thousands meet.
@@ -65,6 +65,70 @@ impl Look<'_> {
                 ),
             );
         }
+    }
+
+    /// Facets that cover each other and face the same way at an edge of more than two: a surface that
+    /// is written twice, though not with the same facets. The search for surfaces that cut each
+    /// other finds these too; here only the facets at such edges are looked at, which sound meshes
+    /// hardly have, and so weighing sees them as well. The signs are exact.
+    pub(super) fn written_twice(&self, home: &Home, put: &mut dyn FnMut(Option<usize>, Finding)) {
+        let found = self.mesh.found();
+        let mut pairs: BTreeSet<(u32, u32)> = BTreeSet::new();
+        let edges = found
+            .odd
+            .chunk_by(|a, b| (a.low, a.high) == (b.low, b.high));
+        for edge in edges {
+            let uses: Vec<_> = edge
+                .iter()
+                .filter(|h| !found.is_set_aside(h.triangle))
+                .take(MOST_TRIANGLES)
+                .collect();
+            for (i, a) in uses.iter().enumerate() {
+                for b in &uses[i + 1..] {
+                    let (t, u) = (a.triangle.min(b.triangle), a.triangle.max(b.triangle));
+                    let one_name = found.name_of(t) == found.name_of(u);
+                    if one_name && a.forward == b.forward && self.cover(t, u) {
+                        pairs.insert((t, u));
+                    }
+                }
+            }
+        }
+        let mut by_body: BTreeMap<Option<usize>, (u64, Vec<Place>)> = BTreeMap::new();
+        for (t, u) in pairs {
+            let of = by_body.entry(home.of(t)).or_default();
+            of.0 += 1;
+            if of.1.len() < self.places {
+                let (p, q) = self.corners_of(t, u);
+                let at = meeting_point(&p, &q).map(|x| x * self.metres);
+                of.1.push(self.place(at, vec![t, u]));
+            }
+        }
+        for (body, (count, places)) in by_body {
+            put(
+                body,
+                self.finding(
+                    FindingKind::SelfOverlap,
+                    Severity::Doubts,
+                    count,
+                    places,
+                    None,
+                    "facets that face the same way cover each other: a surface is written twice, and what it encloses counts twice; export it once",
+                ),
+            );
+        }
+    }
+
+    fn corners_of(&self, t: u32, u: u32) -> ([Point; 3], [Point; 3]) {
+        each!(&self.mesh.soup.triangles, f => (f.triangle(t as usize), f.triangle(u as usize)))
+    }
+
+    /// Whether two facets of a common edge share an area of one plane and face the same way.
+    fn cover(&self, t: u32, u: u32) -> bool {
+        let found = self.mesh.found();
+        let (c, d) = (&found.corners[t as usize], &found.corners[u as usize]);
+        let (p, q) = self.corners_of(t, u);
+        let (c, d) = (c.map(|v| d.contains(&v)), d.map(|v| c.contains(&v)));
+        meeting_sharing(&p, &q, c, d) == Meeting::Coplanar { opposed: false }
     }
 
     /// Triangles without area.

@@ -52,9 +52,15 @@ pub struct OverlapFindings {
 }
 
 /// Pairs of triangles that overlap, by the bodies they belong to (lower index first; twice the same
-/// for a body with itself). Each entry lists up to `places` pairs; where there are very many bodies,
-/// only the first hundred pairs of bodies, and bodies with themselves, list any.
+/// for a body with itself). Each entry lists up to `places` pairs.
 pub fn cuts(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
+    let homes = Homes::of(mesh);
+    each!(&mesh.soup.triangles, f => search(mesh, &homes, f, places))
+}
+
+/// As [`cuts`]; where there are very many bodies, only the first hundred pairs of them, and bodies
+/// with themselves, list any places.
+fn cuts_listed(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
     let mut homes = Homes::of(mesh);
     each!(&mesh.soup.triangles, f => {
         if mesh.bodies().len() <= FEW_BODIES || places == 0 {
@@ -93,7 +99,12 @@ fn triangles_of<'a>(mesh: &Mesh, bodies: impl Iterator<Item = &'a Body>) -> Vec<
 /// effect on the volume is what counting each region once would change, estimated (see
 /// [`filled_bodies`] and [`shared_spaces`](super::shared_spaces)), for closed bodies; with solids
 /// nested in the body it is not given, since their finding states it.
-pub fn self_overlap(
+pub fn self_overlap(mesh: &Mesh, metres: f64, places: usize) -> OverlapFindings {
+    self_overlap_watched(mesh, metres, places, Progress::NONE)
+}
+
+/// As [`self_overlap`], and says how far it is.
+pub(super) fn self_overlap_watched(
     mesh: &Mesh,
     metres: f64,
     places: usize,
@@ -107,7 +118,7 @@ pub fn self_overlap(
     let cubed = metres.powi(3);
     let found = {
         let _stage = progress.stage("seeking surfaces that cut each other", 0);
-        cuts(mesh, places)
+        cuts_listed(mesh, places)
     };
     let stage = progress.stage("measuring what counts twice", found.len());
     for ((a, b), cuts) in found {
