@@ -101,18 +101,18 @@ fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFil
     }
 }
 
-type Checked = (CheckedFile, Vec<Warning>, InputFact);
+type Checked = (CheckedFile, Vec<Warning>, Vec<InputFact>);
 
 fn check_file(input: &Input, args: &CheckArgs) -> (Option<InputFact>, Result<Checked>) {
     let (bytes, fact) = match open(input, args.meshes.hash) {
         Ok(opened) => opened,
         Err(e) => return (None, Err(e)),
     };
-    let result = read(bytes, input, &args.meshes).and_then(|m| answer(&m, input, args, &fact));
+    let result = read(bytes, input, &args.meshes).and_then(|m| answer(&m, input, args));
     (Some(fact), result)
 }
 
-fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Result<Checked> {
+fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs) -> Result<Checked> {
     let metres = m.unit.metres();
     let mut audit = soundness::audit(&m.mesh, metres, args.places, args.overlap());
     audit.file.extend(soundness::unit_suspect(
@@ -169,7 +169,7 @@ fn answer(m: &ReadMesh, input: &Input, args: &CheckArgs, fact: &InputFact) -> Re
         report::picture::draw(out, &m.mesh, &file)?;
         file.picture = Some(out.to_string_lossy().into_owned());
     }
-    Ok((file, warnings, fact.clone()))
+    Ok((file, warnings, m.beside.clone()))
 }
 
 fn checked(mesh: &Mesh, body: &Body, findings: Vec<Finding>, metres: f64) -> CheckedBody {

@@ -93,7 +93,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             Err(e) => return (None, Err(e)),
         };
         let result = read(bytes, input, &args.meshes)
-            .and_then(|m| answer(&m, input, args, substance.as_ref(), &fact));
+            .and_then(|m| answer(&m, input, args, substance.as_ref()));
         (Some(fact), result)
     });
     let mut files = Vec::new();
@@ -191,8 +191,7 @@ fn answer(
     input: &Input,
     args: &WeighArgs,
     substance: Option<&Substance>,
-    fact: &InputFact,
-) -> Result<(WeighedFile, Vec<Warning>, InputFact)> {
+) -> Result<(WeighedFile, Vec<Warning>, Vec<InputFact>)> {
     let metres = m.unit.metres();
     let about = about_point(args.about.as_deref(), m.unit)?;
     let rule = if args.filled {
@@ -277,7 +276,7 @@ fn answer(
         proved: None,
         turned: None,
     };
-    Ok((file, m.warnings.clone(), fact.clone()))
+    Ok((file, m.warnings.clone(), m.beside.clone()))
 }
 
 /// What a body came to, in the file's unit.
