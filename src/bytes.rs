@@ -87,3 +87,20 @@ impl Bytes {
         Ok(Self::Owned(all))
     }
 }
+
+/// The most bytes that one input may take in memory beyond itself: half of what the system says is
+/// free, and half of what the process is held to; 2 GiB where neither is said.
+pub fn memory_budget() -> u64 {
+    let text = |path: &str| std::fs::read_to_string(path).ok();
+    let free = text("/proc/meminfo").and_then(|all| {
+        let line = all.lines().find(|l| l.starts_with("MemAvailable:"))?;
+        let kib: u64 = line.split_ascii_whitespace().nth(1)?.parse().ok()?;
+        kib.checked_mul(1024)
+    });
+    let held = text("/sys/fs/cgroup/memory.max").and_then(|t| t.trim().parse::<u64>().ok());
+    match (free, held) {
+        (Some(a), Some(b)) => a.min(b) / 2,
+        (Some(a), None) | (None, Some(a)) => a / 2,
+        (None, None) => 2 << 30,
+    }
+}

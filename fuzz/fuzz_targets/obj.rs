@@ -15,7 +15,7 @@ fuzz_target!(|data: &[u8]| {
     assert!(vertices.iter().flatten().all(|x| x.is_finite()));
     assert_eq!(soup.runs.iter().map(|r| r.count).sum::<usize>(), corners.len());
     for w in &soup.warped {
-        assert!(w.first + w.count <= corners.len() && w.line > 0);
+        assert!(w.first + w.count <= corners.len() && w.line.is_some_and(|l| l > 0));
         assert!(w.volume_low <= 0.0 && w.volume_high >= 0.0 && w.deviation.is_finite());
     }
 });

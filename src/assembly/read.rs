@@ -208,10 +208,8 @@ impl Context<'_, '_> {
         r.finish();
         let mesh = mesh?;
         let default = || {
-            mesh.body.clone().unwrap_or_else(|| {
-                let stem = Path::new(&mesh.typed).file_stem().unwrap_or_default();
-                stem.to_string_lossy().into_owned()
-            })
+            let stem = || crate::format::stem(Path::new(&mesh.typed));
+            mesh.body.clone().unwrap_or_else(stem)
         };
         Some(Part {
             line,

@@ -162,6 +162,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
     notes::table_tolerances(&mut out);
     for path in &work.choice.order {
         out.inputs.extend(meshes.input(path));
+        out.inputs.extend(meshes.beside(path));
     }
     Ok(out)
 }

@@ -76,4 +76,9 @@ pub trait MeshFiles {
 
     /// Length and hash of a file that was read.
     fn input(&mut self, path: &Path) -> Option<Input>;
+
+    /// Length and hash of the files beside it that were read for it, such as buffers.
+    fn beside(&mut self, _path: &Path) -> Vec<Input> {
+        Vec::new()
+    }
 }

@@ -106,7 +106,7 @@ fn unread(path: &std::path::Path, error: &Error, args: &CheckArgs) -> CheckedFil
     }
 }
 
-type Checked = (CheckedFile, Vec<Warning>, InputFact);
+type Checked = (CheckedFile, Vec<Warning>, Vec<InputFact>);
 
 fn check_file(
     input: &Input,
@@ -118,7 +118,7 @@ fn check_file(
         Err(e) => return (None, Err(e)),
     };
     let result = read(bytes, input, &args.meshes, progress)
-        .and_then(|m| answer(&m, input, args, &fact, progress));
+        .and_then(|m| answer(&m, input, args, progress));
     (Some(fact), result)
 }
 
@@ -126,7 +126,6 @@ fn answer(
     m: &ReadMesh,
     input: &Input,
     args: &CheckArgs,
-    fact: &InputFact,
     progress: Progress<'_>,
 ) -> Result<Checked> {
     let metres = m.unit.metres();
@@ -186,7 +185,7 @@ fn answer(
         report::picture::draw(out, &m.mesh, &file)?;
         file.picture = Some(out.to_string_lossy().into_owned());
     }
-    Ok((file, warnings, fact.clone()))
+    Ok((file, warnings, m.beside.clone()))
 }
 
 fn checked(mesh: &Mesh, body: &Body, findings: Vec<Finding>, metres: f64) -> CheckedBody {

@@ -6,19 +6,21 @@ use clap::Args;
 
 use super::inputs::{Input, MeshArgs, ReadMesh};
 use crate::error::{Error, Kind, Result, Warning};
-use crate::format::Family;
+use crate::format::threemf::write_3mf;
 use crate::format::write::{family_of, narrowed, write_obj, write_stl};
+use crate::format::{self, Family};
 use crate::mesh::{Mesh, Soup};
+use crate::quantity::LengthUnit;
 use crate::report::copy::{Copied, StepDone};
 use crate::soundness::mend;
 
 /// Options that write files.
 #[derive(Args, Clone, Debug)]
 pub(super) struct CopyArgs {
-    /// Write a mended copy (.stl or .obj): only what is provably harmless is done, and listed
+    /// Write a mended copy (.stl, .obj or .3mf): only what is provably harmless is done, and listed
     #[arg(long, value_name = "OUT")]
     pub(super) mend: Option<PathBuf>,
-    /// Write a plain copy (.stl or .obj)
+    /// Write a plain copy (.stl, .obj or .3mf)
     #[arg(long, value_name = "OUT")]
     pub(super) write: Option<PathBuf>,
     /// Draw the mesh from three sides with its findings marked and numbered (.svg)
@@ -90,7 +92,7 @@ impl CopyArgs {
 /// # Errors
 /// `too-large`, `cannot-write`.
 pub(super) fn mended(m: &ReadMesh, input: &Input, out: &Path) -> Result<(Copied, Vec<Warning>)> {
-    let stem = stem(input);
+    let stem = format::stem(&input.path);
     match mend::mend(&m.mesh, &stem)? {
         Err(refused) => Ok((unwritten(out, refused)?, Vec::new())),
         Ok(mended) => {
@@ -99,7 +101,7 @@ pub(super) fn mended(m: &ReadMesh, input: &Input, out: &Path) -> Result<(Copied,
                 .iter()
                 .map(|s| StepDone::of(s, m.unit.metres()))
                 .collect();
-            let (copy, warnings) = save(&mended.soup, out, m.unit.metres(), &stem, true)?;
+            let (copy, warnings) = save(&mended.soup, out, m.unit, &stem, true)?;
             Ok((Copied { steps, ..copy }, warnings))
         }
     }
@@ -115,21 +117,13 @@ pub(super) fn written(
     out: &Path,
     sound: bool,
 ) -> Result<(Copied, Vec<Warning>)> {
-    save(&m.mesh.soup, out, m.unit.metres(), &stem(input), sound)
-}
-
-fn stem(input: &Input) -> String {
-    input
-        .path
-        .file_stem()
-        .map_or("body".into(), |s| s.to_string_lossy())
-        .into_owned()
+    save(&m.mesh.soup, out, m.unit, &format::stem(&input.path), sound)
 }
 
 fn unwritten(out: &Path, refused: Vec<String>) -> Result<Copied> {
     Ok(Copied {
         path: out.to_string_lossy().into_owned(),
-        format: name(family_of(out)?),
+        format: family_of(out)?.name(),
         written: false,
         triangles: None,
         largest_move_m: 0.0,
@@ -139,30 +133,41 @@ fn unwritten(out: &Path, refused: Vec<String>) -> Result<Copied> {
     })
 }
 
-fn name(family: Family) -> &'static str {
-    match family {
-        Family::Stl => "stl",
-        Family::Obj => "obj",
-    }
-}
-
 fn save(
     soup: &Soup,
     out: &Path,
-    metres: f64,
+    unit: LengthUnit,
     stem: &str,
     sound: bool,
 ) -> Result<(Copied, Vec<Warning>)> {
     let family = family_of(out)?;
+    let metres = unit.metres();
     let mut copy = Copied {
         written: true,
         triangles: Some(soup.triangles.count() as u64),
         ..unwritten(out, Vec::new())?
     };
     let mut warnings = Vec::new();
+    if family != Family::ThreeMf && unit != LengthUnit::Mm {
+        warnings.push(Warning {
+            kind: "unit-dropped".to_owned(),
+            message: format!(
+                "{} has no place for the unit: the numbers of the copy are in {unit}",
+                family.title()
+            ),
+            path: Some(copy.path.clone()),
+            line: None,
+            advice: format!("read it with --unit {unit}, or write 3MF to keep the unit"),
+        });
+    }
     match family {
+        Family::ThreeMf => {
+            let done = write_3mf(out, soup, unit, sound)?;
+            copy.triangles = Some(done.triangles);
+            copy.facets_collapsed = done.left_out;
+        }
         Family::Obj => write_obj(out, soup)?,
-        Family::Stl => {
+        _ => {
             let narrow = narrowed(soup).map_err(|e| e.in_file(out))?;
             copy.largest_move_m = narrow.largest_move * metres;
             copy.facets_collapsed = narrow.collapsed as u64;

@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use clap::Args;
 use sha2::{Digest, Sha256};
 
+use super::beside::{Beside, Neighbour};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Family};
 use crate::mesh::{Body, Joined, Mesh, ReaderNote};
@@ -22,7 +23,7 @@ pub(super) struct MeshArgs {
     /// Length unit of the meshes: mm, cm, m, in, ft [default: the file's own, else mm, and said]
     #[arg(long, value_name = "UNIT", value_parser = parse_unit)]
     pub(super) unit: Option<LengthUnit>,
-    /// Format, where the bytes do not tell: stl or obj
+    /// Format, where the bytes do not tell: stl, obj, 3mf, ply, off, gltf
     #[arg(long, value_name = "FORMAT", value_parser = parse_family)]
     pub(super) format: Option<Family>,
     /// Look into sub-folders too
@@ -88,6 +89,8 @@ pub(super) struct ReadMesh {
     pub(super) unit_assumed: bool,
     /// What the reader passed over, and the assumed unit.
     pub(super) warnings: Vec<Warning>,
+    /// Files beside it that were read for it.
+    pub(super) beside: Vec<InputFact>,
 }
 
 /// The inputs that the arguments name, folders opened and sorted. An input that cannot be is an
@@ -99,9 +102,9 @@ pub(super) fn expand(args: &MeshArgs) -> Vec<(PathBuf, Result<Input>)> {
             match meshes_in(name, args.deep) {
                 Ok(files) if files.is_empty() => {
                     let advice = if args.deep {
-                        "name a folder that holds .stl or .obj files"
+                        "name a folder that holds .stl, .obj, .3mf, .ply, .off, .gltf or .glb files"
                     } else {
-                        "name a folder that holds .stl or .obj files, or add --deep for its sub-folders"
+                        "name a folder that holds .stl, .obj, .3mf, .ply, .off, .gltf or .glb files, or add --deep for its sub-folders"
                     };
                     let e = Error::new(Kind::Empty, "no mesh file in this folder", advice);
                     out.push((name.clone(), Err(e.in_file(name))));
@@ -207,14 +210,13 @@ pub(super) fn read(
     progress: Progress<'_>,
 ) -> Result<ReadMesh> {
     let _stage = progress.stage(format!("reading {}", input.path.display()), 0);
+    let bytes = format::unpack(bytes, &input.path)?;
     let kind = format::detect(&bytes, &input.path, args.format)?;
-    let soup = format::read(bytes, &input.path, args.format)?;
+    let beside = Beside::of(&input.path, args.hash);
+    let mut soup = format::read_as(bytes, &input.path, kind, &|name| beside.open(name))?;
     let (unit, unit_assumed, mut warnings) = said(soup.unit, &soup.notes, input, args);
-    let stem = input
-        .path
-        .file_stem()
-        .map_or("body".into(), |s| s.to_string_lossy());
-    let stem = if stem == "-" { "body".into() } else { stem };
+    soup.unit = soup.unit.map(|_| unit);
+    let stem = format::stem(&input.path);
     let mut mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(&input.path))?;
     if let Some(text) = &args.join {
         let distance = join_distance(text, unit)? / unit.metres();
@@ -229,7 +231,13 @@ pub(super) fn read(
         unit,
         unit_assumed,
         warnings,
+        beside: beside.read().into_iter().map(fact_of).collect(),
     })
+}
+
+/// What is told of a file that was read for another.
+pub(super) fn fact_of(beside: Neighbour) -> InputFact {
+    InputFact::new(&beside.path, Some(beside.bytes), beside.sha256)
 }
 
 /// The distance of `--join`, m.
@@ -294,16 +302,18 @@ pub(super) fn said(
     args: &MeshArgs,
 ) -> (LengthUnit, bool, Vec<Warning>) {
     let shown = input.path.to_string_lossy().into_owned();
-    let mut warnings: Vec<Warning> = notes
-        .iter()
-        .map(|n| Warning {
-            kind: n.kind.to_owned(),
-            message: n.message.clone(),
+    let mut warnings = super::meshes::said_by_reader(notes, &input.path);
+    if let (Some(own), Some(stated)) = (own, args.unit)
+        && own != stated
+    {
+        warnings.push(Warning {
+            kind: "unit-overridden".to_owned(),
+            message: format!("the file states lengths in {own}; --unit {stated} is taken instead"),
             path: Some(shown.clone()),
-            line: n.line,
-            advice: n.advice.to_owned(),
-        })
-        .collect();
+            line: None,
+            advice: "leave out --unit to believe the file".to_owned(),
+        });
+    }
     let stated = args.unit.or(own);
     if stated.is_none() {
         warnings.push(Warning {

@@ -6,11 +6,12 @@ use std::sync::Arc;
 
 use nalgebra::Matrix3;
 
+use super::beside::Beside;
 use super::inputs::{closing_distance, digest, joined_said};
 use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
 use crate::error::{Error, Result, Warning};
 use crate::format::{self, Bytes};
-use crate::mesh::{Body, Mesh};
+use crate::mesh::{Body, Mesh, ReaderNote};
 use crate::progress::Progress;
 use crate::quantity::LengthUnit;
 use crate::report::kind_word;
@@ -27,6 +28,8 @@ pub(super) struct Files<'a> {
     inputs: BTreeMap<PathBuf, Input>,
     /// Is told which mesh is read.
     progress: Progress<'a>,
+    /// What was read beside them.
+    beside: BTreeMap<PathBuf, Vec<Input>>,
     /// What throws doubt on the meshes that were read, and what was joined.
     pub(super) warnings: Vec<Warning>,
 }
@@ -89,13 +92,22 @@ impl MeshFiles for Files<'_> {
                 sha256: Some(digest(&bytes)),
             },
         );
-        let soup = format::read(bytes, path, None)?;
+        let bytes = format::unpack(bytes, path)?;
+        let kind = format::detect(&bytes, path, None)?;
+        let beside = Beside::of(path, true);
+        let soup = format::read_as(bytes, path, kind, &|name| beside.open(name))?;
+        let of = |b: super::beside::Neighbour| Input {
+            path: b.path.to_string_lossy().into_owned(),
+            bytes: b.bytes,
+            sha256: b.sha256,
+        };
+        let beside = beside.read().into_iter().map(of).collect();
+        self.beside.insert(path.to_path_buf(), beside);
+        self.warnings.extend(said_by_reader(&soup.notes, path));
         // Formats that state their unit are believed before the assembly's word for all.
         let unit = soup.unit.unwrap_or(unit);
         let metres = unit.metres();
-        let stem = path
-            .file_stem()
-            .map_or("body".into(), |s| s.to_string_lossy());
+        let stem = format::stem(path);
         let mut mesh = Mesh::new(soup, &stem).map_err(|e| e.in_file(path))?;
         if let Some(distance) = join {
             mesh = mesh
@@ -128,6 +140,22 @@ impl MeshFiles for Files<'_> {
     fn input(&mut self, path: &Path) -> Option<Input> {
         self.inputs.get(path).cloned()
     }
+
+    fn beside(&mut self, path: &Path) -> Vec<Input> {
+        self.beside.get(path).cloned().unwrap_or_default()
+    }
+}
+
+/// What the reader passed over, as warnings.
+pub(super) fn said_by_reader(notes: &[ReaderNote], path: &Path) -> Vec<Warning> {
+    let said = |n: &ReaderNote| Warning {
+        kind: n.kind.to_owned(),
+        message: n.message.clone(),
+        path: Some(path.to_string_lossy().into_owned()),
+        line: n.line,
+        advice: n.advice.to_owned(),
+    };
+    notes.iter().map(said).collect()
 }
 
 /// What was dropped, turned or is in doubt, as warnings: an assembly must not swallow it.

@@ -1,6 +1,7 @@
 //! One file a command: arguments in, a library call, a report out. No geometry here.
 
 mod balance;
+mod beside;
 mod check;
 mod copy;
 mod inputs;
@@ -248,15 +249,16 @@ struct Gathered<T> {
 /// threads, so that memory stays a multiple of one file's size.
 const SMALL: u64 = 8 << 20;
 
-/// Asks `answer` about every input. Small files go side by side.
+/// Asks `answer` about every input: what it is, and the answer with its warnings and with what else
+/// was read for it. Small files go side by side.
 fn gather<T: Send>(
     inputs: Vec<(PathBuf, Result<Input>)>,
-    answer: impl Fn(&Input) -> (Option<InputFact>, Result<(T, Vec<Warning>, InputFact)>) + Sync,
+    answer: impl Fn(&Input) -> (Option<InputFact>, Result<(T, Vec<Warning>, Vec<InputFact>)>) + Sync,
 ) -> Gathered<T> {
     type Told<T> = (
         PathBuf,
         Option<InputFact>,
-        Result<(T, Vec<Warning>, InputFact)>,
+        Result<(T, Vec<Warning>, Vec<InputFact>)>,
     );
     let ask = |(path, input): (PathBuf, Result<Input>)| -> Told<T> {
         match input {
@@ -287,7 +289,8 @@ fn gather<T: Send>(
     for (path, fact, result) in told {
         out.facts
             .push(fact.unwrap_or_else(|| InputFact::new(&path, None, None)));
-        let result = result.map(|(file, warnings, _)| {
+        let result = result.map(|(file, warnings, beside)| {
+            out.facts.extend(beside);
             out.warnings.extend(warnings);
             file
         });

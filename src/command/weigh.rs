@@ -97,7 +97,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             Err(e) => return (None, Err(e)),
         };
         let result = read(bytes, input, &args.meshes, progress)
-            .and_then(|m| answer(&m, input, args, substance.as_ref(), &fact, progress));
+            .and_then(|m| answer(&m, input, args, substance.as_ref(), progress));
         (Some(fact), result)
     });
     drop(terminal);
@@ -196,9 +196,8 @@ fn answer(
     input: &Input,
     args: &WeighArgs,
     substance: Option<&Substance>,
-    fact: &InputFact,
     progress: Progress<'_>,
-) -> Result<(WeighedFile, Vec<Warning>, InputFact)> {
+) -> Result<(WeighedFile, Vec<Warning>, Vec<InputFact>)> {
     let metres = m.unit.metres();
     let about = about_point(args.about.as_deref(), m.unit)?;
     let rule = if args.filled {
@@ -286,7 +285,7 @@ fn answer(
         proved: None,
         turned: None,
     };
-    Ok((file, m.warnings.clone(), fact.clone()))
+    Ok((file, m.warnings.clone(), m.beside.clone()))
 }
 
 /// What a body came to, in the file's unit.

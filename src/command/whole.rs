@@ -6,7 +6,8 @@ use std::path::PathBuf;
 
 use sha2::{Digest, Sha256};
 
-use super::inputs::{Input, MeshArgs, digest, said};
+use super::beside::Beside;
+use super::inputs::{self, Input, MeshArgs, digest, said};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::format::{self, Bytes, Format, HEAD};
 use crate::masses::{Figures, Substance};
@@ -43,6 +44,9 @@ struct Told {
     format: Format,
     unit: Option<LengthUnit>,
     notes: Vec<ReaderNote>,
+    beside: Vec<InputFact>,
+    /// What was read whole, where it could be thought to stream.
+    not_streamed: Option<&'static str>,
 }
 
 /// The answer about one input.
@@ -54,7 +58,7 @@ pub(super) fn answer(
     about: impl Fn(LengthUnit) -> Result<Option<[f64; 3]>>,
 ) -> (
     Option<InputFact>,
-    Result<(WeighedFile, Vec<Warning>, InputFact)>,
+    Result<(WeighedFile, Vec<Warning>, Vec<InputFact>)>,
 ) {
     // Drawn anew, so that no file can have been made to pass.
     let keys = Keys::random();
@@ -63,7 +67,7 @@ pub(super) fn answer(
         Ok((fact, Err(e))) => (Some(fact), Err(e.in_file(&input.path))),
         Ok((fact, Ok(read))) => {
             let told = tell(&read, input, args, substance, about);
-            let told = told.map(|(file, warnings)| (file, warnings, fact.clone()));
+            let told = told.map(|(file, warnings)| (file, warnings, read.beside));
             (Some(fact), told)
         }
     }
@@ -99,6 +103,8 @@ fn unreadable(e: &std::io::Error) -> Error {
 }
 
 fn of_bytes(bytes: Bytes, input: &Input, args: &MeshArgs, keys: &Keys) -> Result<Told> {
+    let packed = format::gzip::is_gzip(&bytes);
+    let bytes = format::unpack(bytes, &input.path)?;
     let format = format::detect(&bytes, &input.path, args.format)?;
     if format == Format::StlBinary {
         let totals = match bytes {
@@ -108,15 +114,25 @@ fn of_bytes(bytes: Bytes, input: &Input, args: &MeshArgs, keys: &Keys) -> Result
                 stream::of_file(&file, keys)?
             }
         };
-        return Ok(binary(totals));
+        return Ok(Told {
+            not_streamed: packed.then_some("a packed file"),
+            ..binary(totals)
+        });
     }
-    let soup = format::read_unchecked(bytes, &input.path, format)?;
+    let beside = Beside::of(&input.path, args.hash);
+    let soup = format::read_unchecked(bytes, &input.path, format, &|name| beside.open(name))?;
     let totals = each!(&soup.triangles, f => stream::of_corners(f, keys));
     Ok(Told {
         totals,
         format,
         unit: soup.unit,
         notes: soup.notes,
+        beside: beside.read().into_iter().map(inputs::fact_of).collect(),
+        not_streamed: match format {
+            _ if packed => Some("a packed file"),
+            Format::StlBinary | Format::StlText | Format::Obj => None,
+            other => Some(other.family().title()),
+        },
     })
 }
 
@@ -126,6 +142,8 @@ fn binary(totals: Totals) -> Told {
         format: Format::StlBinary,
         unit: None,
         notes: Vec::new(),
+        beside: Vec::new(),
+        not_streamed: None,
     }
 }
 
@@ -192,6 +210,13 @@ fn tell(
             advice: advice.to_owned(),
         });
     };
+    if let Some(what) = read.not_streamed {
+        warn(
+            "not-streamed",
+            &format!("{what} is not streamed: it was read into memory whole"),
+            "binary STL streams, from a file or from standard input",
+        );
+    }
     let totals = &read.totals;
     let closed = totals.certificate.cancels();
     let turned = closed && totals.solid.moments.zeroth < 0.0;

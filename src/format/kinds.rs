@@ -1,21 +1,20 @@
 //! Files of kinds that are not read, told by their first bytes, and what to export instead.
 
-use super::Family;
 use super::chunk::{line_end, line_ending};
 use super::number::{is_blank, skip_blank, token_at, word_end};
-use crate::error::{Error, Kind};
+use super::{Family, Format};
+use crate::error::{Error, Kind, Result};
 
 /// How much of a text is searched for signs of its kind.
 const LOOK: usize = 64 * 1024;
 
-const EXPORT: &str = "export the mesh as binary STL, text STL or OBJ";
+const EXPORT: &str = "export the mesh as STL, OBJ, 3MF, PLY, OFF or glTF";
 const UNPACK: &str = "unpack it and name the mesh file inside";
 const RETESSELLATE: &str =
-    "open it in the program that wrote it and export a mesh: binary STL, text STL or OBJ";
+    "open it in the program that wrote it and export a mesh: STL, OBJ, 3MF, PLY, OFF or glTF";
 
 /// What files begin with, what they are, and what to do.
 const BEGINNINGS: &[(&[u8], &str, &str)] = &[
-    (b"\x1f\x8b", "a gzip archive", UNPACK),
     (b"BZh", "a bzip2 archive", UNPACK),
     (b"\xfd7zXZ\0", "an xz archive", UNPACK),
     (b"\x28\xb5\x2f\xfd", "a zstd archive", UNPACK),
@@ -28,7 +27,6 @@ const BEGINNINGS: &[(&[u8], &str, &str)] = &[
     (b"RIFF", "a RIFF file (picture or sound)", EXPORT),
     (b"\x7fELF", "a program", EXPORT),
     (b"MZ", "a program", EXPORT),
-    (b"glTF", "a binary glTF scene", EXPORT),
     (b"Kaydara FBX", "an FBX scene", EXPORT),
     (b"; FBX", "an FBX scene", EXPORT),
     (b"BLENDER", "a scene of a modelling program", EXPORT),
@@ -53,19 +51,29 @@ const BEGINNINGS: &[(&[u8], &str, &str)] = &[
     (b"\xfe\xff", "UTF-16 text", "save it as UTF-8 or ASCII text"),
 ];
 
-/// The refusal for a file of a known kind that is not read here.
-pub(super) fn looks_like(bytes: &[u8]) -> Option<Error> {
+/// What a file that is no STL is by its beginning, where that decides: a format that is read, or the
+/// refusal of a kind that is not.
+pub(super) fn looks_like(bytes: &[u8], hint: Option<Family>) -> Option<Result<Format>> {
     if bytes.starts_with(b"PK\x03\x04") || bytes.starts_with(b"PK\x05\x06") {
+        // Names of entries stand before each and in the list at the end.
         let head = &bytes[..bytes.len().min(LOOK)];
-        let has = |what: &[u8]| memchr::memmem::find(head, what).is_some();
-        return Some(if has(b"3D/") || has(b".model") || has(b"_rels/") {
-            refuse("a 3MF or other zip package", EXPORT)
+        let tail = &bytes[bytes.len().saturating_sub(LOOK)..];
+        let has = |what: &[u8]| {
+            let find = |part| memchr::memmem::find(part, what).is_some();
+            find(head) || find(tail)
+        };
+        let is_package = hint == Some(Family::ThreeMf) || has(b"3D/") || has(b".model");
+        return Some(if is_package {
+            Ok(Format::ThreeMf)
         } else {
-            refuse("a zip archive", UNPACK)
+            Err(refuse("a zip archive", UNPACK))
         });
     }
+    if bytes.starts_with(b"glTF") {
+        return Some(Ok(Format::GltfBinary));
+    }
     if let Some((_, what, advice)) = BEGINNINGS.iter().find(|(b, ..)| bytes.starts_with(b)) {
-        return Some(refuse(what, advice));
+        return Some(Err(refuse(what, advice)));
     }
     let start = if bytes.starts_with(b"\xef\xbb\xbf") {
         3
@@ -75,18 +83,32 @@ pub(super) fn looks_like(bytes: &[u8]) -> Option<Error> {
     let at = skip_blank(&bytes[..bytes.len().min(LOOK)], start);
     let rest = bytes.get(at..)?;
     let word = &rest[..word_end(rest, 0)];
+    if bytes.starts_with(b"ply") && matches!(bytes.get(3), Some(b'\n' | b'\r')) {
+        return Some(Ok(Format::Ply));
+    }
+    if super::off::begins(rest) {
+        return Some(Ok(Format::Off));
+    }
+    // Buffers as text may stand before the word that tells.
+    if rest.starts_with(b"{")
+        && (hint == Some(Family::Gltf) || memchr::memmem::find(rest, b"\"asset\"").is_some())
+    {
+        return Some(Ok(Format::GltfText));
+    }
+    other(rest, word).map(Err)
+}
+
+/// The refusal for a text of a known kind that is not read here.
+fn other(rest: &[u8], word: &[u8]) -> Option<Error> {
     let head = rest[..rest.len().min(LOOK)].to_ascii_lowercase();
     let has = |what: &[u8]| memchr::memmem::find(&head, what).is_some();
     let what = match word {
-        b"ply" => "a PLY mesh",
-        b"OFF" | b"COFF" | b"NOFF" | b"STOFF" | b"OFFBIN" => "an OFF mesh",
         _ if rest.starts_with(b"ISO-10303-21") => {
             return Some(refuse(
                 "a STEP model, which has exact surfaces and no mesh",
                 RETESSELLATE,
             ));
         }
-        _ if rest.starts_with(b"{") && has(b"\"asset\"") => "a glTF scene",
         _ if rest.starts_with(b"{") || rest.starts_with(b"[") => "JSON or TOML text",
         _ if rest.starts_with(b"<") => {
             if has(b"<html") || has(b"<!doctype html") {
@@ -97,6 +119,11 @@ pub(super) fn looks_like(bytes: &[u8]) -> Option<Error> {
                 "a COLLADA scene"
             } else if has(b"<svg") {
                 "an SVG picture"
+            } else if has(b"3dmanufacturing") {
+                return Some(refuse(
+                    "the model of a 3MF package, taken out of it",
+                    "name the whole package",
+                ));
             } else {
                 "XML"
             }
@@ -173,14 +200,14 @@ pub(super) fn unknown(bytes: &[u8], hint: Option<Family>) -> Error {
             "this is called an STL, but {found}, where an STL has \"solid\", \"facet\" or a binary \
              header"
         ),
-        Some(Family::Obj) => format!("this is called an OBJ, but {found}"),
+        Some(other) => format!("this is called {}, but {found}", other.title()),
         None if binary => {
             format!(
                 "{found}, and no binary STL has this length ({} bytes)",
                 bytes.len()
             )
         }
-        None => format!("{found}, which no STL or OBJ does"),
+        None => format!("{found}, which no mesh format that is read here does"),
     };
     Error::new(Kind::UnknownFormat, message, EXPORT)
 }

@@ -23,6 +23,8 @@ pub(crate) struct Written {
     /// Largest value of the digits read as one whole number; its length is the number of
     /// significant digits.
     pub(crate) digits: u64,
+    /// Whether they are 32-bit floats, whose spacing then is the step.
+    pub(crate) single: bool,
 }
 
 impl Written {
@@ -30,6 +32,16 @@ impl Written {
     pub(crate) fn merge(&mut self, other: Self) {
         self.decimals = self.decimals.max(other.decimals);
         self.digits = self.digits.max(other.digits);
+        self.single |= other.single;
+    }
+
+    /// Of binary floats, 32 bits wide or 64.
+    pub(crate) fn binary(single: bool) -> Self {
+        Self {
+            decimals: i32::MAX,
+            digits: u64::MAX,
+            single,
+        }
     }
 
     /// One unit of the last digit of a coordinate of magnitude `size`, for a file written with a
@@ -43,7 +55,12 @@ impl Written {
         } else {
             0.0
         };
-        by_decimals.max(by_digits).max(size * f64::EPSILON)
+        let spacing = if self.single {
+            f64::from(f32::EPSILON)
+        } else {
+            f64::EPSILON
+        };
+        by_decimals.max(by_digits).max(size * spacing)
     }
 }
 
@@ -332,7 +349,8 @@ mod tests {
             w,
             Written {
                 decimals: 6,
-                digits: 100_125_000
+                digits: 100_125_000,
+                single: false,
             }
         );
         assert_eq!(w.step(100.0), 1e-6);

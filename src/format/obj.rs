@@ -13,8 +13,8 @@
 
 mod resolve;
 mod scan;
-mod triangulate;
-mod warp;
+pub(super) mod triangulate;
+pub(super) mod warp;
 
 use crate::error::{Error, Kind, Result};
 use crate::format::chunk;

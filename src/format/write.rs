@@ -1,4 +1,4 @@
-//! Meshes out: binary STL and OBJ, by the file's ending.
+//! Meshes out: binary STL and OBJ, and which format a file's ending asks for.
 
 use std::collections::HashMap;
 use std::io::{self, Write};
@@ -15,14 +15,18 @@ use crate::mesh::{Soup, Triangles, each};
 /// # Errors
 /// `usage` for any other ending.
 pub fn family_of(path: &Path) -> Result<Family> {
-    Family::from_path(path).ok_or_else(|| {
-        Error::new(
+    let is_packed = path
+        .extension()
+        .is_some_and(|e| e.eq_ignore_ascii_case("gz"));
+    match Family::from_path(path) {
+        Some(family @ (Family::Stl | Family::Obj | Family::ThreeMf)) if !is_packed => Ok(family),
+        _ => Err(Error::new(
             Kind::Usage,
             "the ending says no format that is written",
-            "name the output .stl (binary) or .obj",
+            "name the output .stl (binary), .obj or .3mf",
         )
-        .in_file(path)
-    })
+        .in_file(path)),
+    }
 }
 
 /// The soup as binary STL can hold it: coordinates rounded to f32, facets that this leaves with
@@ -91,7 +95,7 @@ pub fn narrowed(soup: &Soup) -> Result<Narrowed> {
     })
 }
 
-fn corners(soup: &Soup, t: usize) -> [[f64; 3]; 3] {
+pub(super) fn corners(soup: &Soup, t: usize) -> [[f64; 3]; 3] {
     each!(&soup.triangles, f => f.triangle(t))
 }
 
@@ -162,7 +166,8 @@ fn normal(t: &[[f64; 3]; 3]) -> [f64; 3] {
 }
 
 /// Writes OBJ: each place once as a vertex, in the shortest decimals that give the same f64 back,
-/// names as `o`, materials as `usemtl`.
+/// names as `o`, materials as `usemtl`. A unit that the soup states stands in a comment: OBJ has no
+/// place for it.
 ///
 /// # Errors
 /// `cannot-write`.
@@ -172,6 +177,9 @@ pub fn write_obj(path: &Path, soup: &Soup) -> Result<()> {
 
 fn obj(w: &mut dyn Write, soup: &Soup) -> io::Result<()> {
     writeln!(w, "# written by bismar")?;
+    if let Some(unit) = soup.unit {
+        writeln!(w, "# lengths in {unit}")?;
+    }
     let mut numbers: HashMap<[u64; 3], u64> = HashMap::new();
     let named = soup.names.iter().any(Option::is_some) || !soup.materials.is_empty();
     let mut said: Option<u32> = None;
@@ -209,7 +217,8 @@ fn obj(w: &mut dyn Write, soup: &Soup) -> io::Result<()> {
     Ok(())
 }
 
-fn decimal(x: f64) -> String {
+/// The shortest decimals that give the same f64 back.
+pub(super) fn decimal(x: f64) -> String {
     if x != 0.0 && !(1e-5..1e16).contains(&x.abs()) {
         format!("{x:e}")
     } else {

@@ -124,8 +124,8 @@ pub struct Run {
 /// A polygon of the file that has no one surface, because its corners are not flat.
 #[derive(Clone, Debug, PartialEq)]
 pub struct WarpedPolygon {
-    /// Line of the file, from 1.
-    pub line: u64,
+    /// Line of the file, from 1; none in binary files.
+    pub line: Option<u64>,
     /// First of its triangles.
     pub first: usize,
     /// Number of its triangles.

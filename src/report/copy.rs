@@ -12,7 +12,7 @@ use crate::soundness::mend::{Action, Step};
 pub struct Copied {
     /// Where to; lossy where it is not UTF-8.
     pub path: String,
-    /// `stl` (binary) or `obj`.
+    /// `stl` (binary), `obj` or `3mf`.
     pub format: &'static str,
     /// Whether it was written; if not, nothing was.
     pub written: bool,
@@ -20,7 +20,8 @@ pub struct Copied {
     pub triangles: Option<u64>,
     /// The farthest that a coordinate moved when it was rounded to what the format holds, m.
     pub largest_move_m: f64,
-    /// Facets left out because that rounding left two of their corners in one place.
+    /// Facets left out because two of their corners were in one place, by that rounding, or where
+    /// the format does not allow it (3MF).
     pub facets_collapsed: u64,
     /// What was done, in order; empty for a plain copy.
     pub steps: Vec<StepDone>,
@@ -72,10 +73,10 @@ pub(super) fn render(copy: &Copied, verb: &str, unit: LengthUnit, look: Look) ->
         return out;
     }
     let mut out = look.marked(&format!("{verb}: {path}"), Mark::Heading);
-    let kind = if copy.format == "stl" {
-        "binary STL"
-    } else {
-        "OBJ"
+    let kind = match copy.format {
+        "stl" => "binary STL",
+        "3mf" => "3MF",
+        _ => "OBJ",
     };
     out.push_str(&format!(
         " · {kind} · {} triangles\n",
@@ -126,6 +127,11 @@ pub(super) fn render(copy: &Copied, verb: &str, unit: LengthUnit, look: Look) ->
             ));
         }
         out.push('\n');
+    } else if copy.facets_collapsed > 0 {
+        out.push_str(&format!(
+            "   {} facets with two corners in one place were left out, which {kind} does not allow\n",
+            copy.facets_collapsed
+        ));
     }
     out
 }

@@ -279,7 +279,7 @@ impl Look<'_> {
                         .take(64)
                         .map(|t| t as u32)
                         .collect(),
-                    line: Some(w.line),
+                    line: w.line,
                     length_m: None,
                     edges: Some(w.count + 2),
                 });

@@ -89,7 +89,7 @@ pub(super) fn resolve(
         .into_par_iter()
         .map(|(part, out, first, start)| cut(&part, out, first, start, &vertices, written))
         .collect();
-    let warped = warp::gather(text, warped);
+    let warped = warp::gather(Some(text), warped);
 
     Ok(Soup {
         triangles: Triangles::Indexed { vertices, corners },

@@ -14,11 +14,11 @@ const COMPARED_ROUNDED: usize = 12;
 
 /// One polygon that is not exactly flat.
 #[derive(Clone, Copy, Debug)]
-pub(super) struct Warp {
+pub(in crate::format) struct Warp {
     /// Byte of its statement.
-    pub(super) at: usize,
+    pub(in crate::format) at: usize,
     /// Its first triangle.
-    pub(super) first: usize,
+    pub(in crate::format) first: usize,
     count: usize,
     corner: [f64; 3],
     deviation: f64,
@@ -29,13 +29,13 @@ pub(super) struct Warp {
 
 /// Those of one piece: each that is beyond rounding, and one entry for all that are not.
 #[derive(Debug, Default)]
-pub(super) struct Gathered {
+pub(in crate::format) struct Gathered {
     beyond: Vec<Warp>,
     within: Option<Warp>,
 }
 
 impl Gathered {
-    pub(super) fn add(&mut self, warp: Warp) {
+    pub(in crate::format) fn add(&mut self, warp: Warp) {
         if !warp.within_rounding {
             self.beyond.push(warp);
             return;
@@ -59,8 +59,9 @@ impl Gathered {
 }
 
 /// The polygons of all pieces in file order; the entry for those within rounding, if any, is the
-/// last. It names the one of largest deviation and holds the sum of all their volumes.
-pub(super) fn gather(text: &[u8], pieces: Vec<Gathered>) -> Vec<WarpedPolygon> {
+/// last. It names the one of largest deviation and holds the sum of all their volumes. Without a
+/// `text` they have no lines.
+pub(in crate::format) fn gather(text: Option<&[u8]>, pieces: Vec<Gathered>) -> Vec<WarpedPolygon> {
     let mut all = Gathered::default();
     for piece in pieces {
         piece
@@ -70,17 +71,19 @@ pub(super) fn gather(text: &[u8], pieces: Vec<Gathered>) -> Vec<WarpedPolygon> {
             .for_each(|w| all.add(w));
     }
     // Lines are counted once along the text, not from its beginning for each polygon.
-    let ending = chunk::line_ending(text);
+    let ending = text.map(chunk::line_ending);
     let (mut line, mut from) = (1u64, 0);
     let mut out = Vec::with_capacity(all.beyond.len() + 1);
     for w in all.beyond.into_iter().chain(all.within) {
-        if w.at < from {
-            (line, from) = (1, 0);
+        if let (Some(text), Some(ending)) = (text, ending) {
+            if w.at < from {
+                (line, from) = (1, 0);
+            }
+            line += memchr::memchr_iter(ending, &text[from..w.at]).count() as u64;
+            from = w.at;
         }
-        line += memchr::memchr_iter(ending, &text[from..w.at]).count() as u64;
-        from = w.at;
         out.push(WarpedPolygon {
-            line,
+            line: text.map(|_| line),
             first: w.first,
             count: w.count,
             at: w.corner,
@@ -106,7 +109,11 @@ pub(super) fn gather(text: &[u8], pieces: Vec<Gathered>) -> Vec<WarpedPolygon> {
 /// programming (Klincsek 1980), up to [`COMPARED`] corners. Above, and for polygons of more than
 /// [`COMPARED_ROUNDED`] corners that rounding explains, it is bounded by what lies between two
 /// surfaces over the polygon within the deviation of its plane: twice deviation times area.
-pub(super) fn measure(points: &[[f64; 3]], chosen: &[[u32; 3]], written: Written) -> Option<Warp> {
+pub(in crate::format) fn measure(
+    points: &[[f64; 3]],
+    chosen: &[[u32; 3]],
+    written: Written,
+) -> Option<Warp> {
     if is_flat(points) {
         return None;
     }
@@ -250,6 +257,7 @@ mod tests {
         Written {
             decimals: 2,
             digits: 999,
+            single: false,
         }
     }
 
