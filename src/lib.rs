@@ -54,6 +54,7 @@ pub mod moments;
 pub mod quantity;
 pub mod report;
 pub mod soundness;
+pub mod statics;
 pub mod stream;
 pub mod text;
 

@@ -10,7 +10,7 @@ const ROWS: &[&[&str]] = &[
     &["text"],
     &["error"],
     &["bytes", "geometry", "quantity"],
-    &["moments"],
+    &["moments", "statics"],
     &["mesh"],
     &["format"],
     &["stream"],
