@@ -11,7 +11,7 @@ use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
 use super::sum;
 use crate::error::{Error, Kind};
-use crate::limits::{Judged, Measured, Verdict};
+use crate::limits::{Judged, Verdict};
 use crate::moments::{Moments, principal};
 
 /// The answer to `balance`. Its fields are those of the JSON document; SI units, in the names;
@@ -214,21 +214,11 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
     })
 }
 
-/// What arithmetic alone may move: a mass is good to 1e-13 of itself, a centre to 1e-13 of the
-/// box diagonal or 4 units in the last place of the coordinate.
 fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
-    let (value, rounding) = match limit.quantity {
-        Measured::Mass => (total.mass_kg, 1e-13 * total.mass_kg),
-        Measured::Centre(axis) => {
-            let value = total.centre_of_mass_m[axis];
-            let [lo, hi] = total.bounds_m.map(Vector3::from);
-            let rounding = 1e-13 * (hi - lo).norm();
-            (value, rounding.max(4.0 * f64::EPSILON * value.abs()))
-        }
-    };
+    let [lo, hi] = total.bounds_m.map(Vector3::from);
     open::unsure(
-        limit.judge(value, rounding),
-        limit.quantity,
+        limit.judge_whole(&total.moments, (hi - lo).norm()),
+        &limit.quantity,
         total.estimate.as_ref(),
     )
 }
