@@ -9,8 +9,9 @@ use super::load::Loaded;
 use super::open::{self, MassBounds};
 use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
+use super::standing::{self, Statics};
 use super::sum;
-use crate::error::{Error, Kind};
+use crate::error::{Error, Kind, Warning};
 use crate::limits::{Judged, Verdict};
 use crate::moments::{Moments, principal};
 
@@ -35,6 +36,12 @@ pub struct Balance {
     pub overlaps: Vec<Overlap>,
     /// Each limit's verdict, in file order; none where there is no total.
     pub limits: Vec<Judged>,
+    /// What supports and lines carry, and when it tips; where the file asks for it.
+    #[serde(flatten)]
+    pub statics: Statics,
+    /// What the figures throw doubt on.
+    #[serde(skip)]
+    pub warnings: Vec<Warning>,
     /// null: not computed.
     pub uncertainty: Option<Value>,
     /// Parts against the figures that they must have, in file order.
@@ -198,6 +205,13 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
         let limits = loaded.file.limits.iter();
         limits.map(|limit| judged(limit, total)).collect()
     });
+    let (statics, warnings) = match &total {
+        Some(t) => {
+            let centre = Vector3::from(t.centre_of_mass_m);
+            standing::statics(&loaded.file, t.mass_kg, &mut |_| Ok(centre)).map_err(|e| vec![e])?
+        }
+        None => Default::default(),
+    };
     Ok(Balance {
         name: loaded.file.name.clone(),
         parts: weighed.iter().map(|w| part_row(w, mass)).collect(),
@@ -207,6 +221,8 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
         total,
         overlaps: overlap::overlaps(weighed),
         limits,
+        statics,
+        warnings,
         uncertainty: None,
         expectations: resolved.expectations.clone(),
         error,

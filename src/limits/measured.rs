@@ -153,6 +153,9 @@ pub(super) fn element(row: usize, column: usize) -> Matrix3<f64> {
 }
 
 impl Measured {
+    /// The name of [`Measured::Percent`].
+    pub const PERCENT: &'static str = "percent";
+
     /// Its name in files and results.
     pub fn name(&self) -> &'static str {
         match self {
@@ -161,7 +164,7 @@ impl Measured {
             Self::Centre(1) => "centre.y",
             Self::Centre(_) => "centre.z",
             Self::Station(_) => "station",
-            Self::Percent { .. } => "percent",
+            Self::Percent { .. } => Self::PERCENT,
             Self::FromPoint(_) => "distance.point",
             Self::FromLine(_) => "distance.line",
             Self::FromPlane(_) => "distance.plane",
