@@ -40,6 +40,7 @@
 #![warn(missing_docs)]
 
 pub mod assembly;
+pub mod ballast;
 pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;

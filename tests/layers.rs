@@ -17,6 +17,7 @@ const ROWS: &[&[&str]] = &[
     &["soundness"],
     &["masses", "material"],
     &["limits"],
+    &["ballast"],
     &["assembly"],
     &["report"],
     &["command"],

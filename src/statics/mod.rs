@@ -9,7 +9,7 @@
 mod hang;
 mod hook;
 mod hull;
-mod nnls;
+pub(crate) mod nnls;
 mod readings;
 mod stand;
 mod tip;
