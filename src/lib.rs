@@ -40,6 +40,7 @@
 #![warn(missing_docs)]
 
 pub mod assembly;
+pub mod ballast;
 pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;
@@ -55,6 +56,7 @@ pub mod progress;
 pub mod quantity;
 pub mod report;
 pub mod soundness;
+pub mod statics;
 pub mod stream;
 pub mod text;
 

@@ -7,6 +7,7 @@ use nalgebra::{Matrix3, Vector3};
 
 use crate::limits::Limit;
 use crate::quantity::{LengthUnit, Quantity};
+use crate::statics::{Line, Stand};
 
 /// One assembly file. Lengths are in metres, everything in SI units.
 #[derive(Clone, Debug)]
@@ -23,6 +24,25 @@ pub struct AssemblyFile {
     pub entries: Vec<Entry>,
     /// The limits, one a quantity, in file order.
     pub limits: Vec<Limit>,
+    /// Where it stands, if that is stated.
+    pub stand: Option<Stand>,
+    /// What it hangs from, if that is stated.
+    pub hang: Option<Hang>,
+    /// Size of gravity, m/s².
+    pub gravity: f64,
+    /// Against gravity, a unit vector.
+    pub up: Vector3<f64>,
+}
+
+/// A hook and the lines that meet at it.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Hang {
+    /// Its line in the file.
+    pub line: u64,
+    /// Where the hook is as drawn, m.
+    pub hook: Vector3<f64>,
+    /// None, or two to four.
+    pub lines: Vec<Line>,
 }
 
 /// A material that was chosen, with its density.

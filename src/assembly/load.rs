@@ -133,6 +133,15 @@ impl Loader {
                         .into(),
             });
         }
+        if depth > 0 && (file.stand.is_some() || file.hang.is_some()) {
+            self.warnings.push(Warning {
+                kind: "supports-ignored".into(),
+                message: "an included file states supports or a hook, and only those of the outer file count".into(),
+                path: Some(path.to_string_lossy().into_owned()),
+                line: file.hang.as_ref().map(|h| h.line),
+                advice: "balance that file by itself, or state them in the outer file".into(),
+            });
+        }
         Some(file)
     }
 

@@ -31,12 +31,14 @@ mod overlap;
 mod position;
 mod read;
 mod read_limits;
+mod read_statics;
 mod reader;
 mod resolve;
 mod rollup;
 mod schema;
 mod shape;
 mod source;
+mod standing;
 mod substance;
 mod sum;
 mod tree;
@@ -46,8 +48,8 @@ mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Item, MeshChoice, Part, Pattern, Position,
-    Shape, Substance, Turn,
+    AssemblyFile, Assign, Each, Entry, Expect, Group, Hang, Item, MeshChoice, Part, Pattern,
+    Position, Shape, Substance, Turn,
 };
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
@@ -59,6 +61,7 @@ pub use rollup::{
 pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
+pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
 
 /// Names as a list for a message, the first of them where there are very many.
 fn listed(names: &[&str]) -> String {

@@ -87,12 +87,19 @@ pub(super) fn of_total(weighed: &[Weighed], centre: Vector3<f64>, mass: f64) -> 
     )
 }
 
-/// A limit that a figure may cross within its bound neither holds nor is broken.
-pub(super) fn unsure(mut judged: Judged, of: Measured, bounds: Option<&MassBounds>) -> Judged {
+/// A limit that a figure may cross within its bound neither holds nor is broken. Figures for which
+/// no bound is worked out may be anywhere.
+pub(super) fn unsure(mut judged: Judged, of: &Measured, bounds: Option<&MassBounds>) -> Judged {
     let Some(b) = bounds else { return judged };
     let bound = match of {
         Measured::Mass => b.mass_bound_kg,
-        Measured::Centre(_) => b.centre_bound_m,
+        Measured::Centre(_)
+        | Measured::Station(_)
+        | Measured::FromPoint(_)
+        | Measured::FromLine(_)
+        | Measured::FromPlane(_) => b.centre_bound_m,
+        Measured::Percent { length, .. } => b.centre_bound_m / length,
+        _ => f64::INFINITY,
     };
     if bound > 0.0 && (judged.margin.abs() < bound || !bound.is_finite()) {
         judged.verdict = Verdict::Unsure;

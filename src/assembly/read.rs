@@ -9,6 +9,7 @@ use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, 
 use super::load::Loader;
 use super::position;
 use super::read_limits;
+use super::read_statics;
 use super::reader::{Reader, Shared};
 use super::shape;
 use super::substance::{self, OwnMaterials};
@@ -68,7 +69,9 @@ pub(super) fn file(
         loader,
     };
     let entries = context.entries(&root, 0);
-    let limits = read_limits::read(&root);
+    let standing = read_statics::supports(&root);
+    let hang = read_statics::hang(&root);
+    let limits = read_limits::read(&root, &standing);
     root.finish();
     AssemblyFile {
         path: shared.path.to_path_buf(),
@@ -77,6 +80,10 @@ pub(super) fn file(
         assigns,
         entries,
         limits,
+        stand: standing.stand,
+        hang,
+        gravity: standing.gravity,
+        up: standing.up,
     }
 }
 

@@ -15,8 +15,7 @@ use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
 const NOT_READ: &[&str] = &[
-    "ballast", "case", "drain", "frame", "gravity", "hang", "made", "motion", "phase", "smear",
-    "support", "tank",
+    "ballast", "case", "drain", "frame", "gravity", "made", "motion", "phase", "smear", "tank",
 ];
 
 /// What the readers of one file share.
@@ -211,6 +210,11 @@ impl<'a, 'p> Reader<'a, 'p> {
                 &[]
             }
         }
+    }
+
+    /// Whether nothing stands in it.
+    pub(super) fn is_empty(&self) -> bool {
+        self.entries.is_empty()
     }
 
     /// A fault about this table: a key that it must have is missing.

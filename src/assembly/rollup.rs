@@ -9,9 +9,10 @@ use super::load::Loaded;
 use super::open::{self, MassBounds};
 use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
+use super::standing::{self, Statics};
 use super::sum;
-use crate::error::{Error, Kind};
-use crate::limits::{Judged, Measured, Verdict};
+use crate::error::{Error, Kind, Warning};
+use crate::limits::{Judged, Verdict};
 use crate::moments::{Moments, principal};
 use crate::progress::Progress;
 
@@ -36,6 +37,12 @@ pub struct Balance {
     pub overlaps: Vec<Overlap>,
     /// Each limit's verdict, in file order; none where there is no total.
     pub limits: Vec<Judged>,
+    /// What supports and lines carry, and when it tips; where the file asks for it.
+    #[serde(flatten)]
+    pub statics: Statics,
+    /// What the figures throw doubt on.
+    #[serde(skip)]
+    pub warnings: Vec<Warning>,
     /// null: not computed.
     pub uncertainty: Option<Value>,
     /// Parts against the figures that they must have, in file order.
@@ -211,6 +218,13 @@ pub fn balance_watched(
         let limits = loaded.file.limits.iter();
         limits.map(|limit| judged(limit, total)).collect()
     });
+    let (statics, warnings) = match &total {
+        Some(t) => {
+            let centre = Vector3::from(t.centre_of_mass_m);
+            standing::statics(&loaded.file, t.mass_kg, &mut |_| Ok(centre)).map_err(|e| vec![e])?
+        }
+        None => Default::default(),
+    };
     Ok(Balance {
         name: loaded.file.name.clone(),
         parts: weighed.iter().map(|w| part_row(w, mass)).collect(),
@@ -220,6 +234,8 @@ pub fn balance_watched(
         total,
         overlaps: overlap::overlaps(weighed, progress),
         limits,
+        statics,
+        warnings,
         uncertainty: None,
         expectations: resolved.expectations.clone(),
         error,
@@ -227,21 +243,11 @@ pub fn balance_watched(
     })
 }
 
-/// What arithmetic alone may move: a mass is good to 1e-13 of itself, a centre to 1e-13 of the
-/// box diagonal or 4 units in the last place of the coordinate.
 fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
-    let (value, rounding) = match limit.quantity {
-        Measured::Mass => (total.mass_kg, 1e-13 * total.mass_kg),
-        Measured::Centre(axis) => {
-            let value = total.centre_of_mass_m[axis];
-            let [lo, hi] = total.bounds_m.map(Vector3::from);
-            let rounding = 1e-13 * (hi - lo).norm();
-            (value, rounding.max(4.0 * f64::EPSILON * value.abs()))
-        }
-    };
+    let [lo, hi] = total.bounds_m.map(Vector3::from);
     open::unsure(
-        limit.judge(value, rounding),
-        limit.quantity,
+        limit.judge_whole(&total.moments, (hi - lo).norm()),
+        &limit.quantity,
         total.estimate.as_ref(),
     )
 }

@@ -81,6 +81,31 @@ struct AssemblyFile {
     group: Option<Vec<Group>>,
     /// Bands that figures of the whole must stay in.
     limit: Option<Vec<Limit>>,
+    /// Feet, wheels or scales that it stands on.
+    support: Option<Vec<Placed>>,
+    /// What it hangs from.
+    hang: Option<Hang>,
+}
+
+/// A named point.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Placed {
+    /// Its name.
+    name: String,
+    /// Where it is.
+    at: [Length; 3],
+}
+
+/// A hook, and the lines that meet at it.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Hang {
+    /// Where the hook is as drawn.
+    hook: [Length; 3],
+    /// Two to four lines, named, with the point of the assembly that each holds; without any it
+    /// hangs from the hook as a point.
+    line: Option<Vec<Placed>>,
 }
 
 /// The assembly itself.
@@ -284,6 +309,171 @@ struct Limit {
     mass: Option<MassBand>,
     /// Bands of the centre of mass.
     centre: Option<Centre>,
+    /// Band of how far along from a datum the centre of mass stands.
+    station: Option<Station>,
+    /// Band of the same in per cent of a reference length.
+    percent: Option<Percent>,
+    /// Band of the distance of the centre of mass from a point, line or plane.
+    distance: Option<Distance>,
+    /// Outline in mass and station.
+    envelope: Option<EnvelopeOf>,
+    /// Bands of elements of the inertia tensor.
+    inertia: Option<InertiaLimit>,
+    /// Band of the ratio of two principal moments.
+    ratio: Option<Ratio>,
+    /// Slope that it must stand on.
+    tip: Option<Tip>,
+    /// Band of what one of three supports carries.
+    reaction: Option<Reaction>,
+    /// Unbalance as permitted in two planes.
+    unbalance: Option<Unbalance>,
+}
+
+/// Band of a station.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Station {
+    /// The origin where left out.
+    datum: Option<[Length; 3]>,
+    /// Direction of stations.
+    along: Direction,
+    /// The least allowed value.
+    from: Option<Length>,
+    /// The greatest allowed value.
+    to: Option<Length>,
+}
+
+/// Band in per cent of the length from `start` to `end`.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Percent {
+    /// Where 0 % is.
+    start: [Length; 3],
+    /// Where 100 % is.
+    end: [Length; 3],
+    /// Such as "15 %".
+    from: Option<Quantity>,
+    /// Such as "30 %".
+    to: Option<Quantity>,
+}
+
+/// Band of a distance from one of point, line and plane.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Distance {
+    /// From this point.
+    point: Option<[Length; 3]>,
+    /// From this line.
+    line: Option<LineOf>,
+    /// From this plane; positive on the side of its normal.
+    plane: Option<PlaneOf>,
+    /// The least allowed value.
+    from: Option<Length>,
+    /// The greatest allowed value.
+    to: Option<Length>,
+}
+
+/// A line.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct LineOf {
+    /// A point of it; the origin where left out.
+    at: Option<[Length; 3]>,
+    /// Its direction.
+    along: Direction,
+}
+
+/// A plane.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct PlaneOf {
+    /// A point of it; the origin where left out.
+    at: Option<[Length; 3]>,
+    /// Across it.
+    normal: Direction,
+}
+
+/// Outline in mass and station.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct EnvelopeOf {
+    /// The origin where left out.
+    datum: Option<[Length; 3]>,
+    /// Direction of stations.
+    along: Direction,
+    /// Corners in order around: mass and station.
+    #[schemars(length(min = 3))]
+    outline: Vec<(Quantity, Length)>,
+}
+
+/// Bands of elements of the inertia tensor; off-diagonals are −∫xy dm.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct InertiaLimit {
+    /// The point that it is about; the centre of mass where left out.
+    about: Option<[Length; 3]>,
+    /// Element xx.
+    xx: Option<QuantityBand>,
+    /// Element yy.
+    yy: Option<QuantityBand>,
+    /// Element zz.
+    zz: Option<QuantityBand>,
+    /// Element xy.
+    xy: Option<QuantityBand>,
+    /// Element xz.
+    xz: Option<QuantityBand>,
+    /// Element yz.
+    yz: Option<QuantityBand>,
+}
+
+/// Band of the ratio of two principal moments.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Ratio {
+    /// Which over which, counted from 1 in ascending order.
+    moments: [u8; 2],
+    /// Such as "110 %".
+    from: Option<Quantity>,
+    /// Such as "300 %".
+    to: Option<Quantity>,
+}
+
+/// Slope that it must stand on.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Tip {
+    /// Where it leans to; straight over every edge where left out.
+    towards: Option<Direction>,
+    /// Such as "20 deg".
+    from: Quantity,
+}
+
+/// Band of what one of three supports carries.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Reaction {
+    /// Its name.
+    support: String,
+    /// Such as "50 N".
+    from: Option<Quantity>,
+    /// Such as "900 N".
+    to: Option<Quantity>,
+}
+
+/// Unbalance as permitted in two planes by a balance quality grade.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Unbalance {
+    /// A point of the axis of rotation; the origin where left out.
+    at: Option<[Length; 3]>,
+    /// Along the axis.
+    along: Direction,
+    /// Where the two planes cut it, from `at`.
+    planes: [Length; 2],
+    /// Such as "3000 rpm" or "314 rad/s".
+    speed: String,
+    /// Such as "G 6.3".
+    grade: String,
 }
 
 /// Bands of the centre of mass.
@@ -306,6 +496,16 @@ struct Band {
     from: Option<Length>,
     /// The greatest allowed value.
     to: Option<Length>,
+}
+
+/// A band of some quantity; at least one end, both allowed values.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct QuantityBand {
+    /// The least allowed value.
+    from: Option<Quantity>,
+    /// The greatest allowed value.
+    to: Option<Quantity>,
 }
 
 /// A band of masses; at least one end, both allowed values.

@@ -58,6 +58,7 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     let errors: Vec<Error> = balance.error.iter().chain(&balance.more).cloned().collect();
     let mut warnings = resolved.warnings.clone();
     warnings.extend(files.warnings);
+    warnings.extend(balance.warnings.iter().cloned());
     let inputs = resolved.inputs.iter().map(fact).collect();
     let document = Document {
         schema: "bismar/balance/1",

@@ -117,8 +117,8 @@ fn check_file(
         Ok(opened) => opened,
         Err(e) => return (None, Err(e)),
     };
-    let result = read(bytes, input, &args.meshes, progress)
-        .and_then(|m| answer(&m, input, args, progress));
+    let result =
+        read(bytes, input, &args.meshes, progress).and_then(|m| answer(&m, input, args, progress));
     (Some(fact), result)
 }
 

@@ -2,33 +2,25 @@
 
 use serde::Serialize;
 
-/// What a limit is on.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
-pub enum Measured {
-    /// The total mass, kg.
-    Mass,
-    /// A component of the centre of mass, 0 to 2 for x to z, m.
-    Centre(usize),
-}
+use crate::moments::Moments;
 
-impl Measured {
-    /// Its name in files and results.
-    pub fn name(self) -> &'static str {
-        match self {
-            Self::Mass => "mass",
-            Self::Centre(0) => "centre.x",
-            Self::Centre(1) => "centre.y",
-            Self::Centre(_) => "centre.z",
-        }
-    }
+mod envelope;
+mod measured;
+mod rotor;
 
-    /// The SI unit that values and bounds are in.
-    pub fn unit(self) -> &'static str {
-        match self {
-            Self::Mass => "kg",
-            Self::Centre(_) => "m",
-        }
-    }
+pub use envelope::Envelope;
+pub use measured::{Axis, Gradient, Measured, SupportShare, Tipping};
+pub use rotor::{Plane, Rotor, permissible_unbalance, rad_per_s};
+
+/// What bounds of a limit are like for a search over added masses.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Shape {
+    /// Times the total mass it is linear in the masses that are added.
+    Linear,
+    /// Times the total mass (or as it is) it is a second-order cone in them.
+    Cone,
+    /// Neither; only a search that proves nothing finds a way.
+    NotConvex,
 }
 
 /// A band that a figure must stay in; at least one end is stated.
@@ -60,7 +52,7 @@ pub enum End {
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize)]
 #[serde(rename_all = "lowercase")]
 pub enum PercentOf {
-    /// The bound that is nearest: a mass limit with one end.
+    /// The bound: a limit with one end on what has a natural zero.
     Limit,
     /// The width of the band, `to` − `from`.
     Range,
@@ -115,8 +107,102 @@ impl Limit {
     /// larger than that is no margin: it is given as 0 and holds, so that 0.1 kg and 0.2 kg keep
     /// a limit of 0.3 kg.
     pub fn judge(&self, value: f64, rounding: f64) -> Judged {
-        let below = self.from.map(|from| value - from);
-        let above = self.to.map(|to| to - value);
+        self.judge_in(value, (self.from, self.to), rounding)
+    }
+
+    /// The verdict on a whole of these mass moments, with a box of this diagonal, m. What has no
+    /// value is broken.
+    pub fn judge_whole(&self, m: &Moments, diagonal: f64) -> Judged {
+        let value = self.quantity.value(m).unwrap_or(f64::NAN);
+        let rounding = self.quantity.rounding(m, diagonal);
+        self.judge_in(value, self.band(m), rounding)
+    }
+
+    /// The band for a whole of these moments: that of the file, but for an envelope, whose band
+    /// depends on the mass, and for unbalance, of which a heavier rotor is permitted more.
+    pub fn band(&self, m: &Moments) -> (Option<f64>, Option<f64>) {
+        match &self.quantity {
+            Measured::Envelope(e) => {
+                let [lo, hi] = e.band(m.zeroth, self.quantity.value(m).unwrap_or(f64::NAN));
+                (Some(lo.0), Some(hi.0))
+            }
+            Measured::Unbalance(rotor, plane) => (None, Some(rotor.permitted(m, *plane))),
+            _ => (self.from, self.to),
+        }
+    }
+
+    /// The margin to one end; `None` where there is no such end or no value.
+    pub fn margin(&self, m: &Moments, end: End) -> Option<f64> {
+        let value = self.quantity.value(m)?;
+        let (from, to) = self.band(m);
+        match end {
+            End::From => from.map(|from| value - from),
+            End::To => to.map(|to| to - value),
+        }
+    }
+
+    /// The exact gradient of [`Limit::margin`] with respect to the moments of the whole.
+    pub fn margin_gradient(&self, m: &Moments, end: End) -> Option<Gradient> {
+        let value = self.quantity.gradient(m)?;
+        let nothing = Gradient::none(value.about);
+        let bound = match &self.quantity {
+            Measured::Envelope(e) => {
+                let [lo, hi] = e.band(m.zeroth, self.quantity.value(m)?);
+                let zeroth = match end {
+                    End::From => lo.1,
+                    End::To => hi.1,
+                };
+                Gradient { zeroth, ..nothing }
+            }
+            Measured::Unbalance(rotor, plane) => rotor.permitted_gradient(m, value.about, *plane),
+            _ => nothing,
+        };
+        match (end, self.band(m)) {
+            (End::From, (Some(_), _)) => Some(value.minus(bound)),
+            (End::To, (_, Some(_))) => Some(bound.minus(value)),
+            _ => None,
+        }
+    }
+
+    /// What one end is like for a search over added masses. Products about the centre and an
+    /// outline with a side that bends the wrong way are not convex as a rule; where other limits
+    /// hold the centre, or the outline is kind, they may be.
+    pub fn shape(&self, end: End) -> Shape {
+        match (&self.quantity, end) {
+            (
+                Measured::Mass
+                | Measured::Centre(_)
+                | Measured::Station(_)
+                | Measured::Percent { .. }
+                | Measured::FromPlane(_)
+                | Measured::Reaction(_)
+                | Measured::Inertia { about: Some(_), .. },
+                _,
+            ) => Shape::Linear,
+            (Measured::Tip(_), End::From) => Shape::Linear,
+            (Measured::FromPoint(_) | Measured::FromLine(_) | Measured::Unbalance(..), End::To) => {
+                Shape::Cone
+            }
+            (
+                Measured::Inertia {
+                    row,
+                    column,
+                    about: None,
+                },
+                End::From,
+            ) if row == column => Shape::Cone,
+            _ => Shape::NotConvex,
+        }
+    }
+
+    fn judge_in(
+        &self,
+        value: f64,
+        (from, to): (Option<f64>, Option<f64>),
+        rounding: f64,
+    ) -> Judged {
+        let below = from.map(|from| value - from);
+        let above = to.map(|to| to - value);
         let (margin, nearest) = match (below, above) {
             (Some(b), Some(a)) if b <= a => (b, End::From),
             (Some(b), None) => (b, End::From),
@@ -129,9 +215,9 @@ impl Limit {
         } else {
             margin
         };
-        let base = match (self.from, self.to, self.quantity) {
-            (Some(from), Some(to), _) => Some((to - from, PercentOf::Range)),
-            (Some(end), None, Measured::Mass) | (None, Some(end), Measured::Mass) => {
+        let base = match (from, to) {
+            (Some(from), Some(to)) => Some((to - from, PercentOf::Range)),
+            (Some(end), None) | (None, Some(end)) if self.quantity.is_absolute() => {
                 Some((end, PercentOf::Limit))
             }
             _ => None,
@@ -144,8 +230,8 @@ impl Limit {
             quantity: self.quantity.name(),
             unit: self.quantity.unit(),
             value,
-            from: self.from,
-            to: self.to,
+            from,
+            to,
             margin,
             nearest,
             margin_percent: percent.map(|(p, _)| p),
@@ -160,6 +246,10 @@ impl Limit {
         }
     }
 }
+
+#[cfg(test)]
+#[path = "gradient_tests.rs"]
+mod gradient_tests;
 
 #[cfg(test)]
 mod tests {

@@ -5,6 +5,7 @@ use serde::Serialize;
 use super::Document;
 use super::digits::{at_most, length_in, significant};
 use super::footer::{CAUTION, footer, nominal};
+use super::statics_text::{self, readable};
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
 use super::words::{box_size, direction, point, point_in};
@@ -67,8 +68,10 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     } else if b.total.is_some() {
         out.push_str("\nno limits are stated\n");
     }
+    out.push_str(&statics_text::render(&b.statics, unit, look));
     out.push_str(&overlaps(b, unit, look));
     out.push_str(&nominal(&document.warnings));
+    out.push_str(&statics_text::caution(&b.statics, &b.limits));
     out.push_str(&format!("{CAUTION}\n"));
     out.push_str(&footer(document, look));
     out
@@ -281,15 +284,6 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
     out
 }
 
-/// A figure in the unit that people read it in, with that unit's symbol.
-fn readable(x: f64, si: &str, unit: LengthUnit) -> (f64, String) {
-    match si {
-        "m" => (length_in(x, unit), unit.symbol().to_owned()),
-        "m3" => (x * 1e6, "cm3".to_owned()),
-        other => (x, other.to_owned()),
-    }
-}
-
 fn expectations(b: &Balance, unit: LengthUnit, look: Look) -> String {
     let mut table = Table::new(vec![
         Column::text("part", "expected of"),
@@ -303,14 +297,14 @@ fn expectations(b: &Balance, unit: LengthUnit, look: Look) -> String {
     ]);
     for e in &b.expectations {
         let shown = |x: f64| {
-            let (x, _) = readable(x, e.unit, unit);
+            let (x, _) = readable(x, e.unit, e.quantity, unit);
             Cell::figure(significant(x, 6), x)
         };
         let (word, mark) = verdict(e.verdict);
         table.row(vec![
             Cell::text(&e.part),
             Cell::text(e.quantity),
-            Cell::text(&readable(0.0, e.unit, unit).1),
+            Cell::text(&readable(0.0, e.unit, e.quantity, unit).1),
             shown(e.expected),
             shown(e.tolerance),
             shown(e.value),
@@ -382,7 +376,7 @@ fn verdict(v: Verdict) -> (&'static str, Mark) {
     }
 }
 
-fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
+pub(super) fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
     let mut table = Table::new(vec![
         Column::text("name", "limit"),
         Column::text("quantity", "figure"),
@@ -396,7 +390,7 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
     ]);
     for l in limits {
         let shown = |x: f64| {
-            let (x, _) = readable(x, l.unit, unit);
+            let (x, _) = readable(x, l.unit, l.quantity, unit);
             let text = if l.unit == "m" {
                 fixed(x)
             } else {
@@ -427,7 +421,7 @@ fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
         table.row(vec![
             Cell::text(&l.name),
             Cell::text(l.quantity),
-            Cell::text(&readable(0.0, l.unit, unit).1),
+            Cell::text(&readable(0.0, l.unit, l.quantity, unit).1),
             shown(l.value),
             l.from.map_or_else(Cell::empty, shown),
             l.to.map_or_else(Cell::empty, shown),

@@ -1,6 +1,7 @@
 //! Every fault with its kind, its line, and the words that help.
 
 mod files;
+mod statics;
 mod values;
 
 use super::*;
