@@ -56,5 +56,6 @@ pub mod report;
 pub mod soundness;
 pub mod stream;
 pub mod text;
+pub mod uncertainty;
 
 pub use error::{Error, Kind, Result, Warning};

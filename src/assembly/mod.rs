@@ -24,6 +24,7 @@ mod choose;
 mod expand;
 mod expect;
 mod file;
+mod growth;
 mod load;
 mod notes;
 mod open;
@@ -36,9 +37,12 @@ mod resolve;
 mod rollup;
 mod schema;
 mod shape;
+mod smear;
 mod source;
+mod sources;
 mod substance;
 mod sum;
+mod sure;
 mod tree;
 
 #[cfg(test)]
@@ -46,16 +50,18 @@ mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Item, MeshChoice, Part, Pattern, Position,
-    Shape, Substance, Turn,
+    AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Maturity, MeshChoice, Part, Pattern,
+    Position, Shape, SmearEntry, SmearMass, Substance, Turn,
 };
+pub use growth::{Growth, MaturityRow, Standing};
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
 pub use overlap::{Overlap, Stand};
 pub use resolve::{Basis, Piece, Resolved, Source, Weighed, resolve};
-pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance};
+pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance, balance_with};
 pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
+pub use smear::Smeared;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
 
 /// Names as a list for a message, the first of them where there are very many.

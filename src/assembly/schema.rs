@@ -81,6 +81,22 @@ struct AssemblyFile {
     group: Option<Vec<Group>>,
     /// Bands that figures of the whole must stay in.
     limit: Option<Vec<Limit>>,
+    /// Mass that no mesh shows, placed with what it covers.
+    smear: Option<Vec<Smear>>,
+    /// Mass growth allowance of each maturity, in per cent; the names are the file's own.
+    allowance: Option<BTreeMap<String, Quantity>>,
+}
+
+/// Paint, welds, harness: mass that lies where other things are, in proportion to their mass.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Smear {
+    /// Its name; "smear of" what it covers where left out.
+    name: Option<String>,
+    /// A glob on paths of parts and items.
+    of: String,
+    /// Per cent of what it covers, or a mass over all of it; perhaps with a tolerance.
+    mass: Quantity,
 }
 
 /// The assembly itself.
@@ -151,6 +167,8 @@ struct Part {
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
+    /// How far along its design is: a name in [allowance].
+    maturity: Option<String>,
 }
 
 /// Whether repeats share one error of each tolerance, or have one each.
@@ -213,6 +231,8 @@ struct Item {
     inertia: Option<Inertia>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
+    /// How far along its design is: a name in [allowance].
+    maturity: Option<String>,
 }
 
 /// A solid cylinder along z.

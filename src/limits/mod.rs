@@ -89,6 +89,10 @@ pub struct Judged {
     pub unit: &'static str,
     /// What was found.
     pub value: f64,
+    /// The basic figure, where `value` is the predicted one: masses in an assembly whose parts
+    /// carry growth allowances.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub basic: Option<f64>,
     /// The least allowed value.
     pub from: Option<f64>,
     /// The greatest allowed value.
@@ -144,6 +148,7 @@ impl Limit {
             quantity: self.quantity.name(),
             unit: self.quantity.unit(),
             value,
+            basic: None,
             from: self.from,
             to: self.to,
             margin,

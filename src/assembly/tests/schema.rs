@@ -31,6 +31,7 @@ mirror = "x"
 measured = "6.31 kg ± 5 g"
 accept-open = "2 %"
 each = "independent"
+maturity = "layout"
 expect = { volume = "1 cm3", mass = "1 kg ± 50 %", size = [1, 2, 3], centre = [0, 0, 0] }
 [[part]]
 name = "second"
@@ -44,6 +45,7 @@ turn = { axis = "z", angle = "90 deg" }
 box = [1, 2, 3]
 count = 2
 each = "shared"
+maturity = "layout"
 [[item]]
 name = "roll"
 mass = "1 kg"
@@ -78,6 +80,12 @@ mass = { from = "1 kg", to = "2 kg" }
 centre.x = { from = 1, to = 2 }
 centre.y = { from = 1 }
 centre.z = { to = 2 }
+[[smear]]
+name = "paint"
+of = "frame*"
+mass = "3 % ± 1 %"
+[allowance]
+layout = "15 %"
 "#;
 
 fn bench() -> Bench {
