@@ -6,6 +6,7 @@ mod materials;
 mod properties;
 mod published;
 mod schema;
+mod sure;
 
 use std::collections::HashMap;
 use std::path::Path;

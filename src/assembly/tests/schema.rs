@@ -135,6 +135,7 @@ fn keys_of_reader_and_schema_agree() {
         ("inertia", vec!["Inertia"]),
         ("group", vec!["Group"]),
         ("limit", vec!["Limit"]),
+        ("smear", vec!["Smear"]),
         ("centre of a limit", vec!["Centre"]),
         ("band of a limit", vec!["Band", "MassBand"]),
     ];
