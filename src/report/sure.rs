@@ -11,6 +11,19 @@ const MOST_OF_IT: f64 = 0.8;
 /// And no more than this many.
 const NAMED: usize = 4;
 
+/// How far a figure may be off, behind it: `± u`, or the 95 % interval where that does not lie
+/// about the figure, as with a bias to one side. Figures are in the unit that they are shown in.
+pub(super) fn off(value: f64, standard: f64, [low, high]: [f64; 2], unit: &str) -> String {
+    if standard == 0.0 {
+        return String::new();
+    }
+    if (0.5 * (low + high) - value).abs() <= 1e-3 * standard {
+        return format!(" ± {}{unit}", significant(standard, 2));
+    }
+    let shown = |x: f64| figure(x, Some(standard));
+    format!(" (95 % from {} to {}{unit})", shown(low), shown(high))
+}
+
 /// The uncertainty of a whole: each figure with its standard uncertainty, 95 % interval and what
 /// drives it; growth and draws where there are any. Empty where nothing was computed.
 pub(super) fn render(b: &Balance, unit: LengthUnit, look: Look) -> String {
@@ -56,7 +69,7 @@ fn spreads(total: &Total, u: &Uncertainty, unit: LengthUnit) -> Table {
         Column::text("figure", "figure"),
         Column::text("unit", "unit"),
         Column::figures("value", "value", ""),
-        Column::figures("standard", "±", ""),
+        Column::figures("standard", "standard", ""),
         Column::figures("low_95", "95 % from", ""),
         Column::figures("high_95", "to", ""),
         Column::text("drivers", "what drives it (share of the variance)"),
@@ -170,7 +183,7 @@ pub(super) fn assumed(sources: &[Source]) -> String {
         )),
     }
     format!(
-        "± is one standard uncertainty, from {} sources after JCGM 100 (GUM): {}; tolerances are independent of each other, one that is stated once acts alike on all that it is stated of\n",
+        "standard is one standard uncertainty, as after ±; from {} sources after JCGM 100 (GUM): {}; tolerances are independent of each other, one that is stated once acts alike on all that it is stated of\n",
         count("rectangular") + count("normal") + count("interval"),
         said.join("; ")
     )
@@ -181,7 +194,7 @@ fn sampled(s: &Sampled, unit: LengthUnit, look: Look) -> String {
         Column::text("figure", "drawn figure"),
         Column::text("unit", "unit"),
         Column::figures("mean", "mean", ""),
-        Column::figures("standard", "±", ""),
+        Column::figures("standard", "standard", ""),
         Column::figures("low_95", "95 % from", ""),
         Column::figures("high_95", "to", ""),
     ]);

@@ -16,6 +16,8 @@ const CHUNK: u64 = 1024;
 /// Quantiles are taken of this many of the first draws: they are then good to 0.6 % of half of
 /// the interval, and memory stays bounded.
 const KEPT: u64 = 1 << 18;
+/// Chunks in memory at once.
+const BATCH: usize = 1024;
 /// The most draws.
 pub const MOST_SAMPLES: u64 = 1_000_000_000;
 
@@ -151,7 +153,6 @@ pub fn sample(
             terms.push(term.as_ref());
         }
     }
-    // Limits name what they hold; figures of the whole are `Sync` by value, bands by reference.
     let judge = |m: &Moments| -> Vec<bool> {
         bands
             .iter()
@@ -200,7 +201,7 @@ pub fn sample(
         }
         out
     };
-    let chunks: Vec<Chunk> = split(sampling.n.div_ceil(CHUNK), &chunk);
+    let count = sampling.n.div_ceil(CHUNK);
     let mut all = Chunk {
         count: 0,
         mass: [0.0; 2],
@@ -208,24 +209,14 @@ pub fn sample(
         held: vec![0; bands.len()],
         kept: Vec::new(),
     };
-    for c in chunks {
-        all.count += c.count;
-        add(&mut all.mass, c.mass);
-        for (sum, more) in all.sums.iter_mut().zip(c.sums) {
-            add(sum, more);
+    for from in (0..count).step_by(BATCH) {
+        let to = (from + BATCH as u64).min(count);
+        let chunks: Vec<Chunk> = (from..to).into_par_iter().map(chunk).collect();
+        for c in chunks {
+            all.take(c);
         }
-        for (held, more) in all.held.iter_mut().zip(c.held) {
-            *held += more;
-        }
-        all.kept.extend(c.kept);
     }
     Some(all.answer(&stated, bands, linear, sampling))
-}
-
-/// Chunks in their order. Bands need not be shareable between threads, so they are judged through
-/// the caller's closure, which must be `Sync`.
-fn split(count: u64, chunk: &(dyn Fn(u64) -> Chunk + Sync)) -> Vec<Chunk> {
-    (0..count).into_par_iter().map(chunk).collect()
 }
 
 fn add(sum: &mut [f64; 2], more: [f64; 2]) {
@@ -253,6 +244,18 @@ fn figures(whole: &Moments) -> Option<[f64; FIGURES]> {
 }
 
 impl Chunk {
+    fn take(&mut self, c: Self) {
+        self.count += c.count;
+        add(&mut self.mass, c.mass);
+        for (sum, more) in self.sums.iter_mut().zip(c.sums) {
+            add(sum, more);
+        }
+        for (held, more) in self.held.iter_mut().zip(c.held) {
+            *held += more;
+        }
+        self.kept.extend(c.kept);
+    }
+
     fn answer(
         &self,
         stated: &[f64; FIGURES],
