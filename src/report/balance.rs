@@ -13,7 +13,7 @@ use crate::assembly::{Balance, Basis, MassBounds, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, PercentOf, Verdict};
 use crate::quantity::LengthUnit;
-use crate::uncertainty::Uncertainty;
+use crate::uncertainty::{Spread, Uncertainty};
 
 /// The command's part of the document.
 #[derive(Clone, Debug, Serialize)]
@@ -266,17 +266,16 @@ fn whole(
     look: Look,
 ) -> String {
     let mut out = format!("\n{}\n", look.marked("the whole", Mark::Heading));
-    let off = u
-        .filter(|u| u.mass_kg.standard > 0.0)
-        .map_or(String::new(), |u| {
-            format!(" ± {} kg", significant(u.mass_kg.standard, 2))
-        });
+    let off = u.map_or(String::new(), |u| {
+        let m = &u.mass_kg;
+        sure::off(t.mass_kg, m.standard, [m.low_95, m.high_95], " kg")
+    });
     out.push_str(&format!("mass           {} kg{off}\n", total_mass(t, u)));
     out.push_str(&format!(
         "balance point  {}   frame: the assembly's axes and origin\n",
         u.map_or_else(
             || point_in(&t.centre_of_mass_m, &t.bounds_m, unit),
-            |u| sure_point(&t.centre_of_mass_m, &u.centre_of_mass_m.standard, unit)
+            |u| sure_point(&t.centre_of_mass_m, &u.centre_of_mass_m, unit)
         )
     ));
     out.push_str(&format!(
@@ -344,14 +343,16 @@ fn whole(
 }
 
 /// A point with the standard uncertainty of each coordinate.
-fn sure_point(at: &[f64; 3], standard: &[f64; 3], unit: LengthUnit) -> String {
+fn sure_point(at: &[f64; 3], off: &Spread<[f64; 3]>, unit: LengthUnit) -> String {
     let shown = [0, 1, 2].map(|k| {
-        let (x, u) = (length_in(at[k], unit), length_in(standard[k], unit));
-        if u > 0.0 {
-            format!("{} ± {}", figure(x, Some(u)), significant(u, 2))
+        let figures = [at[k], off.standard[k], off.low_95[k], off.high_95[k]];
+        let [x, u, low, high] = figures.map(|x| length_in(x, unit));
+        let text = if u > 0.0 {
+            figure(x, Some(u))
         } else {
             fixed(x)
-        }
+        };
+        text + &sure::off(x, u, [low, high], "")
     });
     format!("({}) {}", shown.join(", "), unit.symbol())
 }

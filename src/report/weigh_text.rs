@@ -368,16 +368,21 @@ pub(super) fn in_full(
 /// The mass with how far it may be off, and why.
 fn mass_line(kg: f64, u: &Uncertainty) -> String {
     let (scale, m) = (Scale::for_mass(kg), &u.mass_kg);
-    let standard = scale.of(m.standard);
-    let shown = |x: f64| figure(scale.of(x), Some(standard));
+    let [standard, low, high] = [m.standard, m.low_95, m.high_95].map(|x| scale.of(x));
+    let shown = |x: f64| figure(x, Some(standard));
+    // Never ± about a figure that the interval does not lie about.
+    let off = super::sure::off(scale.of(kg), standard, [low, high], "");
+    let off = match off.contains('±') {
+        true => format!("{off} {} (standard uncertainty)", scale.symbol),
+        false => format!(" {}", scale.symbol),
+    };
     format!(
-        "mass  {} ± {} {s} (standard uncertainty), 95 % from {} to {} {s}; by {}\n",
-        shown(kg),
-        significant(standard, 2),
-        shown(m.low_95),
-        shown(m.high_95),
+        "mass  {}{off}, 95 % from {} to {} {}; by {}\n",
+        shown(scale.of(kg)),
+        shown(low),
+        shown(high),
+        scale.symbol,
         super::sure::drivers(&m.drivers, |s| *s),
-        s = scale.symbol,
     )
 }
 
