@@ -59,5 +59,6 @@ pub mod soundness;
 pub mod statics;
 pub mod stream;
 pub mod text;
+pub mod uncertainty;
 
 pub use error::{Error, Kind, Result, Warning};

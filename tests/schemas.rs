@@ -135,7 +135,7 @@ fn assemblies_and_materials_answer_as_the_schemas_say() {
     assemblies.extend(files("demo-data", &["toml"], true));
     assemblies.push("fixtures/assemblies/plain.json".into());
     for path in &assemblies {
-        for more in [&[][..], &["--about", "1,2,3"][..]] {
+        for more in [&[][..], &["--about", "1,2,3", "--samples", "64"][..]] {
             let arguments = [&["balance", "--json", path.as_str()][..], more].concat();
             *answered
                 .entry(schemas.hold(&arguments, &mut faults))

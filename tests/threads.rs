@@ -50,6 +50,7 @@ fn every_command_on_the_demo_and_the_fixtures() {
     same_on_any_threads(&["materials", "steel", "--json"]);
     let assemblies = files("demo-data", &["toml"], true);
     assert!(!assemblies.is_empty());
+    same_on_any_threads(&["balance", &assemblies[0], "--json", "--samples", "3000"]);
     for file in assemblies
         .iter()
         .chain(&files("fixtures/assemblies", &["toml"], false))

@@ -26,7 +26,22 @@ pub(super) struct Instance<'f> {
     pub(super) scopes: Rc<[Scope<'f>]>,
     /// From its own frame to the assembly's.
     pub(super) placement: Placement,
+    /// What its placement is made of, outermost first; the last is its own.
+    pub(super) levels: Rc<[Level<'f>]>,
     pub(super) what: What<'f>,
+}
+
+/// One entry's own placement within a thing's: a group's, or that of the thing itself.
+#[derive(Clone, Debug)]
+pub(super) struct Level<'f> {
+    pub(super) position: &'f Position,
+    /// Which of its repeats.
+    pub(super) nth: usize,
+    /// From the frame that the position is stated in to the assembly's.
+    pub(super) outer: Placement,
+    /// Path of the entry, without and with the marks of repeats.
+    pub(super) entry_path: Rc<str>,
+    pub(super) path: Rc<str>,
 }
 
 /// A part or an item.
@@ -179,6 +194,7 @@ pub(super) fn expand(file: &AssemblyFile) -> Vec<Instance<'_>> {
             path_from: 0,
             entry_path_from: 0,
         }]),
+        levels: Rc::new([]),
     };
     walk(&file.entries, &place, &mut out);
     out
@@ -193,6 +209,7 @@ struct Place<'f> {
     entry_path: String,
     groups: Rc<[String]>,
     scopes: Rc<[Scope<'f>]>,
+    levels: Rc<[Level<'f>]>,
 }
 
 fn walk<'f>(entries: &'f [Entry], here: &Place<'f>, out: &mut Vec<Instance<'f>>) {
@@ -205,6 +222,14 @@ fn walk<'f>(entries: &'f [Entry], here: &Place<'f>, out: &mut Vec<Instance<'f>>)
             };
             let entry_path = format!("{}{name}", here.entry_path);
             let placement = placement.then(&here.placement);
+            let level = Level {
+                position: entry.position(),
+                nth: n,
+                outer: here.placement,
+                entry_path: entry_path.as_str().into(),
+                path: path.as_str().into(),
+            };
+            let levels = here.levels.iter().cloned().chain([level]).collect();
             let what = match entry {
                 Entry::Part(p) => What::Part(p),
                 Entry::Item(i) => What::Item(i),
@@ -216,6 +241,7 @@ fn walk<'f>(entries: &'f [Entry], here: &Place<'f>, out: &mut Vec<Instance<'f>>)
                         entry_path: entry_path + "/",
                         groups,
                         scopes: here.scopes.clone(),
+                        levels,
                     };
                     walk(&group.entries, &inside, out);
                     if let Some(file) = &group.include {
@@ -236,6 +262,7 @@ fn walk<'f>(entries: &'f [Entry], here: &Place<'f>, out: &mut Vec<Instance<'f>>)
                 groups: here.groups.clone(),
                 scopes: here.scopes.clone(),
                 placement,
+                levels,
                 what,
             });
         }

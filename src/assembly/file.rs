@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use globset::GlobMatcher;
-use nalgebra::{Matrix3, Vector3};
+use nalgebra::Vector3;
 
 use crate::limits::Limit;
 use crate::quantity::{LengthUnit, Quantity};
@@ -24,6 +24,8 @@ pub struct AssemblyFile {
     pub entries: Vec<Entry>,
     /// The limits, one a quantity, in file order.
     pub limits: Vec<Limit>,
+    /// Mass that no mesh shows, in file order.
+    pub smears: Vec<SmearEntry>,
     /// Where it stands, if that is stated.
     pub stand: Option<Stand>,
     /// What it hangs from, if that is stated.
@@ -43,6 +45,38 @@ pub struct Hang {
     pub hook: Vector3<f64>,
     /// None, or two to four.
     pub lines: Vec<Line>,
+}
+
+/// Mass that no mesh shows (paint, welds, harness), placed with what it covers.
+#[derive(Clone, Debug)]
+pub struct SmearEntry {
+    /// Its line in the file.
+    pub line: u64,
+    /// Its own name, or `smear of` its pattern.
+    pub name: String,
+    /// Matches paths of parts and items within this file.
+    pub of: Pattern,
+    /// How much: a fraction of what it covers, or a mass in kg.
+    pub mass: SmearMass,
+}
+
+/// How much of a smear there is.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum SmearMass {
+    /// Of the mass that it covers.
+    Fraction(Quantity),
+    /// kg, over all that it covers.
+    Mass(Quantity),
+}
+
+/// How far along a part's design is, and the growth in mass that is still expected of it (mass
+/// growth allowance of AIAA S-120A and ISO 22010).
+#[derive(Clone, Debug, PartialEq)]
+pub struct Maturity {
+    /// Such as `layout`; a key of the file's `[allowance]`.
+    pub name: String,
+    /// Fraction of the basic mass.
+    pub allowance: f64,
 }
 
 /// A material that was chosen, with its density.
@@ -174,6 +208,8 @@ pub struct Part {
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.
     pub each: Each,
+    /// How far along it is.
+    pub maturity: Option<Maturity>,
 }
 
 /// A mesh file and, of its bodies, all or those of one name.
@@ -218,6 +254,8 @@ pub struct Item {
     pub position: Position,
     /// How its repeats share their tolerances.
     pub each: Each,
+    /// How far along it is.
+    pub maturity: Option<Maturity>,
 }
 
 /// How an item's mass is spread about its centre, in its own axes.
@@ -236,8 +274,9 @@ pub enum Shape {
     },
     /// A solid sphere of this radius, in m.
     Sphere(Quantity),
-    /// A stated tensor about the centre, kg m²; off-diagonals are the tensor's own elements, −∫xy.
-    Inertia(Matrix3<f64>),
+    /// A stated tensor about the centre, kg m²: xx, yy, zz, xy, xz, yz; the products are the
+    /// tensor's own elements, −∫xy.
+    Inertia(Box<[Quantity; 6]>),
 }
 
 /// Entries under a placement of their own.

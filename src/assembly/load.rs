@@ -11,7 +11,7 @@ use sha2::{Digest as _, Sha256};
 use super::expand;
 use super::file::{AssemblyFile, MeshChoice};
 use super::reader::Shared;
-use super::{read, tree};
+use super::{read, smear, tree};
 use crate::error::{Error, Kind, Warning};
 
 /// The deepest nesting of groups and included files.
@@ -55,6 +55,9 @@ pub fn load(path: &Path) -> Result<Loaded, Vec<Error>> {
         return Err(errors);
     };
     errors.extend(expand::faults(&file));
+    if errors.is_empty() {
+        errors.extend(smear::faults(&file));
+    }
     if !errors.is_empty() {
         return Err(errors);
     }
@@ -107,17 +110,6 @@ impl Loader {
         let file = read::file(&mut shared, &entries, self);
         self.open.pop();
         self.errors[slot] = shared.take_faults();
-        if let Some(line) = shared.tolerances.take().into_iter().min() {
-            self.warnings.push(Warning {
-                kind: "tolerances-ignored".into(),
-                message:
-                    "tolerances were stated, and the uncertainty of the result is not computed"
-                        .into(),
-                path: Some(path.to_string_lossy().into_owned()),
-                line: Some(line),
-                advice: "read the figures as nominal values".into(),
-            });
-        }
         if depth > 0 && !file.limits.is_empty() {
             let names: Vec<&str> = file.limits.iter().map(|l| l.name.as_str()).collect();
             self.warnings.push(Warning {

@@ -24,6 +24,7 @@ mod choose;
 mod expand;
 mod expect;
 mod file;
+mod growth;
 mod load;
 mod notes;
 mod open;
@@ -37,10 +38,13 @@ mod resolve;
 mod rollup;
 mod schema;
 mod shape;
+mod smear;
 mod source;
+mod sources;
 mod standing;
 mod substance;
 mod sum;
+mod sure;
 mod tree;
 
 #[cfg(test)]
@@ -48,18 +52,18 @@ mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Hang, Item, MeshChoice, Part, Pattern,
-    Position, Shape, Substance, Turn,
+    AssemblyFile, Assign, Each, Entry, Expect, Group, Hang, Item, Maturity, MeshChoice, Part,
+    Pattern, Position, Shape, SmearEntry, SmearMass, Substance, Turn,
 };
+pub use growth::{Growth, MaturityRow, Standing};
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
 pub use overlap::{Overlap, Stand};
 pub use resolve::{Basis, Piece, Resolved, Source, Weighed, resolve};
-pub use rollup::{
-    Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance, balance_watched,
-};
+pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance, balance_with};
 pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
+pub use smear::Smeared;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
 pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
 

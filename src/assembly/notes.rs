@@ -6,7 +6,6 @@ use super::assign::Used;
 use super::expand::Instance;
 use super::file::{AssemblyFile, Entry, Part};
 use super::load::Loaded;
-use super::resolve::{Piece, Resolved};
 use crate::error::Warning;
 
 /// A measured part whose implied density lies well away from that of its material. Spreads of
@@ -97,28 +96,5 @@ fn includes<'f>(entries: &'f [Entry], files: &mut Vec<&'f AssemblyFile>) {
             files.extend(group.include.as_deref());
             includes(&group.entries, files);
         }
-    }
-}
-
-/// Densities of the table carry a spread too: where nothing else has said that tolerances are
-/// ignored, this does.
-pub(super) fn table_tolerances(out: &mut Resolved) {
-    let kind = "tolerances-ignored";
-    let spread = |p: &Piece| {
-        p.material
-            .as_ref()
-            .is_some_and(|m| m.density.tolerance.is_some())
-    };
-    let any = out.weighed.iter().flat_map(|w| &w.pieces).any(spread);
-    if any && !out.warnings.iter().any(|w| w.kind == kind) {
-        out.warnings.push(Warning {
-            kind: kind.into(),
-            message:
-                "the densities have tolerances, and the uncertainty of the result is not computed"
-                    .into(),
-            path: None,
-            line: None,
-            advice: "read the figures as nominal values".into(),
-        });
     }
 }

@@ -6,12 +6,14 @@ use std::path::Path;
 use globset::GlobBuilder;
 
 use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, Pattern};
+use super::growth::{self, Allowances};
 use super::load::Loader;
 use super::position;
 use super::read_limits;
 use super::read_statics;
 use super::reader::{Reader, Shared};
 use super::shape;
+use super::smear;
 use super::substance::{self, OwnMaterials};
 use super::tree;
 use crate::error::Kind;
@@ -21,6 +23,7 @@ use crate::quantity::{Dimension, LengthUnit, Quantity};
 pub(super) struct Context<'a, 'p> {
     pub(super) shared: &'a Shared<'p>,
     pub(super) own: &'a OwnMaterials,
+    pub(super) allowances: &'a Allowances,
     pub(super) loader: &'a mut Loader,
 }
 
@@ -58,6 +61,7 @@ pub(super) fn file(
     let root = Reader::new(shared, entries, "assembly file", 1, 0);
     root.entry("assembly");
     let own = substance::own_materials(&root);
+    let allowances = growth::allowances(&root);
     let assigns = root.tables("assign");
     let assigns = assigns
         .into_iter()
@@ -66,12 +70,14 @@ pub(super) fn file(
     let mut context = Context {
         shared,
         own: &own,
+        allowances: &allowances,
         loader,
     };
     let entries = context.entries(&root, 0);
     let standing = read_statics::supports(&root);
     let hang = read_statics::hang(&root);
     let limits = read_limits::read(&root, &standing);
+    let smears = smear::read(&root);
     root.finish();
     AssemblyFile {
         path: shared.path.to_path_buf(),
@@ -84,6 +90,7 @@ pub(super) fn file(
         hang,
         gravity: standing.gravity,
         up: standing.up,
+        smears,
     }
 }
 
@@ -131,7 +138,7 @@ fn assign(r: Reader<'_, '_>, own: &OwnMaterials) -> Option<Assign> {
     })
 }
 
-fn pattern(r: &Reader<'_, '_>, key: &'static str) -> Option<Pattern> {
+pub(super) fn pattern(r: &Reader<'_, '_>, key: &'static str) -> Option<Pattern> {
     let (text, line) = r.text(key)?;
     match GlobBuilder::new(&text)
         .literal_separator(false)
@@ -195,12 +202,11 @@ impl Context<'_, '_> {
         let material = substance::chosen(&r, self.own);
         let position = position::read(&r, true);
         let measured = measured(&r);
-        let accept_open = r
-            .quantity("accept-open", Dimension::Fraction)
-            .map(|(q, _)| q.value);
+        let accept_open = r.exactly("accept-open", Dimension::Fraction);
         let join = join(&r);
         let expect = expect(&r);
         let each = each(&r);
+        let maturity = self.allowances.maturity(&r);
         let mesh = r
             .text("mesh")
             .and_then(|(typed, line)| self.loader.mesh(self.shared, &typed, line));
@@ -230,6 +236,7 @@ impl Context<'_, '_> {
             join,
             expect,
             each,
+            maturity,
         })
     }
 
@@ -246,6 +253,7 @@ impl Context<'_, '_> {
         let shape = shape::read(&r, mass.map(|(m, _)| m.value));
         let position = position::read(&r, false);
         let each = each(&r);
+        let maturity = self.allowances.maturity(&r);
         let line = r.line;
         r.finish();
         Some(Item {
@@ -255,6 +263,7 @@ impl Context<'_, '_> {
             shape,
             position,
             each,
+            maturity,
         })
     }
 
@@ -353,15 +362,12 @@ fn each(r: &Reader<'_, '_>) -> Each {
 
 fn expect(r: &Reader<'_, '_>) -> Option<Expect> {
     let e = r.table("expect", "expect")?;
-    // Its tolerances are used, so they are not among those that an output may ignore.
-    let before = e.shared.tolerances.borrow().len();
     let expect = Expect {
         volume: e.quantity("volume", Dimension::Volume).map(|(q, _)| q),
         mass: e.quantity("mass", Dimension::Mass).map(|(q, _)| q),
         size: e.lengths("size").map(|(q, _)| q),
         centre: e.lengths("centre").map(|(q, _)| q),
     };
-    e.shared.tolerances.borrow_mut().truncate(before);
     e.finish();
     Some(expect)
 }

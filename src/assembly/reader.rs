@@ -15,7 +15,7 @@ use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
 const NOT_READ: &[&str] = &[
-    "ballast", "case", "drain", "frame", "gravity", "made", "motion", "phase", "smear", "tank",
+    "ballast", "case", "drain", "frame", "gravity", "made", "motion", "phase", "tank",
 ];
 
 /// What the readers of one file share.
@@ -30,8 +30,6 @@ pub(super) struct Shared<'p> {
     faults: RefCell<Vec<Error>>,
     /// Every table that was read, by what it is, with the keys asked of it.
     known: RefCell<BTreeMap<&'static str, BTreeSet<&'static str>>>,
-    /// The lines on which a tolerance was stated.
-    pub(super) tolerances: RefCell<Vec<u64>>,
 }
 
 impl<'p> Shared<'p> {
@@ -43,7 +41,6 @@ impl<'p> Shared<'p> {
             broken: !faults.is_empty(),
             faults: RefCell::new(faults),
             known: RefCell::default(),
-            tolerances: RefCell::default(),
         }
     }
 
@@ -148,6 +145,17 @@ impl<'a, 'p> Reader<'a, 'p> {
     pub(super) fn quantity(&self, key: &'static str, of: Dimension) -> Option<(Quantity, u64)> {
         let node = &self.entry(key)?.node;
         Some((quantity(self.shared, node, key, of)?, node.line))
+    }
+
+    /// A quantity that has no business with a tolerance.
+    pub(super) fn exactly(&self, key: &'static str, of: Dimension) -> Option<f64> {
+        let (q, line) = self.quantity(key, of)?;
+        if q.tolerance.is_some() {
+            let message = format!("`{key}` has a tolerance");
+            self.shared
+                .fault(line, Kind::Usage, message, "state it without ±");
+        }
+        Some(q.value)
     }
 
     /// Three lengths.
@@ -296,12 +304,7 @@ pub(super) fn quantity(
         }
     };
     match read {
-        Ok(q) => {
-            if q.tolerance.is_some() {
-                shared.tolerances.borrow_mut().push(node.line);
-            }
-            Some(q)
-        }
+        Ok(q) => Some(q),
         Err(e) => {
             let message = format!("`{key}`: {}", e.message);
             shared.fault(node.line, e.kind, message, e.advice);

@@ -16,6 +16,7 @@ use super::load::{Input, Loaded};
 use super::open::Capped;
 use super::open::{self, MassBounds};
 use super::overlap::Stand;
+use super::smear::{self, Smeared};
 use super::source::{MeshBody, MeshFiles};
 use super::{listed, notes, sum};
 use crate::error::{Error, Kind, Warning};
@@ -50,6 +51,8 @@ pub enum Source {
     },
     /// A bought-in item.
     Item,
+    /// Mass that no mesh shows.
+    Smear,
 }
 
 /// The mass of one body of a part, where it stands in the assembly.
@@ -101,6 +104,8 @@ pub struct Resolved {
     pub warnings: Vec<Warning>,
     /// The assembly files, then the meshes.
     pub inputs: Vec<Input>,
+    /// What the smears among `weighed` cover.
+    pub smears: Vec<Smeared>,
 }
 
 /// Weighs every thing of an assembly.
@@ -125,6 +130,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
         refused: Vec::new(),
         warnings: loaded.warnings.clone(),
         inputs: loaded.inputs.clone(),
+        smears: Vec::new(),
     };
     for instance in &instances {
         let weighed = match instance.what {
@@ -159,7 +165,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
     }
     work.choice.unused_bodies(&mut out.warnings);
     notes::unused_rules(loaded, &work.used, &mut out.warnings);
-    notes::table_tolerances(&mut out);
+    smear::weigh(&instances, &mut out);
     for path in &work.choice.order {
         out.inputs.extend(meshes.input(path));
         out.inputs.extend(meshes.beside(path));

@@ -2,19 +2,21 @@
 
 use nalgebra::{Matrix3, Vector3};
 use serde::{Serialize, Serializer};
-use serde_json::Value;
 
 use super::expect::Expectation;
+use super::growth::Growth;
 use super::load::Loaded;
 use super::open::{self, MassBounds};
 use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
 use super::standing::{self, Statics};
 use super::sum;
+use super::sure::Sure;
 use crate::error::{Error, Kind, Warning};
 use crate::limits::{Judged, Verdict};
 use crate::moments::{Moments, principal};
 use crate::progress::Progress;
+use crate::uncertainty::{Sampling, Uncertainty};
 
 /// The answer to `balance`. Its fields are those of the JSON document; SI units, in the names;
 /// lengths and axes are the assembly's.
@@ -43,8 +45,14 @@ pub struct Balance {
     /// What the figures throw doubt on.
     #[serde(skip)]
     pub warnings: Vec<Warning>,
-    /// null: not computed.
-    pub uncertainty: Option<Value>,
+    /// How far the figures may be off; null where nothing in the assembly has a tolerance.
+    pub uncertainty: Option<Uncertainty>,
+    /// Tolerances were stated, and yet nothing bounds the figures.
+    #[serde(skip)]
+    pub unbounded: bool,
+    /// Basic and predicted mass; absent where no part carries a maturity.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub growth: Option<Growth>,
     /// Parts against the figures that they must have, in file order.
     pub expectations: Vec<Expectation>,
     /// Why there is no total.
@@ -86,7 +94,7 @@ pub struct Total {
 pub struct PartRow {
     /// Such as `boom/nozzle#2`.
     pub path: String,
-    /// `{"file","body","bodies"}`, or `"item"`.
+    /// `{"file","body","bodies"}`, `"item"`, or `"smear"`.
     #[serde(serialize_with = "source")]
     pub source: Source,
     /// Its material; null for an item, for a measured part that names none, and for several.
@@ -96,6 +104,16 @@ pub struct PartRow {
     pub materials: Vec<Option<String>>,
     /// kg.
     pub mass_kg: f64,
+    /// Standard uncertainty of the mass; null where it was not computed.
+    pub mass_standard_kg: Option<f64>,
+    /// Standard uncertainty of the centre; null where it was not computed.
+    pub centre_standard_m: Option<[f64; 3]>,
+    /// How far along its design is, where that is stated.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub maturity: Option<String>,
+    /// With its growth allowance, where it has a maturity.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub predicted_mass_kg: Option<f64>,
     /// What the mass rests on.
     pub basis: Basis,
     /// How far its figures may be off, where its mesh is open; absent where it is closed.
@@ -127,6 +145,8 @@ pub struct MaterialRow {
     pub density_kg_m3: Option<f64>,
     /// kg.
     pub mass_kg: f64,
+    /// Its standard uncertainty; null where it was not computed.
+    pub mass_standard_kg: Option<f64>,
     /// Of the total.
     pub share_of_mass: Option<f64>,
     /// How many things have it.
@@ -142,6 +162,8 @@ pub struct GroupRow {
     pub depth: usize,
     /// kg.
     pub mass_kg: f64,
+    /// Its standard uncertainty; null where it was not computed.
+    pub mass_standard_kg: Option<f64>,
     /// m.
     pub centre_of_mass_m: Option<[f64; 3]>,
     /// Of the total.
@@ -157,6 +179,8 @@ pub struct BasisRow {
     pub basis: Basis,
     /// kg.
     pub mass_kg: f64,
+    /// Its standard uncertainty; null where it was not computed.
+    pub mass_standard_kg: Option<f64>,
     /// Of the total.
     pub share_of_mass: Option<f64>,
     /// How many things rest on it.
@@ -166,6 +190,7 @@ pub struct BasisRow {
 fn source<S: Serializer>(source: &Source, s: S) -> Result<S::Ok, S::Error> {
     match source {
         Source::Item => s.serialize_str("item"),
+        Source::Smear => s.serialize_str("smear"),
         Source::Mesh { file, body, bodies } => {
             let value = serde_json::json!({ "file": file, "body": body, "bodies": bodies });
             value.serialize(s)
@@ -194,16 +219,17 @@ impl Balance {
 /// # Errors
 /// `empty` where nothing has any mass, `not-finite` where a sum is too large for a double.
 pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Error>> {
-    balance_watched(loaded, resolved, Progress::NONE)
+    balance_with(loaded, resolved, None, Progress::NONE)
 }
 
-/// As [`balance`], and says how far it is.
+/// As [`balance`], with the uncertainty sampled too where asked; says how far it is.
 ///
 /// # Errors
 /// As [`balance`].
-pub fn balance_watched(
+pub fn balance_with(
     loaded: &Loaded,
     resolved: &Resolved,
+    sampling: Option<Sampling>,
     progress: Progress<'_>,
 ) -> Result<Balance, Vec<Error>> {
     let weighed = &resolved.weighed;
@@ -214,9 +240,16 @@ pub fn balance_watched(
         None => Some(total(weighed).map_err(|e| vec![e.in_file(&loaded.file.path)])?),
     };
     let mass = total.as_ref().map(|t| t.mass_kg);
+    let mut sure = total
+        .as_ref()
+        .and_then(|total| Sure::of(loaded, resolved, &total.moments));
+    if let (Some(sure), Some(sampling)) = (&mut sure, sampling) {
+        sure.sample(&loaded.file.limits, sampling);
+    }
+    let sure = sure.as_ref();
     let limits = total.as_ref().map_or_else(Vec::new, |total| {
         let limits = loaded.file.limits.iter();
-        limits.map(|limit| judged(limit, total)).collect()
+        limits.map(|limit| judged(limit, total, sure)).collect()
     });
     let (statics, warnings) = match &total {
         Some(t) => {
@@ -227,29 +260,45 @@ pub fn balance_watched(
     };
     Ok(Balance {
         name: loaded.file.name.clone(),
-        parts: weighed.iter().map(|w| part_row(w, mass)).collect(),
-        by_material: by_material(weighed, mass),
-        by_group: by_group(weighed, mass),
-        by_basis: by_basis(weighed, mass),
+        parts: weighed
+            .iter()
+            .enumerate()
+            .map(|(n, w)| part_row(n, w, mass, sure))
+            .collect(),
+        by_material: by_material(weighed, mass, sure),
+        by_group: by_group(weighed, mass, sure),
+        by_basis: by_basis(weighed, mass, sure),
         total,
         overlaps: overlap::overlaps(weighed, progress),
         limits,
         statics,
         warnings,
-        uncertainty: None,
+        uncertainty: sure.and_then(|s| s.uncertainty.clone()),
+        unbounded: sure.is_some_and(|s| s.unbounded),
+        growth: sure.and_then(|s| s.growth.clone()),
         expectations: resolved.expectations.clone(),
         error,
         more: refused.collect(),
     })
 }
 
-fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
+fn judged(limit: &crate::limits::Limit, total: &Total, sure: Option<&Sure>) -> Judged {
     let [lo, hi] = total.bounds_m.map(Vector3::from);
-    open::unsure(
-        limit.judge_whole(&total.moments, (hi - lo).norm()),
-        &limit.quantity,
-        total.estimate.as_ref(),
-    )
+    let diagonal = (hi - lo).norm();
+    let stated = limit.judge_whole(&total.moments, diagonal);
+    let value = stated.value;
+    let judged = match sure.and_then(|s| s.predicted(&limit.quantity)) {
+        Some(predicted) => {
+            let rounding = limit.quantity.rounding(&total.moments, diagonal);
+            limit.judge(predicted, rounding)
+        }
+        None => stated,
+    };
+    let judged = open::unsure(judged, &limit.quantity, total.estimate.as_ref());
+    match sure {
+        Some(sure) => sure.judge(limit, value, judged),
+        None => judged,
+    }
 }
 
 fn total(weighed: &[Weighed]) -> Result<Total, Error> {
@@ -309,7 +358,9 @@ fn share(of: f64, mass: Option<f64>) -> Option<f64> {
     mass.map(|mass| of / mass)
 }
 
-fn part_row(w: &Weighed, mass: Option<f64>) -> PartRow {
+fn part_row(n: usize, w: &Weighed, mass: Option<f64>, sure: Option<&Sure>) -> PartRow {
+    let (mass_standard_kg, centre_standard_m) = sure.and_then(|s| s.standards([n])).unzip();
+    let (maturity, predicted_mass_kg) = sure.and_then(|s| s.maturity(n, w.moments.zeroth)).unzip();
     let mut pieces = w.pieces.iter().map(|p| p.material.as_ref());
     let first = pieces.next().flatten();
     let one = pieces.all(|m| m == first);
@@ -325,6 +376,10 @@ fn part_row(w: &Weighed, mass: Option<f64>) -> PartRow {
             w.pieces.iter().map(name).collect()
         },
         mass_kg: w.moments.zeroth,
+        mass_standard_kg,
+        centre_standard_m,
+        maturity,
+        predicted_mass_kg,
         basis: w.basis,
         estimate: w.estimate,
         implied_density_kg_m3: w.implied_density,
@@ -365,7 +420,12 @@ fn grouped<'t, K: PartialEq, T>(
     groups
 }
 
-fn by_material(weighed: &[Weighed], mass: Option<f64>) -> Vec<MaterialRow> {
+/// Standard uncertainty of the mass of some things.
+fn mass_standard(sure: Option<&Sure>, things: impl IntoIterator<Item = usize>) -> Option<f64> {
+    sure?.standards(things).map(|(mass, _)| mass)
+}
+
+fn by_material(weighed: &[Weighed], mass: Option<f64>, sure: Option<&Sure>) -> Vec<MaterialRow> {
     let mut owners = Vec::new();
     for (n, w) in weighed.iter().enumerate() {
         owners.extend(w.pieces.iter().map(|p| (n, p)));
@@ -382,11 +442,23 @@ fn by_material(weighed: &[Weighed], mass: Option<f64>) -> Vec<MaterialRow> {
         let kg = sum::sum(owned.iter().map(|(_, p)| p.moments.zeroth));
         let mut parts: Vec<usize> = owned.iter().map(|(n, _)| *n).collect();
         parts.dedup();
+        // A part of several materials is not told apart here.
+        let whole = parts
+            .iter()
+            .map(|n| weighed[*n].pieces.len())
+            .sum::<usize>()
+            == owned.len();
+        let standard = if whole {
+            mass_standard(sure, parts.iter().copied())
+        } else {
+            None
+        };
         let (material, density_kg_m3) = key.unzip();
         MaterialRow {
             material,
             density_kg_m3,
             mass_kg: kg,
+            mass_standard_kg: standard,
             share_of_mass: share(kg, mass),
             parts: parts.len(),
         }
@@ -394,14 +466,16 @@ fn by_material(weighed: &[Weighed], mass: Option<f64>) -> Vec<MaterialRow> {
     rows.collect()
 }
 
-fn by_group(weighed: &[Weighed], mass: Option<f64>) -> Vec<GroupRow> {
+fn by_group(weighed: &[Weighed], mass: Option<f64>, sure: Option<&Sure>) -> Vec<GroupRow> {
+    let owned: Vec<(usize, &Weighed)> = weighed.iter().enumerate().collect();
     let mut keyed = Vec::new();
-    for w in weighed {
+    for pair in &owned {
+        let (_, w) = pair;
         if w.groups.is_empty() {
-            keyed.push(((None, 0), w));
+            keyed.push(((None, 0), pair));
         }
         for (n, group) in w.groups.iter().enumerate() {
-            keyed.push(((Some(group.clone()), n + 1), w));
+            keyed.push(((Some(group.clone()), n + 1), pair));
         }
     }
     let text = |(group, depth): &(Option<String>, usize)| match group {
@@ -411,11 +485,12 @@ fn by_group(weighed: &[Weighed], mass: Option<f64>) -> Vec<GroupRow> {
     let rows = grouped(keyed.into_iter(), text)
         .into_iter()
         .map(|((group, depth), things)| {
-            let moments = sum::total(things.iter().map(|w| &w.moments));
+            let moments = sum::total(things.iter().map(|(_, w)| &w.moments));
             GroupRow {
                 group,
                 depth,
                 mass_kg: moments.zeroth,
+                mass_standard_kg: mass_standard(sure, things.iter().map(|(n, _)| *n)),
                 centre_of_mass_m: moments.centre().map(plain),
                 share_of_mass: share(moments.zeroth, mass),
                 parts: things.len(),
@@ -424,14 +499,17 @@ fn by_group(weighed: &[Weighed], mass: Option<f64>) -> Vec<GroupRow> {
     rows.collect()
 }
 
-fn by_basis(weighed: &[Weighed], mass: Option<f64>) -> Vec<BasisRow> {
-    let mut groups = grouped(weighed.iter().map(|w| (w.basis, w)), |b| format!("{b:?}"));
+fn by_basis(weighed: &[Weighed], mass: Option<f64>, sure: Option<&Sure>) -> Vec<BasisRow> {
+    let owned: Vec<(usize, &Weighed)> = weighed.iter().enumerate().collect();
+    let keyed = owned.iter().map(|pair| (pair.1.basis, pair));
+    let mut groups = grouped(keyed, |b| format!("{b:?}"));
     groups.sort_by_key(|(basis, _)| *basis);
     let rows = groups.into_iter().map(|(basis, things)| {
-        let kg = sum::sum(things.iter().map(|w| w.moments.zeroth));
+        let kg = sum::sum(things.iter().map(|(_, w)| w.moments.zeroth));
         BasisRow {
             basis,
             mass_kg: kg,
+            mass_standard_kg: mass_standard(sure, things.iter().map(|(n, _)| *n)),
             share_of_mass: share(kg, mass),
             parts: things.len(),
         }

@@ -85,6 +85,10 @@ struct AssemblyFile {
     support: Option<Vec<Placed>>,
     /// What it hangs from.
     hang: Option<Hang>,
+    /// Mass that no mesh shows, placed with what it covers.
+    smear: Option<Vec<Smear>>,
+    /// Mass growth allowance of each maturity, in per cent; the names are the file's own.
+    allowance: Option<BTreeMap<String, Quantity>>,
 }
 
 /// A named point.
@@ -106,6 +110,18 @@ struct Hang {
     /// Two to four lines, named, with the point of the assembly that each holds; without any it
     /// hangs from the hook as a point.
     line: Option<Vec<Placed>>,
+}
+
+/// Paint, welds, harness: mass that lies where other things are, in proportion to their mass.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Smear {
+    /// Its name; "smear of" what it covers where left out.
+    name: Option<String>,
+    /// A glob on paths of parts and items.
+    of: String,
+    /// Per cent of what it covers, or a mass over all of it; perhaps with a tolerance.
+    mass: Quantity,
 }
 
 /// The assembly itself.
@@ -179,6 +195,8 @@ struct Part {
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
+    /// How far along its design is: a name in [allowance].
+    maturity: Option<String>,
 }
 
 /// Whether repeats share one error of each tolerance, or have one each.
@@ -241,6 +259,8 @@ struct Item {
     inertia: Option<Inertia>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
+    /// How far along its design is: a name in [allowance].
+    maturity: Option<String>,
 }
 
 /// A solid cylinder along z.

@@ -81,19 +81,36 @@ fn inertia(r: &Reader<'_, '_>, mass: Option<f64>) -> Option<Shape> {
         }
     }
     // A product that was typed but could not be read is among the faults already.
-    let value = |n: usize| found[n].map(|(q, _)| q.value);
-    let product = |n: usize| value(n).unwrap_or(0.0);
+    let value = |n: usize| found[n].map(|(q, _)| q);
+    let product = |n: usize| value(n).unwrap_or(Quantity::exact(0.0));
     let (line, shared) = (i.line, i.shared);
     i.finish();
-    let (xx, yy, zz) = (value(0)?, value(1)?, value(2)?);
-    let (xy, xz, yz) = (product(3), product(4), product(5));
-    let tensor = Matrix3::new(xx, xy, xz, xy, yy, yz, xz, yz, zz);
+    let elements = [
+        value(0)?,
+        value(1)?,
+        value(2)?,
+        product(3),
+        product(4),
+        product(5),
+    ];
+    let tensor = tensor_of(&elements);
     if let Some(why) = impossible(&tensor, mass) {
         let advice = "check the axes, the unit and the signs: off-diagonals are the tensor's own \
                       elements, −∫xy dm, about the item's centre of mass";
         shared.fault(line, Kind::ImpossibleInertia, why, advice);
     }
-    Some(Shape::Inertia(tensor))
+    Some(Shape::Inertia(Box::new(elements)))
+}
+
+/// The tensor of the elements xx, yy, zz, xy, xz, yz.
+fn tensor_of(elements: &[Quantity; 6]) -> Matrix3<f64> {
+    let [xx, yy, zz, xy, xz, yz] = elements.map(|q| q.value);
+    Matrix3::new(xx, xy, xz, xy, yy, yz, xz, yz, zz)
+}
+
+/// ∫ d dᵀ dm of an inertia tensor: the tensor is trace(S)·1 − S, so S = trace(I)/2·1 − I.
+pub(super) fn second_of(tensor: &Matrix3<f64>) -> Matrix3<f64> {
+    Matrix3::identity() * (tensor.trace() / 2.0) - tensor
 }
 
 /// Which inequality of an inertia tensor (kg m², about the centre) fails, or `None` where a body
@@ -176,8 +193,7 @@ impl Shape {
             Self::Sphere(radius) => {
                 Matrix3::identity() * (mass * radius.value * radius.value / 5.0)
             }
-            // The tensor is trace(S)·1 − S, so S = trace(I)/2·1 − I.
-            Self::Inertia(tensor) => Matrix3::identity() * (tensor.trace() / 2.0) - tensor,
+            Self::Inertia(elements) => second_of(&tensor_of(elements)),
         };
         Moments {
             zeroth: mass,

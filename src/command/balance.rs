@@ -8,9 +8,10 @@ use super::meshes::Files;
 use super::progress::Terminal;
 use super::{Answer, Common, failure, point};
 use crate::assembly::{self, Input};
-use crate::error::{Error, Result};
+use crate::error::{Error, Result, Warning};
 use crate::report::balance::{AboutPoint, BalanceBody};
 use crate::report::{self, Document, InputFact, PROGRAM, to_json};
+use crate::uncertainty::{MOST_SAMPLES, Sampling};
 
 /// Arguments of `balance`.
 #[derive(Args, Clone, Debug)]
@@ -21,6 +22,12 @@ pub(super) struct BalanceArgs {
     /// Give the inertia of the whole about this point too (bare numbers in the assembly's unit)
     #[arg(long, value_name = "X,Y,Z", allow_hyphen_values = true)]
     about: Option<String>,
+    /// Repeat the uncertainty by Monte Carlo with N draws, each evaluated anew
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(2..=MOST_SAMPLES))]
+    samples: Option<u64>,
+    /// Seed of the draws; the same seed gives the same figures on any number of threads
+    #[arg(long, value_name = "SEED", default_value_t = 1, requires = "samples")]
+    seed: u64,
 }
 
 /// Runs the command.
@@ -42,7 +49,8 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
         Ok(resolved) => resolved,
         Err(errors) => return Ok(failure(errors, common)),
     };
-    let balance = match assembly::balance_watched(&loaded, &resolved, terminal.progress()) {
+    let sampling = args.samples.map(|n| Sampling { n, seed: args.seed });
+    let balance = match assembly::balance_with(&loaded, &resolved, sampling, terminal.progress()) {
         Ok(balance) => balance,
         Err(errors) => return Ok(failure(errors, common)),
     };
@@ -59,6 +67,15 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     let mut warnings = resolved.warnings.clone();
     warnings.extend(files.warnings);
     warnings.extend(balance.warnings.iter().cloned());
+    if balance.unbounded {
+        warnings.push(Warning {
+            kind: "tolerances-ignored".to_owned(),
+            message: "tolerances were stated, and the uncertainty of the whole is not computed: nothing bounds where its centre is".to_owned(),
+            path: None,
+            line: None,
+            advice: "close the open meshes, or read the figures as nominal values".to_owned(),
+        });
+    }
     let inputs = resolved.inputs.iter().map(fact).collect();
     let document = Document {
         schema: "bismar/balance/1",

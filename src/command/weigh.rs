@@ -20,6 +20,7 @@ use crate::soundness::{
     self, Depth, Filled, Finding,
     cap::{Cap, Estimate},
 };
+use crate::uncertainty::{BodySources, Uncertainty};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -119,15 +120,25 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             }
         }
     }
-    if let Some(s) = &substance
-        && s.density.tolerance.is_some()
+    let unsaid =
+        |figures: &Figures, u: &Option<Uncertainty>| figures.mass_kg.is_some() && u.is_none();
+    let ignored = files.iter().any(|f| {
+        let mut bodies = f.bodies.iter().flatten();
+        let whole = f.whole.as_ref();
+        bodies.any(|b| unsaid(&b.figures, &b.uncertainty))
+            || whole.is_some_and(|w| unsaid(&w.figures, &w.uncertainty))
+    });
+    if ignored
+        && substance
+            .as_ref()
+            .is_some_and(|s| s.density.tolerance.is_some())
     {
         answers.warnings.push(Warning {
             kind: "tolerances-ignored".to_owned(),
-            message: "the density has a tolerance; the figures are for its nominal value and say nothing of how far they may be off".to_owned(),
+            message: "the density has a tolerance, and the uncertainty of a mass is not computed: nothing bounds its volume or its centre".to_owned(),
             path: None,
             line: None,
-            advice: "take the density's tolerance as the mass's own, in per cent, at least".to_owned(),
+            advice: "read that mass as a nominal value".to_owned(),
         });
     }
     let body = WeighBody { files };
@@ -242,7 +253,7 @@ fn answer(
         [one] => Whole {
             figures: one.figures.clone(),
             estimate: one.estimate.clone(),
-            uncertainty: None,
+            uncertainty: one.uncertainty.clone(),
         },
         _ => {
             let sum = together(&chosen, &results, rule, metres, substance, about);
@@ -336,6 +347,13 @@ fn weighed(
         }
     });
     let of = |solid| Figures::of(solid, &body.bounds, metres, substance, about);
+    let estimate = match weighing {
+        Weighing::Capped(e) => Some(Estimated::of(&e.bounds, &e.caps, metres)),
+        _ => None,
+    };
+    let uncertainty = weighing
+        .solid()
+        .and_then(|s| uncertainty(&s.moments.scaled(metres), substance, estimate.as_ref()));
     let (figures, refused) = match weighing {
         Weighing::Closed(solid) => (of(solid), None),
         Weighing::Capped(e) => (of(&e.solid), None),
@@ -368,13 +386,28 @@ fn weighed(
         nested,
         findings: Vec::new(),
         refused,
-        estimate: match weighing {
-            Weighing::Capped(e) => Some(Estimated::of(&e.bounds, &e.caps, metres)),
-            _ => None,
-        },
+        estimate,
         facets: None,
-        uncertainty: None,
+        uncertainty,
     }
+}
+
+/// How far the mass figures of a volume (its moments in SI units) may be off.
+pub(super) fn uncertainty(
+    volume: &Moments,
+    substance: Option<&Substance>,
+    estimate: Option<&Estimated>,
+) -> Option<Uncertainty> {
+    let sources = BodySources {
+        density: substance.map(|s| (s.name.clone(), s.density)),
+        bounds: estimate.and_then(Estimated::sources),
+        biases: Vec::new(),
+    };
+    // A volume with an error that nothing bounds has a mass with one.
+    if estimate.is_some() && sources.bounds.is_none() {
+        return None;
+    }
+    sources.spread(volume)
 }
 
 /// Of a body that only cracks keep open, the refusal names the distance that closes it.
@@ -419,9 +452,11 @@ fn filled(
     // The area of what is left when space is counted once is not known.
     let figures =
         Figures::from_volume(&volume, f64::NAN, f.condition, f.bounds_m, substance, about);
+    let estimate = estimate(&found, metres);
     WeighedBody {
         figures,
-        estimate: Some(estimate(&found, metres)),
+        uncertainty: uncertainty(&volume, substance, Some(&estimate)),
+        estimate: Some(estimate),
         ..sum
     }
 }
@@ -453,10 +488,11 @@ fn whole_filled(
     // The area of what is left when space is counted once is not known.
     let figures =
         Figures::from_volume(&volume, f64::NAN, f.condition, f.bounds_m, substance, about);
+    let estimate = estimate(&found, metres);
     Whole {
         figures,
-        estimate: Some(estimate(&found, metres)),
-        uncertainty: None,
+        uncertainty: uncertainty(&volume, substance, Some(&estimate)),
+        estimate: Some(estimate),
     }
 }
 
@@ -499,7 +535,7 @@ fn together(
     let bounds = bounds.map(|b| b.map(|p| p.map(|x| x * metres)));
     Whole {
         figures: Figures::from_volume(&total, area, condition, bounds, substance, about),
+        uncertainty: uncertainty(&total, substance, estimate.as_ref()),
         estimate,
-        uncertainty: None,
     }
 }

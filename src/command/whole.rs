@@ -253,7 +253,11 @@ fn tell(
                 ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
             },
             estimate: None,
-            uncertainty: None,
+            uncertainty: super::weigh::uncertainty(
+                &solid.moments.scaled(unit.metres()),
+                substance,
+                None,
+            ),
         });
     }
     let file = WeighedFile {

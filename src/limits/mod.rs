@@ -81,6 +81,12 @@ pub struct Judged {
     pub unit: &'static str,
     /// What was found.
     pub value: f64,
+    /// Standard uncertainty of the value; null where the uncertainty is not computed.
+    pub standard: Option<f64>,
+    /// The basic figure, where `value` is the predicted one: masses in an assembly whose parts
+    /// carry growth allowances.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub basic: Option<f64>,
     /// The least allowed value.
     pub from: Option<f64>,
     /// The greatest allowed value.
@@ -230,6 +236,8 @@ impl Limit {
             quantity: self.quantity.name(),
             unit: self.quantity.unit(),
             value,
+            standard: None,
+            basic: None,
             from,
             to,
             margin,

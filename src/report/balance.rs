@@ -3,9 +3,10 @@
 use serde::Serialize;
 
 use super::Document;
-use super::digits::{at_most, length_in, significant};
+use super::digits::{at_most, figure, length_in, place, significant, supported};
 use super::footer::{CAUTION, footer, nominal};
 use super::statics_text::{self, readable};
+use super::sure;
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
 use super::words::{box_size, direction, point, point_in};
@@ -13,6 +14,7 @@ use crate::assembly::{Balance, Basis, MassBounds, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, Judged, PercentOf, Verdict};
 use crate::quantity::LengthUnit;
+use crate::uncertainty::{Spread, Uncertainty};
 
 /// The command's part of the document.
 #[derive(Clone, Debug, Serialize)]
@@ -51,7 +53,11 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         out.push_str(&estimated("the whole", e, unit, look));
     }
     match &b.total {
-        Some(total) => out.push_str(&whole(total, body.about.as_ref(), unit, look)),
+        Some(total) => {
+            let u = b.uncertainty.as_ref();
+            out.push_str(&whole(total, u, body.about.as_ref(), unit, look));
+            out.push_str(&sure::render(b, unit, look));
+        }
         None => out.push_str(&format!(
             "\n{}\n",
             look.marked(
@@ -90,6 +96,7 @@ fn made_of(p: &PartRow) -> String {
     match (&p.material, &p.source) {
         (Some(m), _) => m.clone(),
         (None, Source::Item) => "(bought in)".to_owned(),
+        (None, Source::Smear) => "(with what it covers)".to_owned(),
         (None, _) if !p.materials.is_empty() => {
             let names = p.materials.iter().map(|m| m.as_deref().unwrap_or("?"));
             names.collect::<Vec<_>>().join(" + ")
@@ -111,10 +118,10 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
         Column::figures("z", "z", u),
         Column::text("size", &format!("box, {u}")),
     ]);
-    let centre = |c: Option<[f64; 3]>, k: usize| {
+    let centre = |c: Option<[f64; 3]>, standard: Option<[f64; 3]>, k: usize| {
         c.map_or_else(Cell::empty, |c| {
             let x = length_in(c[k], unit);
-            Cell::figure(fixed(x), x)
+            Cell::figure(position(x, standard.map(|u| length_in(u[k], unit))), x)
         })
     };
     for p in &b.parts {
@@ -129,31 +136,50 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
             Cell::text(&p.path),
             Cell::text(&made_of(p)),
             Cell::text(&format!("{}{implied}", basis_word(p.basis))),
-            Cell::figure(significant(p.mass_kg, 5), p.mass_kg),
+            Cell::figure(mass(p.mass_kg, p.mass_standard_kg), p.mass_kg),
             p.share_of_mass.map_or_else(Cell::empty, |s| {
                 Cell::figure(format!("{:.1}", 100.0 * s), s)
             }),
-            centre(c, 0),
-            centre(c, 1),
-            centre(c, 2),
+            centre(c, p.centre_standard_m, 0),
+            centre(c, p.centre_standard_m, 1),
+            centre(c, p.centre_standard_m, 2),
             Cell::text(&box_size(&p.bounds_m, unit)),
         ]);
     }
     if let Some(t) = &b.total {
         let c = Some(t.centre_of_mass_m);
+        let of = |u: &Option<Uncertainty>| u.as_ref().map(|u| u.centre_of_mass_m.standard);
         table.total(vec![
             Cell::text("total"),
             Cell::empty(),
             Cell::empty(),
-            Cell::figure(significant(t.mass_kg, 6), t.mass_kg),
+            Cell::figure(total_mass(t, b.uncertainty.as_ref()), t.mass_kg),
             Cell::figure("100.0", 1.0),
-            centre(c, 0),
-            centre(c, 1),
-            centre(c, 2),
+            centre(c, of(&b.uncertainty), 0),
+            centre(c, of(&b.uncertainty), 1),
+            centre(c, of(&b.uncertainty), 2),
             Cell::text(&box_size(&t.bounds_m, unit)),
         ]);
     }
     table
+}
+
+/// A mass to the place that its uncertainty supports, else to five figures.
+fn mass(kg: f64, standard: Option<f64>) -> String {
+    supported(kg, standard, |x| significant(x, 5))
+}
+
+fn total_mass(t: &Total, u: Option<&Uncertainty>) -> String {
+    let standard = u.map(|u| u.mass_kg.standard);
+    supported(t.mass_kg, standard, |x| significant(x, 6))
+}
+
+/// A coordinate to the place that its uncertainty supports, and to hundredths at most.
+fn position(x: f64, standard: Option<f64>) -> String {
+    match standard.filter(|u| place(*u).is_some_and(|p| p > -2)) {
+        Some(u) => figure(x, Some(u)),
+        None => fixed(x),
+    }
 }
 
 /// Hundredths of the unit at most: a position is not known finer.
@@ -178,12 +204,14 @@ fn subtotals(b: &Balance, look: Look) -> String {
         Column::figures("mass_kg", "mass", "kg"),
         Column::figures("share", "share", "%"),
     ]);
-    let mut row = |by: &str, name: &str, parts: usize, mass: f64, share: Option<f64>| {
+    let mut row = |by: &str, name: &str, parts: usize, kg: [Option<f64>; 2], share: Option<f64>| {
+        let [kg, standard] = kg;
+        let kg = kg.unwrap_or_default();
         table.row(vec![
             Cell::text(by),
             Cell::text(name),
             Cell::count(parts as u64),
-            Cell::figure(significant(mass, 5), mass),
+            Cell::figure(mass(kg, standard), kg),
             share.map_or_else(Cell::empty, |s| {
                 Cell::figure(format!("{:.1}", 100.0 * s), s)
             }),
@@ -202,7 +230,7 @@ fn subtotals(b: &Balance, look: Look) -> String {
             by,
             &format!("{name}{density}"),
             m.parts,
-            m.mass_kg,
+            [Some(m.mass_kg), m.mass_standard_kg],
             m.share_of_mass,
         );
     }
@@ -215,38 +243,61 @@ fn subtotals(b: &Balance, look: Look) -> String {
                 by,
                 &format!("{indent}{name}"),
                 g.parts,
-                g.mass_kg,
+                [Some(g.mass_kg), g.mass_standard_kg],
                 g.share_of_mass,
             );
         }
     }
     for (i, s) in b.by_basis.iter().enumerate() {
         let by = if i == 0 { "by basis" } else { "" };
-        row(by, basis_word(s.basis), s.parts, s.mass_kg, s.share_of_mass);
+        row(
+            by,
+            basis_word(s.basis),
+            s.parts,
+            [Some(s.mass_kg), s.mass_standard_kg],
+            s.share_of_mass,
+        );
     }
     format!("\n{}", table.render(look))
 }
 
-fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) -> String {
+fn whole(
+    t: &Total,
+    u: Option<&Uncertainty>,
+    about: Option<&AboutPoint>,
+    unit: LengthUnit,
+    look: Look,
+) -> String {
     let mut out = format!("\n{}\n", look.marked("the whole", Mark::Heading));
-    out.push_str(&format!(
-        "mass           {} kg\n",
-        significant(t.mass_kg, 6)
-    ));
+    let off = u.map_or(String::new(), |u| {
+        let m = &u.mass_kg;
+        sure::off(t.mass_kg, m.standard, [m.low_95, m.high_95], " kg")
+    });
+    out.push_str(&format!("mass           {} kg{off}\n", total_mass(t, u)));
     out.push_str(&format!(
         "balance point  {}   frame: the assembly's axes and origin\n",
-        point_in(&t.centre_of_mass_m, &t.bounds_m, unit)
+        u.map_or_else(
+            || point_in(&t.centre_of_mass_m, &t.bounds_m, unit),
+            |u| sure_point(&t.centre_of_mass_m, &u.centre_of_mass_m, unit)
+        )
     ));
     out.push_str(&format!(
         "box            {} {}\n",
         box_size(&t.bounds_m, unit),
         unit.symbol()
     ));
+    // One place for the whole tensor: that of the least certain of its moments.
+    let standard = u.and_then(|u| u.inertia_kg_m2.as_ref()).map(|i| {
+        let s = i.standard;
+        s[0][0].max(s[1][1]).max(s[2][2])
+    });
     out.push_str(&matrix(
         "inertia about the centre of mass, kg m2; off-diagonals are the tensor's own, −∫xy dm",
         &t.inertia_kg_m2,
-        6,
+        standard.filter(|s| *s > 0.0),
     ));
+    let moments = u.and_then(|u| u.principal_moments_kg_m2.as_ref());
+    let radii = u.and_then(|u| u.radii_of_gyration_m.as_ref());
     let mut table = Table::new(vec![
         Column::text("n", "principal"),
         Column::figures("moment", "moment", "kg m2"),
@@ -257,17 +308,27 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
         let axis = direction(&t.principal_axes[i]);
         let free = if t.axes_free.contains(&i) {
             " (free)"
+        } else if u.is_some_and(|u| u.axes_undetermined.contains(&i)) {
+            " (undetermined)"
         } else {
             ""
         };
         table.row(vec![
             Cell::text(&(i + 1).to_string()),
             Cell::figure(
-                significant(t.principal_moments_kg_m2[i], 6),
+                supported(
+                    t.principal_moments_kg_m2[i],
+                    moments.map(|m| m.standard[i]),
+                    |x| significant(x, 6),
+                ),
                 t.principal_moments_kg_m2[i],
             ),
             Cell::figure(
-                significant(length_in(t.radii_of_gyration_m[i], unit), 6),
+                supported(
+                    length_in(t.radii_of_gyration_m[i], unit),
+                    radii.map(|r| length_in(r.standard[i], unit)),
+                    |x| significant(x, 6),
+                ),
                 t.radii_of_gyration_m[i],
             ),
             Cell::text(&format!("{axis}{free}")),
@@ -278,10 +339,25 @@ fn whole(t: &Total, about: Option<&AboutPoint>, unit: LengthUnit, look: Look) ->
         out.push_str(&matrix(
             &format!("inertia about {}, kg m2", point(&a.point_m, unit)),
             &a.inertia_kg_m2,
-            6,
+            standard.filter(|s| *s > 0.0),
         ));
     }
     out
+}
+
+/// A point with the standard uncertainty of each coordinate.
+fn sure_point(at: &[f64; 3], off: &Spread<[f64; 3]>, unit: LengthUnit) -> String {
+    let shown = [0, 1, 2].map(|k| {
+        let figures = [at[k], off.standard[k], off.low_95[k], off.high_95[k]];
+        let [x, u, low, high] = figures.map(|x| length_in(x, unit));
+        let text = if u > 0.0 {
+            figure(x, Some(u))
+        } else {
+            fixed(x)
+        };
+        text + &sure::off(x, u, [low, high], "")
+    });
+    format!("({}) {}", shown.join(", "), unit.symbol())
 }
 
 fn expectations(b: &Balance, unit: LengthUnit, look: Look) -> String {
@@ -377,6 +453,7 @@ fn verdict(v: Verdict) -> (&'static str, Mark) {
 }
 
 pub(super) fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String {
+    let sure = limits.iter().any(|l| l.standard.is_some());
     let mut table = Table::new(vec![
         Column::text("name", "limit"),
         Column::text("quantity", "figure"),
@@ -387,8 +464,19 @@ pub(super) fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String 
         Column::figures("margin", "margin", ""),
         Column::text("percent", "margin in per cent"),
         Column::text("verdict", "verdict"),
+        Column::text("probability", if sure { "chance inside" } else { "" }),
     ]);
     for l in limits {
+        let found = |x: f64| {
+            let (x, _) = readable(x, l.unit, l.quantity, unit);
+            let standard = l.standard.map(|s| readable(s, l.unit, l.quantity, unit).0);
+            let text = if l.unit == "m" {
+                position(x, standard)
+            } else {
+                supported(x, standard, |x| significant(x, 6))
+            };
+            Cell::figure(text, x)
+        };
         let shown = |x: f64| {
             let (x, _) = readable(x, l.unit, l.quantity, unit);
             let text = if l.unit == "m" {
@@ -422,12 +510,13 @@ pub(super) fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String 
             Cell::text(&l.name),
             Cell::text(l.quantity),
             Cell::text(&readable(0.0, l.unit, l.quantity, unit).1),
-            shown(l.value),
+            found(l.value),
             l.from.map_or_else(Cell::empty, shown),
             l.to.map_or_else(Cell::empty, shown),
-            shown(l.margin),
+            found(l.margin),
             Cell::text(percent.trim_start()),
             Cell::text(word).marked(mark),
+            Cell::text(&l.probability.map_or(String::new(), chance)),
         ]);
     }
     let broken = limits
@@ -446,6 +535,15 @@ pub(super) fn limits(limits: &[Judged], unit: LengthUnit, look: Look) -> String 
         )
     };
     format!("\n{}{verdict}\n", table.render(look))
+}
+
+/// A probability in per cent, never rounded to certainty.
+fn chance(p: f64) -> String {
+    match 100.0 * p {
+        p if p > 99.99 => "> 99.99 %".to_owned(),
+        p if p < 0.01 => "< 0.01 %".to_owned(),
+        p => format!("{p:.2} %"),
+    }
 }
 
 /// As CSV: one row a part, SI units.
@@ -471,6 +569,10 @@ pub fn csv(body: &BalanceBody) -> Result<String> {
         "size_x_m",
         "size_y_m",
         "size_z_m",
+        "mass_standard_kg",
+        "centre_x_standard_m",
+        "centre_y_standard_m",
+        "centre_z_standard_m",
     ];
     let mut columns = vec![
         Column::text("path", ""),
@@ -483,6 +585,7 @@ pub fn csv(body: &BalanceBody) -> Result<String> {
         let c = |k: usize| p.centre_of_mass_m.map(|c| c[k]);
         let i = |a: usize, b: usize| p.inertia_kg_m2.map(|t| t[a][b]);
         let size = |k: usize| Some(p.bounds_m[1][k] - p.bounds_m[0][k]);
+        let u = |k: usize| p.centre_standard_m.map(|u| u[k]);
         let figures = [
             Some(p.mass_kg),
             p.share_of_mass,
@@ -501,6 +604,10 @@ pub fn csv(body: &BalanceBody) -> Result<String> {
             size(0),
             size(1),
             size(2),
+            p.mass_standard_kg,
+            u(0),
+            u(1),
+            u(2),
         ];
         let mut row = vec![
             Cell::text(&p.path),

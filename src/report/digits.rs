@@ -50,6 +50,15 @@ pub fn with_uncertainty(value: f64, standard: f64) -> (String, String) {
     (figure(value, Some(standard)), significant(standard, 2))
 }
 
+/// `value` to the place that its standard uncertainty supports; where there is none, or it is zero,
+/// as `otherwise` says.
+pub fn supported(value: f64, standard: Option<f64>, otherwise: impl Fn(f64) -> String) -> String {
+    match standard.filter(|u| place(*u).is_some()) {
+        Some(u) => figure(value, Some(u)),
+        None => otherwise(value),
+    }
+}
+
 /// The power of ten of the second significant digit of `uncertainty`, after rounding to two;
 /// `None` where it is zero, negative or not finite.
 pub fn place(uncertainty: f64) -> Option<i32> {
@@ -205,6 +214,14 @@ fn shifted(value: f64, power: i32) -> f64 {
 /// A 3×3 tensor on one scale, the largest element with `digits` significant digits.
 pub fn tensor(elements: &[[f64; 3]; 3], digits: u32) -> ([[String; 3]; 3], i32) {
     let Shared { cells, exponent } = shared(elements.as_flattened(), digits);
+    let mut cells = cells.into_iter();
+    let rows = [(); 3].map(|()| [(); 3].map(|()| cells.next().unwrap_or_default()));
+    (rows, exponent)
+}
+
+/// A 3×3 tensor on one scale, to the place that the standard uncertainty supports.
+pub fn tensor_figures(elements: &[[f64; 3]; 3], standard: Option<f64>) -> ([[String; 3]; 3], i32) {
+    let Shared { cells, exponent } = shared_figures(elements.as_flattened(), standard);
     let mut cells = cells.into_iter();
     let rows = [(); 3].map(|()| [(); 3].map(|()| cells.next().unwrap_or_default()));
     (rows, exponent)

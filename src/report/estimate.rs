@@ -2,7 +2,9 @@
 
 use serde::Serialize;
 
+use crate::quantity::Coverage;
 use crate::soundness::cap::{Bounds, Cap};
+use crate::uncertainty::BodyBounds;
 
 /// How figures of an open body were come by, and how far they may be off if an assumption holds.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -30,6 +32,22 @@ impl Estimated {
             "capped" => "open and weighed with its holes capped",
             _ => "space that is filled twice is counted once, along rays",
         }
+    }
+
+    /// The bounds as sources of uncertainty; none where the volume is not bounded. Caps give the
+    /// half-width of a range, rays three standard errors.
+    pub fn sources(&self) -> Option<BodyBounds> {
+        let (name, coverage) = match self.method {
+            "capped" => ("capped holes", Coverage::HalfWidth),
+            _ => ("rays", Coverage::Standard { k: 3.0 }),
+        };
+        Some(BodyBounds {
+            name: name.to_owned(),
+            coverage,
+            volume: self.volume_bound_m3?,
+            centre: self.centre_bound_m,
+            inertia: self.inertia_bound_m5,
+        })
     }
 
     /// What the bounds rest on, for people.

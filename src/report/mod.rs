@@ -12,6 +12,7 @@ mod look;
 pub mod materials;
 pub mod picture;
 mod statics_text;
+mod sure;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;

@@ -6,6 +6,7 @@ use super::estimate::Estimated;
 use crate::error::Error;
 use crate::masses::Figures;
 use crate::soundness::Finding;
+use crate::uncertainty::Uncertainty;
 
 /// The command's part of the document.
 #[derive(Clone, Debug, Serialize)]
@@ -60,7 +61,7 @@ pub struct Whole {
     #[serde(skip_serializing_if = "Option::is_none")]
     pub estimate: Option<Estimated>,
     /// How far the figures may be off; null where it was not computed.
-    pub uncertainty: Option<()>,
+    pub uncertainty: Option<Uncertainty>,
 }
 
 /// What is said of one body.
@@ -94,7 +95,7 @@ pub struct WeighedBody {
     /// What the facets do to the figures of a curved body.
     pub facets: Option<()>,
     /// How far the figures may be off; null where it was not computed.
-    pub uncertainty: Option<()>,
+    pub uncertainty: Option<Uncertainty>,
 }
 
 /// Volumes of a body that holds a solid within its solid.

@@ -1,7 +1,7 @@
 //! What `weigh` prints for people.
 
 use super::Document;
-use super::digits::{Scale, at_most, length_in, significant, tensor};
+use super::digits::{Scale, at_most, figure, length_in, significant, supported, tensor_figures};
 use super::estimate::Estimated;
 use super::footer::{CAUTION, footer, nominal};
 use super::table::{Cell, Column, Look, Mark, Table};
@@ -13,6 +13,7 @@ use crate::error::Result;
 use crate::masses::Figures;
 use crate::quantity::LengthUnit;
 use crate::soundness::{EffectIs, FindingKind, Severity};
+use crate::uncertainty::Uncertainty;
 
 /// Bodies of one file that are shown with their tensors; more are shown as a table alone.
 const IN_FULL: usize = 8;
@@ -95,7 +96,8 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
     let readable: Vec<&WeighedBody> = bodies.iter().filter(|b| b.refused.is_none()).collect();
     if readable.len() <= IN_FULL {
         for b in &readable {
-            out.push_str(&in_full(&b.id, &b.figures, b.estimate.as_ref(), unit, look));
+            let (e, u) = (b.estimate.as_ref(), b.uncertainty.as_ref());
+            out.push_str(&in_full(&b.id, &b.figures, e, u, unit, look));
         }
     } else {
         out.push_str(&format!(
@@ -110,6 +112,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
             "all bodies together",
             &whole.figures,
             whole.estimate.as_ref(),
+            whole.uncertainty.as_ref(),
             unit,
             look,
         ));
@@ -254,6 +257,7 @@ pub(super) fn in_full(
     title: &str,
     f: &Figures,
     estimate: Option<&Estimated>,
+    uncertainty: Option<&Uncertainty>,
     unit: LengthUnit,
     look: Look,
 ) -> String {
@@ -265,6 +269,9 @@ pub(super) fn in_full(
         return out;
     };
     let u = unit.symbol();
+    if let (Some(m), Some(of)) = (f.mass_kg, uncertainty) {
+        out.push_str(&mass_line(m, of));
+    }
     if let Some(e) = estimate {
         // Digits of a centre and a tensor that only stand within bounds would be read as known.
         let centre = e.centre_bound_m.map_or_else(
@@ -306,7 +313,7 @@ pub(super) fn in_full(
     out.push_str(&matrix(
         &format!("inertia about the {word}, {name}; off-diagonals are the tensor's own, −∫xy"),
         &tensor_si.map(|r| r.map(|x| x * scale)),
-        6,
+        least_certain(uncertainty).map(|s| s * scale),
     ));
     let moments = f.principal_moments_kg_m2.or(f.principal_volume_moments_m5);
     if let (Some(moments), Some(axes), Some(radii)) =
@@ -319,6 +326,8 @@ pub(super) fn in_full(
             Column::text("axis", "axis"),
         ]);
         let free = f.axes_free.as_deref().unwrap_or_default();
+        let spread = uncertainty.and_then(|u| u.principal_moments_kg_m2.as_ref());
+        let off = |i: usize| spread.map(|p| p.standard[i] * scale);
         for i in 0..3 {
             let axis = direction(&axes[i]);
             let axis = if free.contains(&i) {
@@ -328,7 +337,10 @@ pub(super) fn in_full(
             };
             t.row(vec![
                 Cell::text(&(i + 1).to_string()),
-                Cell::figure(significant(moments[i] * scale, 6), moments[i]),
+                Cell::figure(
+                    supported(moments[i] * scale, off(i), |x| significant(x, 6)),
+                    moments[i],
+                ),
                 Cell::figure(significant(radii[i] / unit.metres(), 6), radii[i]),
                 Cell::text(&axis),
             ]);
@@ -347,15 +359,42 @@ pub(super) fn in_full(
         out.push_str(&matrix(
             &format!("inertia about {}, {name}", point(&about.point_m, unit)),
             &tensor_si.map(|r| r.map(|x| x * scale)),
-            6,
+            least_certain(uncertainty).map(|s| s * scale),
         ));
     }
     out
 }
 
-/// A tensor as three aligned rows under its title.
-pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3], shown: u32) -> String {
-    let (cells, exponent) = tensor(m, shown);
+/// The mass with how far it may be off, and why.
+fn mass_line(kg: f64, u: &Uncertainty) -> String {
+    let (scale, m) = (Scale::for_mass(kg), &u.mass_kg);
+    let [standard, low, high] = [m.standard, m.low_95, m.high_95].map(|x| scale.of(x));
+    let shown = |x: f64| figure(x, Some(standard));
+    // Never ± about a figure that the interval does not lie about.
+    let off = super::sure::off(scale.of(kg), standard, [low, high], "");
+    let off = match off.contains('±') {
+        true => format!("{off} {} (standard uncertainty)", scale.symbol),
+        false => format!(" {}", scale.symbol),
+    };
+    format!(
+        "mass  {}{off}, 95 % from {} to {} {}; by {}\n",
+        shown(scale.of(kg)),
+        shown(low),
+        shown(high),
+        scale.symbol,
+        super::sure::drivers(&m.drivers, |s| *s),
+    )
+}
+
+/// The largest standard uncertainty of the moments about the axes, kg m².
+fn least_certain(u: Option<&Uncertainty>) -> Option<f64> {
+    let i = u?.inertia_kg_m2.as_ref()?.standard;
+    Some(i[0][0].max(i[1][1]).max(i[2][2])).filter(|s| *s > 0.0)
+}
+
+/// A tensor as three aligned rows under its title, to the place that `standard` supports.
+pub(super) fn matrix(title: &str, m: &[[f64; 3]; 3], standard: Option<f64>) -> String {
+    let (cells, exponent) = tensor_figures(m, standard);
     let times = if exponent == 0 {
         String::new()
     } else {
@@ -384,7 +423,8 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
             (_, Some(_)) => format!("{} (estimate)", b.id),
             _ => b.id.clone(),
         };
-        table.row(cells(&name, &b.figures, b.estimate.as_ref(), unit, scale));
+        let (e, u) = (b.estimate.as_ref(), b.uncertainty.as_ref());
+        table.row(cells(&name, &b.figures, e, u, unit, scale));
     }
     if bodies.len() > 1 {
         match &file.whole {
@@ -392,6 +432,7 @@ fn table(file: &WeighedFile, unit: LengthUnit) -> Table {
                 "total",
                 &whole.figures,
                 whole.estimate.as_ref(),
+                whole.uncertainty.as_ref(),
                 unit,
                 scale,
             )),
@@ -422,6 +463,7 @@ pub(super) fn cells(
     name: &str,
     f: &Figures,
     estimate: Option<&Estimated>,
+    uncertainty: Option<&Uncertainty>,
     unit: LengthUnit,
     scale: Scale,
 ) -> Vec<Cell> {
@@ -436,7 +478,10 @@ pub(super) fn cells(
         figure(f.volume_m3, 1e6),
         figure(f.area_m2, 1e4),
         f.mass_kg.map_or_else(Cell::empty, |m| {
-            Cell::figure(significant(scale.of(m), digits), scale.of(m))
+            let off = uncertainty.filter(|_| estimate.is_none());
+            let off = off.map(|u| scale.of(u.mass_kg.standard));
+            let text = supported(scale.of(m), off, |x| significant(x, digits));
+            Cell::figure(text, scale.of(m))
         }),
     ];
     match (&f.centroid_m, &f.bounds_m) {

@@ -18,10 +18,16 @@ pub(super) fn refusal(file: &WeighedFile) -> &'static str {
 /// The totals of a file, and what was proved of it.
 pub(super) fn render(file: &WeighedFile, unit: LengthUnit, look: Look) -> String {
     let mut out = String::from("\n");
-    if let Some(Whole { figures: whole, .. }) = &file.whole {
+    if let Some(Whole {
+        figures: whole,
+        uncertainty,
+        ..
+    }) = &file.whole
+    {
+        let u = uncertainty.as_ref();
         let scale = Scale::for_mass(whole.mass_kg.unwrap_or(0.0).abs());
         let mut table = columns("all together", unit, scale);
-        table.row(cells("total", whole, None, unit, scale));
+        table.row(cells("total", whole, None, u, unit, scale));
         out.push_str(&table.render(look));
         if file.turned == Some(true) {
             out.push_str(&format!(
@@ -29,7 +35,7 @@ pub(super) fn render(file: &WeighedFile, unit: LengthUnit, look: Look) -> String
                 look.marked("note", Mark::Fail)
             ));
         }
-        out.push_str(&in_full("all together", whole, None, unit, look));
+        out.push_str(&in_full("all together", whole, None, u, unit, look));
     } else {
         out.push_str(&format!(
             "{} {}\n",

@@ -243,8 +243,8 @@ fn the_document() {
     );
     assert_eq!(
         keys(&json["parts"][0]),
-        "basis bounds_m centre_of_mass_m density_kg_m3 inertia_kg_m2 mass_kg material path \
-         share_of_mass source volume_m3"
+        "basis bounds_m centre_of_mass_m centre_standard_m density_kg_m3 inertia_kg_m2 mass_kg \
+         mass_standard_kg material path share_of_mass source volume_m3"
     );
     assert_eq!(
         keys(&json["limits"][0]),

@@ -7,6 +7,7 @@ mod properties;
 mod published;
 mod schema;
 mod standing;
+mod sure;
 
 use std::collections::HashMap;
 use std::path::Path;

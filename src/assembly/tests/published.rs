@@ -15,7 +15,7 @@ fn three_items() {
     assert_eq!(total.mass_kg, 22.75);
     near(total.centre_of_mass_m[0], 2.815 / 22.75);
     assert!((total.centre_of_mass_m[0] * 1e3 - 123.736_264).abs() < 5e-7);
-    assert_eq!(kinds(&warned), ["tolerances-ignored"]);
+    assert!(warned.is_empty());
     // The mass stands on its limit, which holds; the centre is 3.736264 mm past its.
     let [mass, centre] = b.limits.as_slice() else {
         panic!()

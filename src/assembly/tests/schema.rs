@@ -31,6 +31,7 @@ mirror = "x"
 measured = "6.31 kg ± 5 g"
 accept-open = "2 %"
 each = "independent"
+maturity = "layout"
 expect = { volume = "1 cm3", mass = "1 kg ± 50 %", size = [1, 2, 3], centre = [0, 0, 0] }
 [[part]]
 name = "second"
@@ -44,6 +45,7 @@ turn = { axis = "z", angle = "90 deg" }
 box = [1, 2, 3]
 count = 2
 each = "shared"
+maturity = "layout"
 [[item]]
 name = "roll"
 mass = "1 kg"
@@ -110,6 +112,12 @@ at = [0, -100, 0]
 [[hang.line]]
 name = "right"
 at = [0, 100, 0]
+[[smear]]
+name = "paint"
+of = "frame*"
+mass = "3 % ± 1 %"
+[allowance]
+layout = "15 %"
 "#;
 
 fn bench() -> Bench {
@@ -159,6 +167,7 @@ fn keys_of_reader_and_schema_agree() {
         ("inertia", vec!["Inertia"]),
         ("group", vec!["Group"]),
         ("limit", vec!["Limit"]),
+        ("smear", vec!["Smear"]),
         ("centre of a limit", vec!["Centre"]),
         ("band of a limit", vec!["Band", "MassBand", "QuantityBand"]),
         ("station", vec!["Station"]),
