@@ -30,6 +30,7 @@ mod open;
 mod overlap;
 mod position;
 mod read;
+mod read_ballast;
 mod read_limits;
 mod read_statics;
 mod reader;
@@ -42,14 +43,15 @@ mod standing;
 mod substance;
 mod sum;
 mod tree;
+mod trim;
 
 #[cfg(test)]
 mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Hang, Item, MeshChoice, Part, Pattern,
-    Position, Shape, Substance, Turn,
+    AssemblyFile, Assign, BallastPlace, Each, Entry, Expect, Group, Hang, Item, MeshChoice, Part,
+    Pattern, Position, Shape, Substance, Turn,
 };
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
@@ -60,6 +62,7 @@ pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
 pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
+pub use trim::{ballast_items, ballast_problem};
 
 /// Names as a list for a message, the first of them where there are very many.
 fn listed(names: &[&str]) -> String {

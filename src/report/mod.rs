@@ -13,6 +13,7 @@ pub mod materials;
 pub mod picture;
 mod statics_text;
 pub mod table;
+pub mod trim;
 pub mod weigh;
 pub mod weigh_text;
 mod whole_text;
