@@ -42,7 +42,7 @@ fn whole_unit_weights() {
         String::from_utf8(bismar(&["trim", "fixtures/assemblies/stands-and-hangs.toml"]).stdout)
             .unwrap();
     assert!(
-        text.contains("0.5 kg of ballast, the least there is"),
+        text.contains("0.500000 kg of ballast, the least there is"),
         "{text}"
     );
     assert_eq!(text.matches("no sloshing").count(), 1, "{text}");

@@ -23,11 +23,19 @@ pub(super) struct TrimArgs {
     #[arg(value_name = "ASSEMBLY")]
     file: PathBuf,
     /// All limits must hold together with this chance (50 up to below 100), by the tolerances
-    #[arg(long, value_name = "PERCENT", value_parser = super::open::parse_percent)]
+    #[arg(long, value_name = "PERCENT", value_parser = certainty)]
     sure: Option<f64>,
     /// Write the ballast as items, for `include` in the assembly file
     #[arg(long, value_name = "FILE")]
     write: Option<PathBuf>,
+}
+
+fn certainty(text: &str) -> std::result::Result<f64, String> {
+    let number = text.trim().trim_end_matches('%').trim_end().parse::<f64>();
+    number
+        .ok()
+        .filter(|p| (50.0..100.0).contains(p))
+        .ok_or_else(|| "give per cent from 50 to below 100, such as 95".to_owned())
 }
 
 /// Runs the command.
@@ -70,8 +78,8 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         moments: total.moments,
         drivers: Vec::new(),
     };
-    let sure = args.sure.map(|probability| Sure {
-        probability,
+    let sure = args.sure.map(|percent| Sure {
+        probability: percent / 100.0,
         seed: SEED,
     });
     let asked = assembly::ballast_problem(&loaded, total, vec![as_it_stands], sure, &mut files);
