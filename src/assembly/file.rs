@@ -30,10 +30,33 @@ pub struct AssemblyFile {
     pub stand: Option<Stand>,
     /// What it hangs from, if that is stated.
     pub hang: Option<Hang>,
+    /// Where ballast may go.
+    pub ballast: Vec<BallastPlace>,
     /// Size of gravity, m/s².
     pub gravity: f64,
     /// Against gravity, a unit vector.
     pub up: Vector3<f64>,
+}
+
+/// A place that ballast may be put at.
+#[derive(Clone, Debug)]
+pub struct BallastPlace {
+    /// Its line in the file.
+    pub line: u64,
+    /// Its name.
+    pub name: String,
+    /// The point, or where the origin of the mesh stands, m.
+    pub at: [f64; 3],
+    /// The shape of the ballast, with the material that fills it.
+    pub part: Option<Box<Part>>,
+    /// Nothing, or at least this much, kg.
+    pub least: f64,
+    /// kg.
+    pub most: Option<f64>,
+    /// Whole multiples of this only, kg.
+    pub step: Option<f64>,
+    /// Standard uncertainty of what is put there, as a fraction of it.
+    pub relative: f64,
 }
 
 /// A hook and the lines that meet at it.

@@ -31,6 +31,7 @@ mod open;
 mod overlap;
 mod position;
 mod read;
+mod read_ballast;
 mod read_limits;
 mod read_statics;
 mod reader;
@@ -46,14 +47,15 @@ mod substance;
 mod sum;
 mod sure;
 mod tree;
+mod trim;
 
 #[cfg(test)]
 mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Hang, Item, Maturity, MeshChoice, Part,
-    Pattern, Position, Shape, SmearEntry, SmearMass, Substance, Turn,
+    AssemblyFile, Assign, BallastPlace, Each, Entry, Expect, Group, Hang, Item, Maturity,
+    MeshChoice, Part, Pattern, Position, Shape, SmearEntry, SmearMass, Substance, Turn,
 };
 pub use growth::{Growth, MaturityRow, Standing};
 pub use load::{DEEPEST, Input, Loaded, load};
@@ -66,6 +68,7 @@ pub use shape::impossible as impossible_inertia;
 pub use smear::Smeared;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
 pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
+pub use trim::{ballast_items, ballast_problem};
 
 /// Names as a list for a message, the first of them where there are very many.
 fn listed(names: &[&str]) -> String {

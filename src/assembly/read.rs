@@ -9,6 +9,7 @@ use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, 
 use super::growth::{self, Allowances};
 use super::load::Loader;
 use super::position;
+use super::read_ballast;
 use super::read_limits;
 use super::read_statics;
 use super::reader::{Reader, Shared};
@@ -74,6 +75,7 @@ pub(super) fn file(
         loader,
     };
     let entries = context.entries(&root, 0);
+    let ballast = read_ballast::read(&root, &mut context);
     let standing = read_statics::supports(&root);
     let hang = read_statics::hang(&root);
     let limits = read_limits::read(&root, &standing);
@@ -88,6 +90,7 @@ pub(super) fn file(
         limits,
         stand: standing.stand,
         hang,
+        ballast,
         gravity: standing.gravity,
         up: standing.up,
         smears,

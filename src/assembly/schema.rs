@@ -89,6 +89,32 @@ struct AssemblyFile {
     smear: Option<Vec<Smear>>,
     /// Mass growth allowance of each maturity, in per cent; the names are the file's own.
     allowance: Option<BTreeMap<String, Quantity>>,
+    /// Places that ballast may go to.
+    ballast: Option<Vec<Ballast>>,
+}
+
+/// A place that ballast may go to: a point, or a mesh with its material.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Ballast {
+    /// Its name.
+    name: String,
+    /// The point, or where the origin of the mesh stands.
+    at: Option<[Length; 3]>,
+    /// A mesh file, or a body of one, that the ballast has the shape of.
+    mesh: Option<String>,
+    /// What fills the mesh.
+    material: Option<String>,
+    /// Nothing, or at least this much.
+    least: Option<Quantity>,
+    /// At most this much.
+    most: Option<Quantity>,
+    /// In whole multiples of this only.
+    step: Option<Quantity>,
+    /// The same: what one unit weighs.
+    unit: Option<Quantity>,
+    /// Half-width of what is put there, such as "1 %".
+    tolerance: Option<Quantity>,
 }
 
 /// A named point.

@@ -186,6 +186,15 @@ impl Sure {
         }
     }
 
+    /// What each variable moves the moments of the whole by, one standard deviation each.
+    pub(super) fn drivers(&self) -> Vec<Moments> {
+        let variables = self.sources.model.variables().iter();
+        let moved = self.tangents.iter().zip(variables);
+        moved
+            .map(|(t, v)| t.weighted(v.distribution.standard()))
+            .collect()
+    }
+
     /// Adds what draws of all sources come to.
     pub(super) fn sample(&mut self, limits: &[Limit], sampling: Sampling) {
         let Some(u) = &self.uncertainty else { return };

@@ -172,13 +172,19 @@ impl Task<'_> {
         let checked = demands.iter().any(|d| d.checked);
         // Certainty at the last round's masses is not certainty at these: rows only, then.
         let exact = |x: &[f64]| self.holds(x);
+        let mean = Task {
+            factor: None,
+            ..*self
+        };
         let rounded = |x: &[f64]| {
-            demands.iter().all(|d| {
-                d.any.iter().any(|list| {
-                    list.iter()
-                        .all(|r| r.slack(x) >= -1e-9 * r.size(self.mass()))
+            // What is not convex is judged at the end.
+            (checked || mean.holds(x))
+                && demands.iter().all(|d| {
+                    d.any.iter().any(|list| {
+                        list.iter()
+                            .all(|r| r.slack(x) >= -1e-9 * r.size(self.mass()))
+                    })
                 })
-            })
         };
         if !checked && self.factor.is_none() {
             let s = self.program(&demands, &exact).search();

@@ -101,7 +101,7 @@ pub(super) fn run(args: &BalanceArgs, common: &Common) -> Result<Answer> {
     })
 }
 
-fn fact(input: &Input) -> InputFact {
+pub(super) fn fact(input: &Input) -> InputFact {
     InputFact::new(
         std::path::Path::new(&input.path),
         Some(input.bytes),

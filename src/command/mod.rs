@@ -10,6 +10,7 @@ mod meshes;
 mod open;
 mod progress;
 mod schema;
+mod trim;
 mod weigh;
 mod whole;
 
@@ -66,6 +67,8 @@ enum Command {
     Weigh(weigh::WeighArgs),
     /// Give mass, balance point and inertia of an assembly, and judge its limits
     Balance(balance::BalanceArgs),
+    /// Give the least ballast that brings an assembly inside its limits
+    Trim(trim::TrimArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -104,6 +107,7 @@ pub fn main() -> u8 {
         Command::Check(args) => check::run(args, &cli.common),
         Command::Weigh(args) => weigh::run(args, &cli.common),
         Command::Balance(args) => balance::run(args, &cli.common),
+        Command::Trim(args) => trim::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

@@ -14,6 +14,7 @@ pub mod picture;
 mod statics_text;
 mod sure;
 pub mod table;
+pub mod trim;
 pub mod weigh;
 pub mod weigh_text;
 mod whole_text;

@@ -55,7 +55,14 @@ pub(super) fn render(s: &Statics, unit: LengthUnit, look: Look) -> String {
         out.push_str(&format!("\n{}", table.render(look)));
         let leans = s.tip_by_direction.iter().flatten();
         let least = leans.filter_map(|l| l.angle_deg.map(|a| (a, l.azimuth_deg)));
-        if let Some((angle, azimuth)) = least.min_by(|a, b| a.0.total_cmp(&b.0)) {
+        let straight = rows
+            .iter()
+            .filter_map(|r| r.angle_deg)
+            .fold(f64::INFINITY, f64::min);
+        // On level feet no lean is worse than the one straight over an edge.
+        if let Some((angle, azimuth)) = least.min_by(|a, b| a.0.total_cmp(&b.0))
+            && angle < straight
+        {
             out.push_str(&format!(
                 "of 24 directions the least is {angle:.2} deg, leaning {azimuth:.0} deg from x towards y\n"
             ));

@@ -135,6 +135,17 @@ def write_good():
          limits=[verdict("both", "mass", "holds"), verdict("both", "centre.x", "broken")])
     good("limit-unnamed.toml", HEAD + kilo + '[[limit]]\ncentre.x = { to = 9 }\n', 2.0, [8, 0, 0],
          limits=[verdict("centre.x", "centre.x", "holds")])
+    feet = "".join(f'[[support]]\nname = "{n}"\nat = {at}\n' for n, at in
+                   [("front", [200, 0, 0]), ("left", [-200, 150, 0]), ("right", [-200, -150, 0])])
+    hang = "[hang]\nhook = [0, 0, 500]\n" + "".join(
+        f'[[hang.line]]\nname = "{n}"\nat = {at}\n' for n, at in
+        [("fore", [180, 0, 100]), ("aft", [-180, 0, 100])])
+    ballast = '[[ballast]]\nname = "tail"\nat = [-200, 0, 20]\nmost = "5 kg"\nunit = "0.25 kg"\n'
+    good("stands-and-hangs.toml",
+         HEAD + '[[item]]\nname = "load"\nmass = "10 kg"\nat = [60, 0, 80]\n' + feet + hang + ballast
+         + '[[limit]]\nname = "fore and aft"\ncentre.x = { to = 50 }\n'
+         + '[[limit]]\nname = "slope"\ntip = { from = "20 deg" }\n', 10.0, [60, 0, 80], exit=1,
+         limits=[verdict("fore and aft", "centre.x", "broken"), verdict("slope", "tip", "holds")])
     expect = 'expect = {{ volume = "{} cm3 ± 1 %", mass = "48 g", size = [10, 20, {}] }}\n'
     good("expect-met.toml", PLAIN + expect.format(6.05, 30), G, [5, 10, 15])
     good("expect-volume-deviates.toml", PLAIN + expect.format(7, 30), G, [5, 10, 15], exit=1)

@@ -104,6 +104,18 @@ at = [900, -900, 0]
 [[support]]
 name = "c"
 at = [0, 900, 0]
+[[ballast]]
+name = "nose"
+at = [480, 0, 90]
+least = "1 kg"
+most = "12 kg"
+unit = "0.25 kg ± 2 g"
+[[ballast]]
+name = "plate"
+mesh = "frame.obj"
+material = "own"
+step = "1 kg"
+tolerance = "1 %"
 [hang]
 hook = [0, 0, 900]
 [[hang.line]]
@@ -184,6 +196,7 @@ fn keys_of_reader_and_schema_agree() {
         ("support", vec!["Placed"]),
         ("line", vec!["Placed"]),
         ("hang", vec!["Hang"]),
+        ("ballast", vec!["Ballast"]),
     ];
     let published = published();
     let read = shared.known();

@@ -1,0 +1,130 @@
+//! `bismar trim`: the least ballast that brings everything inside its limits.
+
+use std::path::PathBuf;
+
+use clap::Args;
+
+use super::meshes::Files;
+use super::{Answer, Common, failure};
+use crate::assembly;
+use crate::ballast::{self, Outcome, State, Sure};
+use crate::error::{Error, Kind, Result};
+use crate::format::write_whole;
+use crate::report::trim::TrimBody;
+use crate::report::{self, Document, PROGRAM, to_json};
+
+/// Seed of the samples that check a certainty.
+const SEED: u64 = 1;
+
+/// Arguments of `trim`.
+#[derive(Args, Clone, Debug)]
+pub(super) struct TrimArgs {
+    /// The assembly file, TOML or JSON, with [[limit]] and [[ballast]] entries
+    #[arg(value_name = "ASSEMBLY")]
+    file: PathBuf,
+    /// All limits must hold together with this chance (50 up to below 100), by the tolerances
+    #[arg(long, value_name = "PERCENT", value_parser = certainty)]
+    sure: Option<f64>,
+    /// Write the ballast as items, for `include` in the assembly file
+    #[arg(long, value_name = "FILE")]
+    write: Option<PathBuf>,
+}
+
+fn certainty(text: &str) -> std::result::Result<f64, String> {
+    let number = text.trim().trim_end_matches('%').trim_end().parse::<f64>();
+    number
+        .ok()
+        .filter(|p| (50.0..100.0).contains(p))
+        .ok_or_else(|| "give per cent from 50 to below 100, such as 95".to_owned())
+}
+
+/// Runs the command.
+///
+/// # Errors
+/// Of the options, and of the file that is written.
+pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
+    let loaded = match assembly::load(&args.file) {
+        Ok(loaded) => loaded,
+        Err(errors) => return Ok(failure(errors, common)),
+    };
+    let mut files = Files::default();
+    let resolved = match assembly::resolve(&loaded, &mut files) {
+        Ok(resolved) => resolved,
+        Err(errors) => return Ok(failure(errors, common)),
+    };
+    let balance = match assembly::balance(&loaded, &resolved) {
+        Ok(balance) => balance,
+        Err(errors) => return Ok(failure(errors, common)),
+    };
+    let Some(total) = &balance.total else {
+        let errors = balance.error.iter().chain(&balance.more).cloned().collect();
+        return Ok(failure(errors, common));
+    };
+    if args.sure.is_some() && balance.unbounded {
+        return Err(Error::new(
+            Kind::Usage,
+            "--sure needs the uncertainty of the whole, and nothing bounds where its centre is",
+            "close the open meshes, or leave --sure out",
+        )
+        .in_file(&args.file));
+    }
+    let as_it_stands = State {
+        phase: String::new(),
+        moments: total.moments,
+        drivers: balance.drivers.clone(),
+    };
+    let sure = args.sure.map(|percent| Sure {
+        probability: percent / 100.0,
+        seed: SEED,
+    });
+    let asked = assembly::ballast_problem(&loaded, total, vec![as_it_stands], sure, &mut files);
+    let (problem, shapes) = match asked {
+        Ok(asked) => asked,
+        Err(errors) => return Ok(failure(errors, common)),
+    };
+    let trimmed =
+        ballast::trim(&problem, &mut |_| Ok(Vec::new())).map_err(|e| e.in_file(&args.file))?;
+    if let Some(path) = &args.write
+        && trimmed.outcome == Outcome::Found
+    {
+        let text = assembly::ballast_items(&balance.name, &trimmed.ballast, &problem.places);
+        write_whole(path, |w| w.write_all(text.as_bytes()))?;
+    }
+    let exit = u8::from(trimmed.outcome == Outcome::Impossible);
+    let mut warnings = resolved.warnings.clone();
+    warnings.extend(files.warnings);
+    let inputs = resolved
+        .inputs
+        .iter()
+        .chain(&shapes)
+        .map(super::balance::fact)
+        .collect();
+    let document = Document {
+        schema: "bismar/trim/1",
+        program: PROGRAM,
+        exit,
+        warnings: warnings.clone(),
+        inputs,
+        body: TrimBody {
+            name: balance.name.clone(),
+            trimmed,
+        },
+    };
+    let text = if common.json {
+        to_json(&document)
+    } else if common.csv {
+        report::trim::csv(&document.body)?
+    } else {
+        report::trim::render(
+            &document,
+            loaded.file.unit,
+            report::table::Look::of_standard_output(),
+        )
+    };
+    Ok(Answer {
+        exit,
+        text,
+        warnings,
+        errors: Vec::new(),
+    })
+}
