@@ -188,8 +188,8 @@ impl<'a> Parser<'a> {
         };
         self.root(&root)?;
         let mut built = false;
-        while open {
-            match self.child(Within::Other)? {
+        loop {
+            match self.children(open, Within::Other)? {
                 Child::End => break,
                 Child::Core(name, e, open) => match name.as_str() {
                     "metadata" => self.pass(open)?,
@@ -282,6 +282,15 @@ impl<'a> Parser<'a> {
         Ok(())
     }
 
+    /// The next element of the core in one that may be `open`; an empty one has none.
+    fn children(&mut self, open: bool, within: Within) -> Result<Child<'a>> {
+        if open {
+            self.child(within)
+        } else {
+            Ok(Child::End)
+        }
+    }
+
     /// The next element of the core in the one that is open. Elements of extensions are passed
     /// over.
     fn child(&mut self, within: Within) -> Result<Child<'a>> {
@@ -370,8 +379,8 @@ impl<'a> Parser<'a> {
     }
 
     fn resources(&mut self, open: bool) -> Result<()> {
-        while open {
-            match self.child(Within::Resources)? {
+        loop {
+            match self.children(open, Within::Resources)? {
                 Child::End => break,
                 Child::Core(name, e, open) => match name.as_str() {
                     "basematerials" => self.base_materials(&e, open)?,
@@ -392,8 +401,8 @@ impl<'a> Parser<'a> {
         let id = needed(id, "basematerials", "id").map_err(|e| self.reader.fail(e))?;
         self.take_id(id)?;
         let mut names = Vec::new();
-        while open {
-            match self.child(Within::Other)? {
+        loop {
+            match self.children(open, Within::Other)? {
                 Child::End => break,
                 Child::Core(name, e, open) if name == "base" => {
                     let mut own = None;
@@ -440,8 +449,8 @@ impl<'a> Parser<'a> {
         }
         let default = self.material(pid, pindex)?;
         let mut shape = None;
-        while open {
-            match self.child(Within::Object)? {
+        loop {
+            match self.children(open, Within::Object)? {
                 Child::End => break,
                 Child::Core(name, e, open) => match name.as_str() {
                     "metadatagroup" if shape.is_none() => self.pass(open)?,
@@ -502,8 +511,8 @@ impl<'a> Parser<'a> {
         open: bool,
     ) -> Result<Shape> {
         let (mut vertices, mut triangles) = (None, None);
-        while open {
-            match self.child(Within::Object)? {
+        loop {
+            match self.children(open, Within::Object)? {
                 Child::End => break,
                 Child::Core(name, e, open) => match name.as_str() {
                     "vertices" if vertices.is_none() => vertices = Some(self.vertices(open)?),
@@ -531,8 +540,8 @@ impl<'a> Parser<'a> {
     fn vertices(&mut self, open: bool) -> Result<Vec<[f64; 3]>> {
         let mut out = Vec::new();
         let shift = self.shift;
-        while open {
-            let (e, open) = match self.child(Within::Object)? {
+        loop {
+            let (e, open) = match self.children(open, Within::Object)? {
                 Child::End => break,
                 Child::Core(name, e, open) if name == "vertex" => (e, open),
                 Child::Core(_, e, _) => return Err(self.stranger(&e, "vertices")),
@@ -569,8 +578,8 @@ impl<'a> Parser<'a> {
         open: bool,
     ) -> Result<Vec<([u32; 3], Option<MaterialKey>)>> {
         let mut out = Vec::new();
-        while open {
-            let (e, open) = match self.child(Within::Object)? {
+        loop {
+            let (e, open) = match self.children(open, Within::Object)? {
                 Child::End => break,
                 Child::Core(name, e, open) if name == "triangle" => (e, open),
                 Child::Core(_, e, _) => return Err(self.stranger(&e, "triangles")),
@@ -619,8 +628,8 @@ impl<'a> Parser<'a> {
 
     fn components(&mut self, id: u32, open: bool) -> Result<Shape> {
         let mut out = Vec::new();
-        while open {
-            let (e, open) = match self.child(Within::Object)? {
+        loop {
+            let (e, open) = match self.children(open, Within::Object)? {
                 Child::End => break,
                 Child::Core(name, e, open) if name == "component" => (e, open),
                 Child::Core(_, e, _) => return Err(self.stranger(&e, "components")),
@@ -637,8 +646,8 @@ impl<'a> Parser<'a> {
     }
 
     fn build(&mut self, open: bool) -> Result<()> {
-        while open {
-            let (e, open) = match self.child(Within::Other)? {
+        loop {
+            let (e, open) = match self.children(open, Within::Other)? {
                 Child::End => break,
                 Child::Core(name, e, open) if name == "item" => (e, open),
                 Child::Core(_, e, _) => return Err(self.stranger(&e, "build")),
