@@ -1,5 +1,6 @@
 //! One file a command: arguments in, a library call, a report out. No geometry here.
 
+mod add;
 mod balance;
 mod check;
 mod copy;
@@ -8,6 +9,7 @@ mod materials;
 mod meshes;
 mod open;
 mod schema;
+mod slice;
 mod weigh;
 mod whole;
 
@@ -64,6 +66,8 @@ enum Command {
     Weigh(weigh::WeighArgs),
     /// Give mass, balance point and inertia of an assembly, and judge its limits
     Balance(balance::BalanceArgs),
+    /// Add slices that were weighed apart to the total, with the proof over all of them
+    Add(add::AddArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -102,6 +106,7 @@ pub fn main() -> u8 {
         Command::Check(args) => check::run(args, &cli.common),
         Command::Weigh(args) => weigh::run(args, &cli.common),
         Command::Balance(args) => balance::run(args, &cli.common),
+        Command::Add(args) => add::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

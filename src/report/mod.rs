@@ -1,5 +1,6 @@
 //! What people and programs read. Renderers compute nothing: they print what results hold.
 
+pub mod add;
 pub mod balance;
 pub mod check;
 pub mod check_text;
