@@ -55,6 +55,7 @@ pub mod quantity;
 pub mod report;
 pub mod soundness;
 pub mod stream;
+pub mod survey;
 pub mod text;
 
 pub use error::{Error, Kind, Result, Warning};

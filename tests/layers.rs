@@ -18,6 +18,7 @@ const ROWS: &[&[&str]] = &[
     &["masses", "material"],
     &["limits"],
     &["assembly"],
+    &["survey"],
     &["report"],
     &["command"],
 ];

@@ -10,6 +10,7 @@ mod meshes;
 mod open;
 mod schema;
 mod slice;
+mod survey;
 mod weigh;
 mod whole;
 
@@ -68,6 +69,8 @@ enum Command {
     Balance(balance::BalanceArgs),
     /// Add slices that were weighed apart to the total, with the proof over all of them
     Add(add::AddArgs),
+    /// Weigh a whole library of meshes into a table, one row a body
+    Survey(survey::SurveyArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -107,6 +110,7 @@ pub fn main() -> u8 {
         Command::Weigh(args) => weigh::run(args, &cli.common),
         Command::Balance(args) => balance::run(args, &cli.common),
         Command::Add(args) => add::run(args, &cli.common),
+        Command::Survey(args) => survey::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

@@ -12,6 +12,7 @@ mod footer;
 mod look;
 pub mod materials;
 pub mod picture;
+pub mod survey;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;
