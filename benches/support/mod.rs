@@ -217,8 +217,8 @@ pub(crate) fn library(tiny: bool, count: u64, folder: &std::path::Path) -> std::
         }
         // Faults of bytes are of binary files.
         let (ending, mut bytes) = match (fault, i % 10) {
-            (None | Some("hole" | "inside-out"), 3) => ("obj", obj(&[("ball".into(), triangles)])),
-            (None | Some("hole" | "inside-out"), 6) => ("stl", text_stl(&triangles)),
+            (None, 3) => ("obj", obj(&[("ball".into(), triangles)])),
+            (None, 6) => ("stl", text_stl(&triangles)),
             _ => ("stl", binary_stl(&triangles)),
         };
         match fault {
