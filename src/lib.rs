@@ -58,6 +58,7 @@ pub mod report;
 pub mod soundness;
 pub mod statics;
 pub mod stream;
+pub mod survey;
 pub mod text;
 pub mod uncertainty;
 

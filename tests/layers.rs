@@ -19,6 +19,7 @@ const ROWS: &[&[&str]] = &[
     &["limits", "uncertainty"],
     &["ballast"],
     &["assembly"],
+    &["survey"],
     &["report"],
     &["command"],
 ];

@@ -20,7 +20,17 @@ struct Schemas(BTreeMap<&'static str, Validator>);
 
 impl Schemas {
     fn all() -> Self {
-        let names = ["check", "weigh", "balance", "trim", "materials", "error"];
+        let names = [
+            "check",
+            "weigh",
+            "balance",
+            "trim",
+            "materials",
+            "error",
+            "add",
+            "partial",
+            "survey",
+        ];
         let of = |n| (n, jsonschema::draft202012::new(&schema(n)).unwrap());
         Self(names.map(of).into_iter().collect())
     }
@@ -70,7 +80,17 @@ fn the_schemas_are_draft_2020_12_and_refuse_unknown_fields() {
             list.iter().for_each(|v| walk(v, at, name, objects));
         }
     }
-    for name in ["check", "weigh", "balance", "trim", "materials", "error"] {
+    for name in [
+        "check",
+        "weigh",
+        "balance",
+        "trim",
+        "materials",
+        "error",
+        "add",
+        "partial",
+        "survey",
+    ] {
         let s = schema(name);
         assert_eq!(s["$schema"], "https://json-schema.org/draft/2020-12/schema");
         jsonschema::meta::validate(&s).unwrap_or_else(|e| panic!("{name}: {e}"));

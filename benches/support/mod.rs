@@ -161,3 +161,87 @@ pub(crate) fn nested_spheres(count: u32, triangles: u64) -> Vec<Triangle> {
         })
         .collect()
 }
+
+/// What is wrong with a file of [`library`], so that tests know what a survey must say.
+pub(crate) const FAULTS: [&str; 8] = [
+    "hole",
+    "crack",
+    "inside-out",
+    "duplicate",
+    "truncated",
+    "count-mismatch",
+    "not-finite",
+    "empty",
+];
+
+/// The fault of the `i`-th file: one in twenty has one, each in its turn.
+pub(crate) fn fault_of(i: u64) -> Option<&'static str> {
+    (i % 20 == 7).then(|| FAULTS[(i / 20) as usize % FAULTS.len()])
+}
+
+/// Triangles of the `i`-th file of `count`: many small, few large; 5 M in all for 2,000 files.
+pub(crate) fn size_of(i: u64) -> u64 {
+    match i % 200 {
+        199 => 230_000,
+        190..199 => 16_000,
+        150..190 => 2_000,
+        _ => 220,
+    }
+}
+
+/// A library of mesh files in sub-folders, in three formats, of balls that each stand and weigh
+/// differently; a few stand there twice. With `tiny`, cubes of 12 triangles.
+pub(crate) fn library(tiny: bool, count: u64, folder: &std::path::Path) -> std::io::Result<()> {
+    for i in 0..count {
+        let name = ["frame", "wheels", "pump", "tank", "brackets"][(i / 7 % 5) as usize];
+        let at = folder.join(name);
+        std::fs::create_dir_all(&at)?;
+        // Every hundredth is a copy of the one before.
+        let of = if i % 100 == 50 && !tiny { i - 1 } else { i };
+        let n = if tiny { 0 } else { rings_for(size_of(of)) };
+        let radius = 10.0 + (of as f64 * 0.618).fract() * 40.0;
+        let centre = [of as f64 % 13.0, -3.0, 80.0];
+        let mut triangles: Vec<Triangle> = match tiny {
+            true => cube(radius as f32),
+            false => sphere(n, radius, centre).collect(),
+        };
+        let fault = fault_of(i).filter(|_| !tiny);
+        match fault {
+            Some("hole") => drop(triangles.remove(0)),
+            Some("crack") => triangles[0][1][2] += 1e-3,
+            Some("inside-out") => triangles.iter_mut().for_each(|t| t.swap(1, 2)),
+            Some("duplicate") => triangles.push(triangles[3]),
+            Some("not-finite") => triangles[5][1][2] = f32::NAN,
+            Some("empty") => triangles.clear(),
+            _ => {}
+        }
+        // Faults of bytes are of binary files.
+        let (ending, mut bytes) = match (fault, i % 10) {
+            (None, 3) => ("obj", obj(&[("ball".into(), triangles)])),
+            (None, 6) => ("stl", text_stl(&triangles)),
+            _ => ("stl", binary_stl(&triangles)),
+        };
+        match fault {
+            Some("truncated") => bytes.truncate(bytes.len() - 60),
+            Some("count-mismatch") => bytes.extend([0; 50]),
+            _ => {}
+        }
+        std::fs::write(at.join(format!("part-{i:05}.{ending}")), bytes)?;
+    }
+    Ok(())
+}
+
+/// An axis-aligned cube.
+pub(crate) fn cube(side: f32) -> Vec<Triangle> {
+    let p = |i: usize| [0, 1, 2].map(|k| if i >> k & 1 == 1 { side } else { 0.0 });
+    let quads = [
+        [0, 2, 3, 1],
+        [4, 5, 7, 6],
+        [0, 1, 5, 4],
+        [2, 6, 7, 3],
+        [0, 4, 6, 2],
+        [1, 3, 7, 5],
+    ];
+    let halves = |q: [usize; 4]| [[p(q[0]), p(q[1]), p(q[2])], [p(q[0]), p(q[2]), p(q[3])]];
+    quads.into_iter().flat_map(halves).collect()
+}

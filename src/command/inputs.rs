@@ -38,7 +38,7 @@ pub(super) struct MeshArgs {
     pub(super) hash: bool,
 }
 
-fn parse_unit(text: &str) -> Result<LengthUnit, String> {
+pub(super) fn parse_unit(text: &str) -> Result<LengthUnit, String> {
     [
         LengthUnit::Mm,
         LengthUnit::Cm,

@@ -1,5 +1,6 @@
 //! One file a command: arguments in, a library call, a report out. No geometry here.
 
+mod add;
 mod balance;
 mod beside;
 mod check;
@@ -10,6 +11,8 @@ mod meshes;
 mod open;
 mod progress;
 mod schema;
+mod slice;
+mod survey;
 mod trim;
 mod weigh;
 mod whole;
@@ -69,6 +72,10 @@ enum Command {
     Balance(balance::BalanceArgs),
     /// Give the least ballast that brings an assembly inside its limits
     Trim(trim::TrimArgs),
+    /// Add slices that were weighed apart to the total, with the proof over all of them
+    Add(add::AddArgs),
+    /// Weigh a whole library of meshes into a table, one row a body
+    Survey(survey::SurveyArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -108,6 +115,8 @@ pub fn main() -> u8 {
         Command::Weigh(args) => weigh::run(args, &cli.common),
         Command::Balance(args) => balance::run(args, &cli.common),
         Command::Trim(args) => trim::run(args, &cli.common),
+        Command::Add(args) => add::run(args, &cli.common),
+        Command::Survey(args) => survey::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

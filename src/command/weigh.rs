@@ -5,7 +5,7 @@ use clap::{Args, ValueEnum};
 use super::inputs::{Input, MeshArgs, ReadMesh, closing_distance, expand, open, picked, read};
 use super::open::{self, Opened};
 use super::progress::Terminal;
-use super::{Answer, Common, gather, point, whole};
+use super::{Answer, Common, gather, point, slice, whole};
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
@@ -20,6 +20,7 @@ use crate::soundness::{
     self, Depth, Filled, Finding,
     cap::{Cap, Estimate},
 };
+use crate::stream::Slice;
 use crate::uncertainty::{BodySources, Uncertainty};
 
 /// Arguments of `weigh`.
@@ -46,6 +47,12 @@ pub(super) struct WeighArgs {
     /// see doubled meshes, solids in solids or single shells inside out
     #[arg(long, conflicts_with_all = ["nested", "join", "filled", "accept_open"])]
     whole: bool,
+    /// Sum only the K-th of N slices of one file, to be added by `bismar add`
+    #[arg(long, value_name = "K/N", requires = "whole", conflicts_with_all = ["density", "material", "about"])]
+    slice: Option<Slice>,
+    /// Write the partial of --slice to this file [default: standard output]
+    #[arg(short, long, value_name = "PARTIAL", requires = "slice")]
+    output: Option<std::path::PathBuf>,
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
     accept_open: Option<f64>,
@@ -77,13 +84,16 @@ impl From<Nested> for NestedRule {
 /// # Errors
 /// Of the options; faults of inputs stand in the answer.
 pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
-    let substance = substance(args)?;
+    let substance = substance(args.density.as_deref(), args.material.as_deref())?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
     args.meshes.judge()?;
     let inputs = expand(&args.meshes);
     if args.whole {
         whole::without_picks(&inputs)?;
+    }
+    if let Some(slice) = args.slice {
+        return slice::run(inputs, slice, args.output.as_deref(), &args.meshes, common);
     }
     let terminal = Terminal::new(common);
     let progress = terminal.progress();
@@ -152,8 +162,15 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     )
 }
 
-fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
-    if let Some(text) = &args.density {
+/// What the options make a body of.
+///
+/// # Errors
+/// Of the density; `unknown-name` for the material.
+pub(super) fn substance(
+    density: Option<&str>,
+    material: Option<&str>,
+) -> Result<Option<Substance>> {
+    if let Some(text) = density {
         let density = Quantity::parse(text, Dimension::Density, None)
             .map_err(|e| Error::new(e.kind, format!("--density: {}", e.message), e.advice))?;
         if density.value <= 0.0 {
@@ -168,7 +185,7 @@ fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
             density,
         }));
     }
-    let Some(word) = &args.material else {
+    let Some(word) = material else {
         return Ok(None);
     };
     let material = Table::standard().get(word)?;
@@ -178,8 +195,19 @@ fn substance(args: &WeighArgs) -> Result<Option<Substance>> {
     }))
 }
 
+/// The warning that a density's tolerance goes into no figure.
+pub(super) fn tolerance_ignored(substance: &Substance) -> Option<Warning> {
+    substance.density.tolerance.is_some().then(|| Warning {
+        kind: "tolerances-ignored".to_owned(),
+        message: "the density has a tolerance; the figures are for its nominal value and say nothing of how far they may be off".to_owned(),
+        path: None,
+        line: None,
+        advice: "take the density's tolerance as the mass's own, in per cent, at least".to_owned(),
+    })
+}
+
 /// The point of `--about`, m.
-fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>> {
+pub(super) fn about_point(text: Option<&str>, unit: LengthUnit) -> Result<Option<[f64; 3]>> {
     text.map(|text| point(text, unit)).transpose()
 }
 

@@ -201,23 +201,61 @@ fn tell(
 ) -> Result<(WeighedFile, Vec<Warning>)> {
     let (unit, unit_assumed, mut warnings) = said(read.unit, &read.notes, input, args);
     let path = input.path.to_string_lossy().into_owned();
+    if let Some(what) = read.not_streamed {
+        warnings.push(Warning {
+            kind: "not-streamed".to_owned(),
+            message: format!("{what} is not streamed: it was read into memory whole"),
+            path: Some(path.clone()),
+            line: None,
+            advice: "binary STL streams, from a file or from standard input".to_owned(),
+        });
+    }
+    let (whole, turned, closed) = judge(
+        &read.totals,
+        unit,
+        &path,
+        substance,
+        about(unit)?,
+        &mut warnings,
+    );
+    let file = WeighedFile {
+        path: path.clone(),
+        path_hex: path_hex(&input.path),
+        format: Some(read.format.name()),
+        triangles: Some(read.totals.triangles),
+        unit: Some(unit.symbol()),
+        unit_assumed,
+        error: None,
+        findings: Vec::new(),
+        overlap: "untested",
+        bodies: None,
+        turned: whole.is_some().then_some(turned),
+        whole,
+        whole_missing: Vec::new(),
+        proved: Some(closed.then_some("edges-cancel")),
+    };
+    Ok((file, warnings))
+}
+
+/// What totals come to: the figures, whether the surface was turned, whether its edges cancel.
+/// What speaks against them is added to the warnings, as of `path`.
+pub(super) fn judge(
+    totals: &Totals,
+    unit: LengthUnit,
+    path: &str,
+    substance: Option<&Substance>,
+    about: Option<[f64; 3]>,
+    warnings: &mut Vec<Warning>,
+) -> (Option<Whole>, bool, bool) {
     let mut warn = |kind: &str, message: &str, advice: &str| {
         warnings.push(Warning {
             kind: kind.to_owned(),
             message: message.to_owned(),
-            path: Some(path.clone()),
+            path: Some(path.to_owned()),
             line: None,
             advice: advice.to_owned(),
         });
     };
-    if let Some(what) = read.not_streamed {
-        warn(
-            "not-streamed",
-            &format!("{what} is not streamed: it was read into memory whole"),
-            "binary STL streams, from a file or from standard input",
-        );
-    }
-    let totals = &read.totals;
     let closed = totals.certificate.cancels();
     let turned = closed && totals.solid.moments.zeroth < 0.0;
     let mut whole = None;
@@ -250,7 +288,7 @@ fn tell(
             figures: Figures {
                 // K about the middle of the box is not known after one reading.
                 condition: None,
-                ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
+                ..Figures::of(&solid, bounds, unit.metres(), substance, about)
             },
             estimate: None,
             uncertainty: super::weigh::uncertainty(
@@ -260,21 +298,5 @@ fn tell(
             ),
         });
     }
-    let file = WeighedFile {
-        path: path.clone(),
-        path_hex: path_hex(&input.path),
-        format: Some(read.format.name()),
-        triangles: Some(totals.triangles),
-        unit: Some(unit.symbol()),
-        unit_assumed,
-        error: None,
-        findings: Vec::new(),
-        overlap: "untested",
-        bodies: None,
-        turned: whole.is_some().then_some(turned),
-        whole,
-        whole_missing: Vec::new(),
-        proved: Some(closed.then_some("edges-cancel")),
-    };
-    Ok((file, warnings))
+    (whole, turned, closed)
 }

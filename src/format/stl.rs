@@ -5,10 +5,12 @@
 //! Both as in the 3D Systems interface specification of 1989 (common practice since).
 
 mod binary;
+mod range;
 mod text;
 
 pub(crate) use binary::{HEADER, RECORD, count_in, declared, first_not_finite};
 pub use binary::{check_finite, parse_unchecked as parse_binary_unchecked};
+pub(crate) use range::{Cuts, parse_range};
 pub use text::parse as parse_text;
 
 use crate::error::Result;

@@ -4,9 +4,11 @@ mod algebra;
 mod principal;
 mod skin;
 mod solid;
+mod total;
 
 pub use algebra::{Moments, Placement};
 pub use principal::{Principal, principal};
 pub use skin::integrate_skin;
 pub(crate) use solid::Running;
 pub use solid::{CHUNK, ChunkSums, SolidIntegrals, chunk_sums, integrate};
+pub use total::TotalSums;

@@ -12,14 +12,15 @@
 //!
 //! d is the only step that cancels within a triangle: for a thin plate that stands askew its
 //! rounding would be far larger than the volume's. It is therefore formed in twice the working
-//! precision, from differences that carry their own rounding errors. The sums are compensated,
-//! over chunks of a fixed number of triangles that are added in their order, so that the bits do
-//! not depend on the number of threads.
+//! precision, from differences that carry their own rounding errors. The sums are compensated
+//! over chunks of a fixed number of triangles, and those of chunks are added without any rounding
+//! ([`TotalSums`]), so that the bits depend neither on the number of threads nor on which process
+//! summed which chunk.
 
 use nalgebra::{Matrix3, Vector3};
 use rayon::prelude::*;
 
-use super::Moments;
+use super::{Moments, TotalSums};
 use crate::geometry::eft::{Fused, Product, Split, Sum, two_diff, two_sum};
 use crate::geometry::{BLOCK, Block, Coordinate, Corners, LANES, Lane, Level, Select};
 
@@ -28,7 +29,7 @@ use crate::geometry::{BLOCK, Block, Coordinate, Corners, LANES, Lane, Level, Sel
 pub const CHUNK: usize = 4096;
 
 /// Compensated sums of one chunk: volume, first (3), second (6: xx yy zz xy xz yz), area.
-const SUMS: usize = 11;
+pub(super) const SUMS: usize = 11;
 
 /// What one pass over the triangles of a solid yields, in the file's unit.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -49,7 +50,7 @@ impl SolidIntegrals {
     }
 }
 
-/// The sums of one chunk, exact enough to be added in any grouping of whole chunks.
+/// The compensated sums of one chunk.
 #[derive(Clone, Copy, Debug)]
 pub struct ChunkSums {
     sums: [Sum; SUMS],
@@ -63,24 +64,33 @@ impl ChunkSums {
         absolute: 0.0,
     };
 
-    /// Adds the sums of the chunk that follows.
-    pub fn join(&mut self, next: &Self) {
-        for (mine, theirs) in self.sums.iter_mut().zip(&next.sums) {
-            mine.join(*theirs);
-        }
-        self.absolute += next.absolute;
-    }
-
-    /// Surface area so far.
+    /// Surface area.
     pub fn area(&self) -> f64 {
         self.sums[SUMS - 1].value() / 2.0
     }
 
+    /// What stands for each sum: its value and what that has lost; of the last, which is K, the
+    /// value alone.
+    pub(super) fn parts(&self) -> [(f64, f64); SUMS + 1] {
+        let mut out = [(self.absolute, 0.0); SUMS + 1];
+        for (to, sum) in out.iter_mut().zip(&self.sums) {
+            *to = sum.parts();
+        }
+        out
+    }
+
     /// The integrals, with `apex` the point that the sums were taken about.
     pub fn finish(&self, apex: [f64; 3]) -> SolidIntegrals {
-        let v = self.sums.map(Sum::value);
+        // Rounded once, as sums of several chunks are.
+        SolidIntegrals::of_sums(self.parts().map(|(high, low)| high + low), apex)
+    }
+}
+
+impl SolidIntegrals {
+    /// From the values of all sums, in their order, K last.
+    pub(super) fn of_sums(v: [f64; SUMS + 1], apex: [f64; 3]) -> Self {
         let s = |i: usize| v[i] / 120.0;
-        SolidIntegrals {
+        Self {
             moments: Moments {
                 about: Vector3::from(apex),
                 zeroth: v[0] / 6.0,
@@ -88,7 +98,7 @@ impl ChunkSums {
                 second: Matrix3::new(s(4), s(7), s(8), s(7), s(5), s(9), s(8), s(9), s(6)),
             },
             area: v[10] / 2.0,
-            absolute_volume: self.absolute / 6.0,
+            absolute_volume: v[SUMS] / 6.0,
         }
     }
 }
@@ -110,13 +120,12 @@ pub fn integrate(
         chunk_sums(facets, select, range, apex, middle)
     };
     let chunks = n.div_ceil(CHUNK);
-    let mut total = ChunkSums::ZERO;
     if chunks <= 1 {
-        total.join(&chunk(0));
-    } else {
-        let parts: Vec<ChunkSums> = (0..chunks).into_par_iter().map(chunk).collect();
-        parts.iter().for_each(|part| total.join(part));
+        return chunk(0).finish(apex);
     }
+    let parts: Vec<ChunkSums> = (0..chunks).into_par_iter().map(chunk).collect();
+    let mut total = TotalSums::ZERO;
+    parts.iter().for_each(|part| total.add(part));
     total.finish(apex)
 }
 

@@ -1,5 +1,6 @@
 //! What people and programs read. Renderers compute nothing: they print what results hold.
 
+pub mod add;
 pub mod balance;
 pub mod check;
 pub mod check_text;
@@ -13,6 +14,7 @@ pub mod materials;
 pub mod picture;
 mod statics_text;
 mod sure;
+pub mod survey;
 pub mod table;
 pub mod trim;
 pub mod weigh;

@@ -3,7 +3,7 @@
 use super::certificate::{Certificate, Hashed, Keys};
 use crate::geometry::eft::{Fused, Product, Split};
 use crate::geometry::{BLOCK, Block, Corners, Level, RecordFacets, Select};
-use crate::moments::{ChunkSums, Running};
+use crate::moments::{ChunkSums, Running, TotalSums};
 
 /// What one chunk adds.
 #[derive(Clone, Copy, Debug)]
@@ -13,21 +13,42 @@ pub(super) struct Part {
     pub(super) bounds: [[f64; 3]; 2],
 }
 
-impl Part {
+/// What chunks come to, in any order and grouping.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Total {
+    pub(super) sums: TotalSums,
+    pub(super) certificate: Certificate,
+    pub(super) bounds: [[f64; 3]; 2],
+}
+
+/// The box around nothing.
+pub(super) const NOWHERE: [[f64; 3]; 2] = [[f64::INFINITY; 3], [f64::NEG_INFINITY; 3]];
+
+impl Total {
     /// Of no triangles.
     pub(super) const NOTHING: Self = Self {
-        sums: ChunkSums::ZERO,
+        sums: TotalSums::ZERO,
         certificate: Certificate::ZERO,
-        bounds: [[f64::INFINITY; 3], [f64::NEG_INFINITY; 3]],
+        bounds: NOWHERE,
     };
 
-    /// Adds the part that follows.
-    pub(super) fn join(&mut self, next: &Self) {
-        self.sums.join(&next.sums);
-        self.certificate = self.certificate.plus(next.certificate);
+    /// Adds a chunk.
+    pub(super) fn add(&mut self, part: &Part) {
+        self.sums.add(&part.sums);
+        self.beside(part.certificate, &part.bounds);
+    }
+
+    /// Adds what other chunks come to.
+    pub(super) fn join(&mut self, other: &Self) {
+        self.sums.join(&other.sums);
+        self.beside(other.certificate, &other.bounds);
+    }
+
+    fn beside(&mut self, certificate: Certificate, bounds: &[[f64; 3]; 2]) {
+        self.certificate = self.certificate.plus(certificate);
         for k in 0..3 {
-            self.bounds[0][k] = self.bounds[0][k].min(next.bounds[0][k]);
-            self.bounds[1][k] = self.bounds[1][k].max(next.bounds[1][k]);
+            self.bounds[0][k] = self.bounds[0][k].min(bounds[0][k]);
+            self.bounds[1][k] = self.bounds[1][k].max(bounds[1][k]);
         }
     }
 }
@@ -183,7 +204,7 @@ impl<T: Hashed> Boxes<T> {
         reason = "one index runs over several arrays"
     )]
     fn finish(&self) -> [[f64; 3]; 2] {
-        let mut out = Part::NOTHING.bounds;
+        let mut out = NOWHERE;
         for i in 0..3 {
             for l in 0..BLOCK {
                 out[0][i] = out[0][i].min(self.low[i][l].canonical().wide());

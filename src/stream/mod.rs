@@ -4,24 +4,32 @@
 //! [`Certificate`]). Nothing is welded and no body is told from another: a mesh that is written
 //! twice, shells inside out and solids in solids cancel too and are not seen here.
 //!
-//! Sums are taken about the first vertex of the file, over the same chunks and in the same order as
-//! [`integrate`](crate::moments::integrate) takes them: the moments of a single body have the same
-//! bits on both paths.
+//! Sums are taken about the first vertex of the file, over the same chunks as
+//! [`integrate`](crate::moments::integrate) takes them, and chunks are added without rounding: the
+//! moments of a single body have the same bits on both paths, and so have those of a mesh whose
+//! slices were summed apart (see [`Partial`]).
 
 mod certificate;
+mod cover;
 mod kernel;
+mod partial;
 mod pass;
 mod records;
+mod slice;
 
 pub use certificate::{Certificate, Keys};
+pub use partial::{Identity, PARTIAL_SCHEMA, Partial};
 pub use records::{of_file, of_memory, of_stream};
+pub use slice::{Slice, slice_of_corners, slice_of_memory, slice_of_path};
 
+#[cfg(test)]
+mod slice_tests;
 #[cfg(test)]
 mod tests;
 
 use crate::geometry::Corners;
 use crate::moments::{CHUNK, SolidIntegrals};
-use kernel::{OfCorners, Part, part};
+use kernel::{OfCorners, Total, part};
 
 /// What one reading of a mesh yields, in the file's unit.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -39,7 +47,7 @@ pub struct Totals {
 }
 
 impl Totals {
-    fn new(triangles: u64, apex: [f64; 3], total: &Part) -> Self {
+    fn new(triangles: u64, apex: [f64; 3], total: &Total) -> Self {
         Self {
             triangles,
             solid: total.sums.finish(apex),
@@ -57,17 +65,37 @@ impl Totals {
 
 /// Totals of triangles in memory whose coordinates are finite f64.
 pub fn of_corners(facets: &impl Corners, keys: &Keys) -> Totals {
-    let n = facets.count();
-    if n == 0 {
-        return Totals::new(0, [0.0; 3], &Part::NOTHING);
+    let (apex, total) = chunks_of_corners(facets, |all| 0..all, keys);
+    Totals::new(facets.count() as u64, apex, &total)
+}
+
+/// What the chunks `wanted` come to, and the first vertex; it is told how many there are.
+fn chunks_of_corners(
+    facets: &impl Corners,
+    wanted: impl FnOnce(u64) -> std::ops::Range<u64>,
+    keys: &Keys,
+) -> ([f64; 3], Total) {
+    if facets.count() == 0 {
+        return ([0.0; 3], Total::NOTHING);
     }
     let apex = facets.triangle(0)[0];
+    (apex, chunks_about(facets, wanted, apex, keys))
+}
+
+/// What the chunks `wanted` come to, about `apex`.
+fn chunks_about(
+    facets: &impl Corners,
+    wanted: impl FnOnce(u64) -> std::ops::Range<u64>,
+    apex: [f64; 3],
+    keys: &Keys,
+) -> Total {
+    let n = facets.count();
     let source = OfCorners(facets);
-    let mut total = Part::NOTHING;
+    let mut total = Total::NOTHING;
     // Nothing here can fail.
-    let _ = pass::in_order(&mut total, n.div_ceil(CHUNK) as u64, |k| {
+    let _ = pass::all(&mut total, wanted(n.div_ceil(CHUNK) as u64), |k| {
         let at = k as usize * CHUNK;
         Ok(part(&source, at..n.min(at + CHUNK), apex, keys))
     });
-    Totals::new(n as u64, apex, &total)
+    total
 }

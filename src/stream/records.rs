@@ -4,8 +4,9 @@
 use std::cell::RefCell;
 use std::fs::File;
 use std::io::Read;
+use std::ops::Range;
 
-use super::kernel::{OfRecords, Part, part};
+use super::kernel::{OfRecords, Part, Total, part};
 use super::{Keys, Totals, pass};
 use crate::error::{Error, Kind, Result};
 use crate::format::stl::{HEADER, RECORD, count_in, declared, first_not_finite};
@@ -51,16 +52,30 @@ fn chunk(records: &[u8], first: u64, apex: [f64; 3], keys: &Keys) -> Result<Part
 /// # Errors
 /// `truncated`, `count-mismatch`, `empty` and `not-finite`, with the byte.
 pub fn of_memory(bytes: &[u8], keys: &Keys) -> Result<Totals> {
+    let (count, apex, total) = chunks_of_memory(bytes, |all| 0..all, keys)?;
+    Ok(Totals::new(count, apex, &total))
+}
+
+/// Some chunks of a mesh: the number of triangles of all of it, its first vertex, and what they
+/// come to.
+pub(super) type Chunks = (u64, [f64; 3], Total);
+
+/// What the chunks `wanted` come to; it is told how many there are.
+pub(super) fn chunks_of_memory(
+    bytes: &[u8],
+    wanted: impl FnOnce(u64) -> Range<u64>,
+    keys: &Keys,
+) -> Result<Chunks> {
     let count = count_in(bytes, bytes.len() as u64)?;
     let records = bytes.get(HEADER as usize..).unwrap_or_default();
     let apex = apex_of(records);
-    let mut total = Part::NOTHING;
-    pass::in_order(&mut total, count.div_ceil(CHUNK as u64), |k| {
+    let mut total = Total::NOTHING;
+    pass::all(&mut total, wanted(count.div_ceil(CHUNK as u64)), |k| {
         let at = k as usize * CHUNK_BYTES;
         let end = records.len().min(at + CHUNK_BYTES);
         chunk(&records[at..end], k * CHUNK as u64, apex, keys)
     })?;
-    Ok(Totals::new(count, apex, &total))
+    Ok((count, apex, total))
 }
 
 fn unreadable(e: &std::io::Error) -> Error {
@@ -88,7 +103,8 @@ fn unreadable(e: &std::io::Error) -> Error {
 pub fn of_file(file: &File, keys: &Keys) -> Result<Totals> {
     #[cfg(unix)]
     {
-        of_file_from(file, 0, keys)
+        let (count, apex, total) = chunks_of_file(file, |all| 0..all, keys)?;
+        Ok(Totals::new(count, apex, &total))
     }
     #[cfg(not(unix))]
     {
@@ -97,9 +113,13 @@ pub fn of_file(file: &File, keys: &Keys) -> Result<Totals> {
     }
 }
 
-/// Totals of the triangles from the chunk `from` on, about the first vertex of the file.
+/// What the chunks `wanted` come to; it is told how many there are.
 #[cfg(unix)]
-pub(super) fn of_file_from(file: &File, from: u64, keys: &Keys) -> Result<Totals> {
+pub(super) fn chunks_of_file(
+    file: &File,
+    wanted: impl FnOnce(u64) -> Range<u64>,
+    keys: &Keys,
+) -> Result<Chunks> {
     use std::os::unix::fs::FileExt;
     thread_local! {
         static BUFFER: RefCell<Vec<u8>> = const { RefCell::new(Vec::new()) };
@@ -111,10 +131,9 @@ pub(super) fn of_file_from(file: &File, from: u64, keys: &Keys) -> Result<Totals
         .map_err(|e| unreadable(&e))?;
     let count = count_in(&head[..known], len)?;
     let apex = apex_of(&head[HEADER as usize..]);
-    let mut total = Part::NOTHING;
-    let chunks = count.div_ceil(CHUNK as u64).saturating_sub(from);
-    pass::in_order(&mut total, chunks, |k| {
-        let first = (from + k) * CHUNK as u64;
+    let mut total = Total::NOTHING;
+    pass::all(&mut total, wanted(count.div_ceil(CHUNK as u64)), |k| {
+        let first = k * CHUNK as u64;
         // At most CHUNK: it fits.
         let bytes = (count - first).min(CHUNK as u64) as usize * RECORD as usize;
         BUFFER.with_borrow_mut(|buffer| {
@@ -125,7 +144,7 @@ pub(super) fn of_file_from(file: &File, from: u64, keys: &Keys) -> Result<Totals
             chunk(records, first, apex, keys)
         })
     })?;
-    Ok(Totals::new(count, apex, &total))
+    Ok((count, apex, total))
 }
 
 /// Totals of a binary STL from a stream, and the number of its bytes. One batch is read while the
@@ -147,7 +166,7 @@ pub fn of_stream(mut stream: impl Read + Send, keys: &Keys) -> Result<(Totals, u
     };
     let mut done = 0;
     let mut apex = [0.0; 3];
-    let mut total = Part::NOTHING;
+    let mut total = Total::NOTHING;
     let (mut now, mut next) = (Vec::new(), Vec::new());
     let wanted = |done: u64| (count - done).min((BATCH * CHUNK) as u64) as usize * RECORD as usize;
     fill(&mut stream, &mut now, wanted(0))?;
@@ -160,7 +179,7 @@ pub fn of_stream(mut stream: impl Read + Send, keys: &Keys) -> Result<(Totals, u
         let last = now.len() < wanted(done);
         let work = || {
             let chunks = records.div_ceil(CHUNK as u64);
-            pass::in_order(&mut total, chunks, |k| {
+            pass::all(&mut total, 0..chunks, |k| {
                 let at = k as usize * CHUNK_BYTES;
                 let end = now.len().min(at + CHUNK_BYTES);
                 chunk(&now[at..end], done + k * CHUNK as u64, apex, keys)

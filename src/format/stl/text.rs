@@ -10,7 +10,7 @@ use crate::format::number::{
 use crate::mesh::{ReaderNote, Soup, Triangles};
 
 /// Where the text begins, after a byte-order mark and blanks.
-fn beginning(bytes: &[u8]) -> usize {
+pub(super) fn beginning(bytes: &[u8]) -> usize {
     let start = if bytes.starts_with(b"\xef\xbb\xbf") {
         3
     } else {
@@ -104,15 +104,15 @@ struct Event<'a> {
     name: Option<&'a [u8]>,
 }
 
-struct Piece<'a> {
-    triangles: Vec<[[f64; 3]; 3]>,
+pub(super) struct Piece<'a> {
+    pub(super) triangles: Vec<[[f64; 3]; 3]>,
     events: Vec<Event<'a>>,
 }
 
 /// The beginning of the next line after `at` whose first word is `facet`. No such line can be
 /// the name of a solid, so a piece that begins there begins between facets (or inside one that
 /// lacks its end, which is an error either way).
-fn next_facet_line(text: &[u8], mut at: usize, ending: u8) -> Option<usize> {
+pub(super) fn next_facet_line(text: &[u8], mut at: usize, ending: u8) -> Option<usize> {
     loop {
         at = chunk::line_end(text, at, ending);
         let first = skip_blank(text, at);
@@ -128,7 +128,7 @@ fn next_facet_line(text: &[u8], mut at: usize, ending: u8) -> Option<usize> {
 
 /// The end of the word `expected` (lower case) at `at`, if it stands there alone, in any case.
 #[inline(always)]
-fn word(text: &[u8], at: usize, expected: &[u8]) -> Option<usize> {
+pub(super) fn word(text: &[u8], at: usize, expected: &[u8]) -> Option<usize> {
     let end = at + expected.len();
     let found = text.get(at..end)?;
     if found != expected && !found.eq_ignore_ascii_case(expected) {
@@ -137,7 +137,7 @@ fn word(text: &[u8], at: usize, expected: &[u8]) -> Option<usize> {
     text.get(end).is_none_or(|&b| is_blank(b)).then_some(end)
 }
 
-fn read_piece(text: &[u8], range: Range<usize>, ending: u8) -> Result<Piece<'_>, Fault> {
+pub(super) fn read_piece(text: &[u8], range: Range<usize>, ending: u8) -> Result<Piece<'_>, Fault> {
     let last = range.end == text.len();
     // The piece alone, so that a facet cannot run on into the next one.
     let piece = &text[..range.end];
