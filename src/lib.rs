@@ -51,6 +51,7 @@ pub mod masses;
 pub mod material;
 pub mod mesh;
 pub mod moments;
+pub mod printed;
 pub mod quantity;
 pub mod report;
 pub mod soundness;

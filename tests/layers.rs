@@ -12,6 +12,7 @@ const ROWS: &[&[&str]] = &[
     &["bytes", "geometry", "quantity"],
     &["moments"],
     &["mesh"],
+    &["printed"],
     &["format"],
     &["stream"],
     &["soundness"],
