@@ -6,6 +6,7 @@ use globset::GlobMatcher;
 use nalgebra::{Matrix3, Vector3};
 
 use crate::limits::Limit;
+use crate::printed::Made;
 use crate::quantity::{LengthUnit, Quantity};
 
 /// One assembly file. Lengths are in metres, everything in SI units.
@@ -148,6 +149,8 @@ pub struct Part {
     pub measured: Option<Quantity>,
     /// Open bodies of it are taken capped while the bound is at most this share of the volume.
     pub accept_open: Option<f64>,
+    /// How it is printed; a solid where nothing is stated. Lengths in m, the mesh file's axes.
+    pub made: Option<Made>,
     /// What the CAD model says of it.
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.

@@ -7,6 +7,7 @@ use globset::GlobBuilder;
 
 use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, Pattern};
 use super::load::Loader;
+use super::made;
 use super::position;
 use super::read_limits;
 use super::reader::{Reader, Shared};
@@ -191,6 +192,7 @@ impl Context<'_, '_> {
         let accept_open = r
             .quantity("accept-open", Dimension::Fraction)
             .map(|(q, _)| q.value);
+        let made = made::read(&r);
         let expect = expect(&r);
         let each = each(&r);
         let mesh = r
@@ -221,6 +223,7 @@ impl Context<'_, '_> {
             position,
             measured,
             accept_open,
+            made,
             expect,
             each,
         })

@@ -15,8 +15,8 @@ use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
 const NOT_READ: &[&str] = &[
-    "ballast", "case", "drain", "frame", "gravity", "hang", "made", "motion", "phase", "smear",
-    "support", "tank",
+    "ballast", "case", "drain", "frame", "gravity", "hang", "motion", "phase", "smear", "support",
+    "tank",
 ];
 
 /// What the readers of one file share.

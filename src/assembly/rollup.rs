@@ -12,6 +12,7 @@ use super::resolve::{Basis, Resolved, Source, Weighed, around};
 use super::sum;
 use crate::error::{Error, Kind};
 use crate::limits::{Judged, Measured, Verdict};
+use crate::masses::PrintFigures;
 use crate::moments::{Moments, principal};
 
 /// The answer to `balance`. Its fields are those of the JSON document; SI units, in the names;
@@ -96,6 +97,9 @@ pub struct PartRow {
     /// Measured mass / volume.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub implied_density_kg_m3: Option<f64>,
+    /// How it is printed; absent for a solid.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub made: Option<PrintFigures>,
     /// Of the material, where it is one.
     pub density_kg_m3: Option<f64>,
     /// Of the mesh.
@@ -309,6 +313,7 @@ fn part_row(w: &Weighed, mass: Option<f64>) -> PartRow {
         basis: w.basis,
         estimate: w.estimate,
         implied_density_kg_m3: w.implied_density,
+        made: w.made.clone(),
         density_kg_m3: material.map(|m| m.density.value),
         volume_m3: w.volume,
         centre_of_mass_m: centre(w),

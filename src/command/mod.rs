@@ -4,6 +4,7 @@ mod balance;
 mod check;
 mod copy;
 mod inputs;
+mod made;
 mod materials;
 mod meshes;
 mod open;

@@ -3,6 +3,7 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
+use super::made::{self, MadeArgs};
 use super::open::{self, Opened};
 use super::{Answer, Common, gather, point, whole};
 use crate::error::{Error, Kind, Result, Warning};
@@ -10,6 +11,7 @@ use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule, Refusal};
 use crate::moments::{Moments, SolidIntegrals};
+use crate::printed::Printed;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::estimate::Estimated;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
@@ -46,6 +48,8 @@ pub(super) struct WeighArgs {
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
     accept_open: Option<f64>,
+    #[command(flatten)]
+    made: MadeArgs,
 }
 
 /// Choices of `--nested`.
@@ -77,6 +81,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args)?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
+    let solid = args.made.plan(LengthUnit::Mm)?.is_none();
     args.meshes.judge()?;
     let inputs = expand(&args.meshes);
     if args.whole {
@@ -124,6 +129,13 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             line: None,
             advice: "take the density's tolerance as the mass's own, in per cent, at least".to_owned(),
         });
+    }
+    if solid
+        && let Some(word) = &args.material
+        && let Ok(material) = Table::standard().get(word)
+        && material.printing
+    {
+        answers.warnings.push(made::caution(&material.name));
     }
     let body = WeighBody { files };
     answers.finish(
@@ -209,15 +221,35 @@ fn answer(
         .iter()
         .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
         .collect();
-    let bodies: Vec<WeighedBody> = chosen
+    let made = args.made.plan(m.unit)?;
+    let mut warnings = m.warnings.clone();
+    let printed: Vec<Option<Printed>> = chosen
         .iter()
         .zip(&results)
-        .map(|(&(i, body), weighing)| {
+        .map(|((_, body), weighing)| match (&made, weighing.solid()) {
+            (Some(made), Some(s)) => made::print(&m.mesh, body, &s.moments, metres, made).map(Some),
+            _ => Ok(None),
+        })
+        .collect::<Result<_>>()?;
+    let bodies: Vec<WeighedBody> = chosen
+        .iter()
+        .zip(results.iter().zip(&printed))
+        .map(|(&(i, body), (weighing, printed))| {
             let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about)
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
+            if let (Some(printed), Some(s)) = (printed, weighing.solid()) {
+                let of = [(printed, s.moments.scaled(metres))];
+                out.made = made::figures(&of, substance);
+                let told = out.made.as_ref();
+                warnings.extend(told.and_then(|f| made::trapped(&input.path, &body.id, f)));
+                if let Some(s) = substance {
+                    let mass = printed.mass(s.density.value);
+                    out.figures = out.figures.with_mass(&mass);
+                }
+            }
             out.findings = std::mem::take(&mut audit.bodies[i]);
             if let Some(refused) = &mut out.refused {
                 advise_joining(refused, &out.findings, m.unit);
@@ -233,11 +265,15 @@ fn answer(
     let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
         [one] => Whole {
             figures: one.figures.clone(),
+            made: one.made.clone(),
             estimate: one.estimate.clone(),
             uncertainty: None,
         },
         _ => {
-            let sum = together(&chosen, &results, rule, metres, substance, about);
+            let mut sum = together(&chosen, &results, rule, metres, substance, about);
+            if made.is_some() {
+                print_together(&mut sum, &results, &printed, metres, substance);
+            }
             if args.filled {
                 whole_filled(&m.mesh, &chosen, metres, sum, substance, about)
             } else {
@@ -277,7 +313,7 @@ fn answer(
         proved: None,
         turned: None,
     };
-    Ok((file, m.warnings.clone(), fact.clone()))
+    Ok((file, warnings, fact.clone()))
 }
 
 /// What a body came to, in the file's unit.
@@ -360,6 +396,7 @@ fn weighed(
         nested,
         findings: Vec::new(),
         refused,
+        made: None,
         estimate: match weighing {
             Weighing::Capped(e) => Some(Estimated::of(&e.bounds, &e.caps, metres)),
             _ => None,
@@ -451,8 +488,34 @@ fn whole_filled(
         Figures::from_volume(&volume, f64::NAN, f.condition, f.bounds_m, substance, about);
     Whole {
         figures,
+        made: None,
         estimate: Some(estimate(&found, metres)),
         uncertainty: None,
+    }
+}
+
+/// The whole of bodies that are printed.
+fn print_together(
+    sum: &mut Whole,
+    results: &[Weighing],
+    printed: &[Option<Printed>],
+    metres: f64,
+    substance: Option<&Substance>,
+) {
+    let each: Vec<(&Printed, Moments)> = results
+        .iter()
+        .zip(printed)
+        .filter_map(|(w, p)| Some((p.as_ref()?, w.solid()?.moments.scaled(metres))))
+        .collect();
+    sum.made = made::figures(&each, substance);
+    if let Some(s) = substance {
+        let mass = each
+            .iter()
+            .map(|(p, _)| p.mass(s.density.value))
+            .reduce(|a, b| a.plus(&b));
+        if let Some(mass) = mass {
+            sum.figures = sum.figures.clone().with_mass(&mass);
+        }
     }
 }
 
@@ -495,6 +558,7 @@ fn together(
     let bounds = bounds.map(|b| b.map(|p| p.map(|x| x * metres)));
     Whole {
         figures: Figures::from_volume(&total, area, condition, bounds, substance, about),
+        made: None,
         estimate,
         uncertainty: None,
     }

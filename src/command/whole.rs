@@ -227,6 +227,7 @@ fn tell(
                 condition: None,
                 ..Figures::of(&solid, bounds, unit.metres(), substance, about(unit)?)
             },
+            made: None,
             estimate: None,
             uncertainty: None,
         });

@@ -110,6 +110,7 @@ pub fn hollowed(
         moments,
         core,
         infill,
+        hollow: plan.infill.is_none(),
         shares,
         filament: None,
         bed_contact: None,

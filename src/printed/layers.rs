@@ -48,6 +48,7 @@ pub fn layered(
         moments: *solid,
         core: Moments::zero(solid.about),
         infill: plan.infill,
+        hollow: false,
         shares: Shares::default(),
         filament: None,
         bed_contact: Some(0.0),

@@ -28,6 +28,9 @@ pub use hollow::hollowed;
 pub use layers::layered;
 pub use plan::{LayerPlan, Made, ShellPlan};
 
+use crate::error::Result;
+use crate::geometry::Corners;
+
 use crate::moments::Moments;
 
 /// What is called with (steps done, steps in all) while work goes on, from any thread.
@@ -43,6 +46,8 @@ pub struct Printed {
     pub core: Moments,
     /// Fraction of the core that is material, 0 to 1.
     pub infill: f64,
+    /// Whether the core is a hollow and not infill.
+    pub hollow: bool,
     /// How the material is shared out.
     pub shares: Shares,
     /// Length of feedstock that it takes, where it is laid from a filament.
@@ -79,6 +84,22 @@ pub struct Trapped {
     pub fill_density: Option<f64>,
 }
 
+/// A closed body as it is made: [`layered`] or [`hollowed`].
+///
+/// # Errors
+/// Those of the method.
+pub fn print(
+    facets: &impl Corners,
+    solid: &Moments,
+    made: &Made,
+    progress: Option<Progress<'_>>,
+) -> Result<Printed> {
+    match made {
+        Made::Layers(plan) => layered(facets, solid, plan, progress),
+        Made::Shell(plan) => hollowed(facets, solid, plan, progress),
+    }
+}
+
 impl Printed {
     /// Moments of mass for a density of the material, with what closed hollows keep.
     pub fn mass(&self, density: f64) -> Moments {
@@ -89,23 +110,15 @@ impl Printed {
         }
     }
 
-    /// All lengths multiplied by `k` > 0.
-    #[must_use]
-    pub fn scaled(&self, k: f64) -> Self {
-        Self {
-            moments: self.moments.scaled(k),
-            core: self.core.scaled(k),
-            filament: self.filament.map(|x| x * k),
-            bed_contact: self.bed_contact.map(|x| x * k * k),
-            trapped: self.trapped.as_ref().map(|t| Trapped {
-                hollow: t.hollow.scaled(k),
-                ..t.clone()
-            }),
-            core_error: self.core_error.map(|x| x * k * k * k),
-            ..self.clone()
+    /// Moments of all that is in the part, closed hollows as if of its own material: how a mass is
+    /// spread where no density is known.
+    pub fn evenly(&self) -> Moments {
+        match &self.trapped {
+            None => self.moments,
+            Some(t) => self.moments.plus(&t.hollow),
         }
     }
 }
 
 #[cfg(test)]
-mod tests;
+pub(crate) mod tests;

@@ -7,9 +7,9 @@ use super::{LayerPlan, Printed, ShellPlan, hollowed, layered};
 use crate::geometry::{LooseFacets, Select};
 use crate::moments::{Moments, integrate};
 
-type Facet = [[f64; 3]; 3];
+pub(crate) type Facet = [[f64; 3]; 3];
 
-pub(super) fn cuboid(low: [f64; 3], high: [f64; 3]) -> Vec<Facet> {
+pub(crate) fn cuboid(low: [f64; 3], high: [f64; 3]) -> Vec<Facet> {
     let p = |i: usize| [0, 1, 2].map(|k| if i >> k & 1 == 1 { high[k] } else { low[k] });
     let faces = [
         [0, 2, 3, 1],

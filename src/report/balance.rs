@@ -45,6 +45,9 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         if let Some(e) = &p.estimate {
             out.push_str(&estimated(&p.path, e, unit, look));
         }
+        if let Some(made) = &p.made {
+            out.push_str(&super::print_text::render(&p.path, made, p.volume_m3, look));
+        }
     }
     if let Some(e) = b.total.as_ref().and_then(|t| t.estimate.as_ref()) {
         out.push_str(&estimated("the whole", e, unit, look));
@@ -116,7 +119,9 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
     };
     for p in &b.parts {
         let c = p.centre_of_mass_m;
-        let implied = p.implied_density_kg_m3.map_or(String::new(), |d| {
+        // What a print implies stands with its other figures.
+        let implied = p.implied_density_kg_m3.filter(|_| p.made.is_none());
+        let implied = implied.map_or(String::new(), |d| {
             let against = p
                 .density_kg_m3
                 .map_or(String::new(), |t| format!(" against {}", significant(t, 4)));

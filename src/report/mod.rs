@@ -11,6 +11,7 @@ mod footer;
 mod look;
 pub mod materials;
 pub mod picture;
+mod print_text;
 pub mod table;
 pub mod weigh;
 pub mod weigh_text;
