@@ -52,6 +52,7 @@ pub mod masses;
 pub mod material;
 pub mod mesh;
 pub mod moments;
+pub mod printed;
 pub mod progress;
 pub mod quantity;
 pub mod report;

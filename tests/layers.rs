@@ -12,6 +12,7 @@ const ROWS: &[&[&str]] = &[
     &["bytes", "geometry", "quantity"],
     &["moments", "statics"],
     &["mesh"],
+    &["printed"],
     &["format"],
     &["stream"],
     &["soundness"],

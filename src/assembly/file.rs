@@ -6,6 +6,7 @@ use globset::GlobMatcher;
 use nalgebra::Vector3;
 
 use crate::limits::Limit;
+use crate::printed::Made;
 use crate::quantity::{LengthUnit, Quantity};
 use crate::statics::{Line, Stand};
 
@@ -227,6 +228,8 @@ pub struct Part {
     pub accept_open: Option<f64>,
     /// Vertices on open edges of its mesh are made one within this distance, m.
     pub join: Option<f64>,
+    /// How it is printed; a solid where nothing is stated. Lengths in m, the mesh file's axes.
+    pub made: Option<Made>,
     /// What the CAD model says of it.
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.

@@ -8,6 +8,7 @@ use globset::GlobBuilder;
 use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, Pattern};
 use super::growth::{self, Allowances};
 use super::load::Loader;
+use super::made;
 use super::position;
 use super::read_ballast;
 use super::read_limits;
@@ -207,6 +208,7 @@ impl Context<'_, '_> {
         let measured = measured(&r);
         let accept_open = r.exactly("accept-open", Dimension::Fraction);
         let join = join(&r);
+        let made = made::read(&r);
         let expect = expect(&r);
         let each = each(&r);
         let maturity = self.allowances.maturity(&r);
@@ -237,6 +239,7 @@ impl Context<'_, '_> {
             measured,
             accept_open,
             join,
+            made,
             expect,
             each,
             maturity,

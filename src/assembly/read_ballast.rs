@@ -121,6 +121,7 @@ fn place(r: Reader<'_, '_>, context: &mut Context<'_, '_>) -> Option<BallastPlac
             measured: None,
             accept_open: None,
             join: None,
+            made: None,
             expect: None,
             each: Each::Shared,
             maturity: None,

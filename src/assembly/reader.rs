@@ -15,7 +15,7 @@ use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
 const NOT_READ: &[&str] = &[
-    "case", "drain", "frame", "gravity", "made", "motion", "phase", "tank",
+    "case", "drain", "frame", "gravity", "motion", "phase", "tank",
 ];
 
 /// What the readers of one file share.

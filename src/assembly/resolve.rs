@@ -16,10 +16,12 @@ use super::load::{Input, Loaded};
 use super::open::Capped;
 use super::open::{self, MassBounds};
 use super::overlap::Stand;
+use super::printing::{self, Printing};
 use super::smear::{self, Smeared};
 use super::source::{MeshBody, MeshFiles};
 use super::{listed, notes, sum};
 use crate::error::{Error, Kind, Warning};
+use crate::masses::PrintFigures;
 use crate::moments::Moments;
 
 /// Where a mass comes from.
@@ -87,6 +89,8 @@ pub struct Weighed {
     pub volume: Option<f64>,
     /// Measured mass / volume, kg/m³.
     pub implied_density: Option<f64>,
+    /// How it is printed, where it is.
+    pub made: Option<PrintFigures>,
     /// Box along the assembly's axes, m.
     pub bounds: [[f64; 3]; 2],
 }
@@ -153,6 +157,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                     moments,
                     volume: None,
                     implied_density: None,
+                    made: None,
                     bounds: [(at - half).into(), (at + half).into()],
                 })
             }
@@ -183,6 +188,7 @@ struct Work {
     /// Which entry put which body where.
     stands: HashMap<(PathBuf, String, [u64; 12]), (*const Part, String)>,
     used: Used,
+    printing: Printing,
     /// Entries whose warnings have been given.
     said: HashSet<*const Part>,
     errors: Vec<Error>,
@@ -228,21 +234,40 @@ impl Work {
             return None;
         }
         let materials = self.materials(instance, part, &bodies)?;
+        let printed = match &part.made {
+            None => None,
+            Some(made) => {
+                let errors = &mut self.errors;
+                Some(self.printing.of(instance, part, made, &bodies, errors)?)
+            }
+        };
+        let measured_kg = part.measured.map(|m| m.value);
         let volume = sum::sum(bodies.iter().map(|b| moments_of(b, part).zeroth));
         // Mass moments in the mesh file's axes. Without densities the measured mass is spread
         // evenly over the volume.
         let computed: Vec<Moments> = bodies
             .iter()
             .zip(&materials)
-            .map(|(body, material)| {
+            .enumerate()
+            .map(|(n, (body, material))| {
+                if let Some(printed) = printed.as_ref().and_then(|all| all.get(n)) {
+                    return printing::mass_of(printed, material.as_ref());
+                }
                 let density = material.as_ref().map_or(1.0, |m| m.density.value);
                 moments_of(body, part).weighted(density)
             })
             .collect();
+        let made = printed
+            .as_ref()
+            .and_then(|all| printing::figures(all, &bodies, &materials, measured_kg));
         let computed_mass = sum::sum(computed.iter().map(|m| m.zeroth));
         let known = materials.iter().all(Option::is_some);
         let factor = part.measured.map_or(1.0, |m| m.value / computed_mass);
-        if let (Some(measured), true, true) = (part.measured, known, first) {
+        if let (Some(made), true) = (&made, first) {
+            out.warnings.extend(printing::remarks(instance, made));
+        }
+        let of_solid = known && made.is_none();
+        if let (Some(measured), true, true) = (part.measured, of_solid, first) {
             let table = computed_mass / volume;
             let spread = sum::sum(materials.iter().zip(&bodies).map(|(m, b)| {
                 let tolerance = m.as_ref().and_then(|m| m.density.tolerance);
@@ -347,6 +372,7 @@ impl Work {
             moments,
             volume: Some(volume),
             implied_density: part.measured.map(|m| m.value / volume),
+            made,
             bounds,
         })
     }

@@ -14,6 +14,7 @@ use super::sum;
 use super::sure::Sure;
 use crate::error::{Error, Kind, Warning};
 use crate::limits::{Judged, Verdict};
+use crate::masses::PrintFigures;
 use crate::moments::{Moments, principal};
 use crate::progress::Progress;
 use crate::uncertainty::{Sampling, Uncertainty};
@@ -126,6 +127,9 @@ pub struct PartRow {
     /// Measured mass / volume.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub implied_density_kg_m3: Option<f64>,
+    /// How it is printed; absent for a solid.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub made: Option<PrintFigures>,
     /// Of the material, where it is one.
     pub density_kg_m3: Option<f64>,
     /// Of the mesh.
@@ -388,6 +392,7 @@ fn part_row(n: usize, w: &Weighed, mass: Option<f64>, sure: Option<&Sure>) -> Pa
         basis: w.basis,
         estimate: w.estimate,
         implied_density_kg_m3: w.implied_density,
+        made: w.made.clone(),
         density_kg_m3: material.map(|m| m.density.value),
         volume_m3: w.volume,
         centre_of_mass_m: centre(w),

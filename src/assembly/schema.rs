@@ -217,6 +217,8 @@ struct Part {
     /// Vertices on open edges of its mesh that lie within this distance of each other are made
     /// one, as `bismar check` names it for a crack.
     join: Option<Length>,
+    /// How it is printed; a solid where left out.
+    made: Option<Made>,
     /// Figures that it must have.
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.
@@ -231,6 +233,51 @@ struct Part {
 enum Each {
     Shared,
     Independent,
+}
+
+/// How a part is printed: in layers, or as a shell. Supports, brim and purge are left out.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Made {
+    /// Height of a layer; takes wall, skin and infill with it.
+    layers: Option<Length>,
+    /// Thickness of the walls, measured in the layer.
+    wall: Option<Length>,
+    /// A layer is skin where less than this much material lies above or below it.
+    skin: Option<Skin>,
+    /// Share of the inside that is material, such as "20 %".
+    infill: Option<Quantity>,
+    /// The direction in which layers are stacked, in the mesh file's axes; z where left out.
+    up: Option<Direction>,
+    /// Diameter of the filament; 1.75 mm where left out.
+    filament: Option<Length>,
+    /// Thickness of a shell of one thickness; without infill its inside is hollow.
+    shell: Option<Length>,
+    /// Positions of the holes that empty a hollow, at the surface in the mesh file's axes; a hollow
+    /// without one keeps the powder or resin that it was built in.
+    drain: Option<Vec<[Length; 3]>>,
+    /// Density of what a closed hollow keeps; the material's own where left out.
+    fill: Option<Quantity>,
+}
+
+/// One thickness above and below, or one each.
+#[derive(JsonSchema)]
+#[serde(untagged)]
+enum Skin {
+    /// The same above and below.
+    Both(Length),
+    /// One each.
+    Each(Sides),
+}
+
+/// Thickness of the skins.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Sides {
+    /// Where less than this lies above.
+    top: Length,
+    /// Where less than this lies below.
+    bottom: Length,
 }
 
 /// A right-handed turn.

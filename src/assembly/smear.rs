@@ -197,6 +197,7 @@ pub(super) fn weigh(instances: &[Instance<'_>], out: &mut Resolved) {
             covers: a.covers.clone(),
         });
         out.weighed.push(Weighed {
+            made: None,
             path: format!("{}{}", a.prefix, a.entry.name),
             groups: a.groups,
             source: Source::Smear,

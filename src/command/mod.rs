@@ -6,6 +6,7 @@ mod beside;
 mod check;
 mod copy;
 mod inputs;
+mod made;
 mod materials;
 mod meshes;
 mod open;

@@ -3,6 +3,7 @@
 use clap::{Args, ValueEnum};
 
 use super::inputs::{Input, MeshArgs, ReadMesh, closing_distance, expand, open, picked, read};
+use super::made::{self, MadeArgs};
 use super::open::{self, Opened};
 use super::progress::Terminal;
 use super::{Answer, Common, gather, point, slice, whole};
@@ -11,6 +12,7 @@ use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
 use crate::mesh::{Body, Mesh, NestedRule, Refusal};
 use crate::moments::{Moments, SolidIntegrals};
+use crate::printed::Printed;
 use crate::progress::Progress;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::estimate::Estimated;
@@ -56,6 +58,8 @@ pub(super) struct WeighArgs {
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
     accept_open: Option<f64>,
+    #[command(flatten)]
+    made: MadeArgs,
 }
 
 /// Choices of `--nested`.
@@ -87,6 +91,7 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
     let substance = substance(args.density.as_deref(), args.material.as_deref())?;
     // Read once with any unit, so that a fault in it is told before anything is read.
     about_point(args.about.as_deref(), LengthUnit::Mm)?;
+    let solid = args.made.plan(LengthUnit::Mm)?.is_none();
     args.meshes.judge()?;
     let inputs = expand(&args.meshes);
     if args.whole {
@@ -150,6 +155,13 @@ pub(super) fn run(args: &WeighArgs, common: &Common) -> Result<Answer> {
             line: None,
             advice: "read that mass as a nominal value".to_owned(),
         });
+    }
+    if solid
+        && let Some(word) = &args.material
+        && let Ok(material) = Table::standard().get(word)
+        && material.printing
+    {
+        answers.warnings.push(made::caution(&material.name));
     }
     let body = WeighBody { files };
     answers.finish(
@@ -256,15 +268,36 @@ fn answer(
         .iter()
         .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
         .collect();
-    let bodies: Vec<WeighedBody> = chosen
+    let made = args.made.plan(m.unit)?;
+    let mut warnings = m.warnings.clone();
+    let printed: Vec<Option<Printed>> = chosen
         .iter()
         .zip(&results)
-        .map(|(&(i, body), weighing)| {
+        .map(|((_, body), weighing)| match (&made, weighing.solid()) {
+            (Some(made), Some(s)) => made::print(&m.mesh, body, &s.moments, metres, made).map(Some),
+            _ => Ok(None),
+        })
+        .collect::<Result<_>>()?;
+    let bodies: Vec<WeighedBody> = chosen
+        .iter()
+        .zip(results.iter().zip(&printed))
+        .map(|(&(i, body), (weighing, printed))| {
             let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about, progress)
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
+            if let (Some(printed), Some(s)) = (printed, weighing.solid()) {
+                let of = [(printed, s.moments.scaled(metres))];
+                out.made = made::figures(&of, substance);
+                let told = out.made.as_ref();
+                warnings.extend(told.and_then(|f| made::trapped(&input.path, &body.id, f)));
+                if let Some(s) = substance {
+                    let mass = printed.mass(s.density.value);
+                    out.figures = out.figures.with_mass(&mass);
+                    out.uncertainty = printed_uncertainty(&mass, substance);
+                }
+            }
             out.findings = std::mem::take(&mut audit.bodies[i]);
             if let Some(refused) = &mut out.refused {
                 advise_joining(refused, &out.findings, m.unit);
@@ -280,11 +313,15 @@ fn answer(
     let whole = (missing.is_empty() && !bodies.is_empty()).then(|| match &bodies[..] {
         [one] => Whole {
             figures: one.figures.clone(),
+            made: one.made.clone(),
             estimate: one.estimate.clone(),
             uncertainty: one.uncertainty.clone(),
         },
         _ => {
-            let sum = together(&chosen, &results, rule, metres, substance, about);
+            let mut sum = together(&chosen, &results, rule, metres, substance, about);
+            if made.is_some() {
+                print_together(&mut sum, &results, &printed, metres, substance);
+            }
             if args.filled {
                 whole_filled(&m.mesh, &chosen, metres, sum, substance, about, progress)
             } else {
@@ -324,7 +361,7 @@ fn answer(
         proved: None,
         turned: None,
     };
-    Ok((file, m.warnings.clone(), m.beside.clone()))
+    Ok((file, warnings, m.beside.clone()))
 }
 
 /// What a body came to, in the file's unit.
@@ -414,6 +451,7 @@ fn weighed(
         nested,
         findings: Vec::new(),
         refused,
+        made: None,
         estimate,
         facets: None,
         uncertainty,
@@ -436,6 +474,13 @@ pub(super) fn uncertainty(
         return None;
     }
     sources.spread(volume)
+}
+
+/// How far the mass figures of a print may be off for its density. What a hollow keeps is taken to
+/// be off by the same share as the material: no density of its own has a tolerance.
+fn printed_uncertainty(mass: &Moments, substance: Option<&Substance>) -> Option<Uncertainty> {
+    let density = substance?.density.value;
+    uncertainty(&mass.weighted(1.0 / density), substance, None)
 }
 
 /// Of a body that only cracks keep open, the refusal names the distance that closes it.
@@ -519,8 +564,35 @@ fn whole_filled(
     let estimate = estimate(&found, metres);
     Whole {
         figures,
+        made: None,
         uncertainty: uncertainty(&volume, substance, Some(&estimate)),
         estimate: Some(estimate),
+    }
+}
+
+/// The whole of bodies that are printed.
+fn print_together(
+    sum: &mut Whole,
+    results: &[Weighing],
+    printed: &[Option<Printed>],
+    metres: f64,
+    substance: Option<&Substance>,
+) {
+    let each: Vec<(&Printed, Moments)> = results
+        .iter()
+        .zip(printed)
+        .filter_map(|(w, p)| Some((p.as_ref()?, w.solid()?.moments.scaled(metres))))
+        .collect();
+    sum.made = made::figures(&each, substance);
+    if let Some(s) = substance {
+        let mass = each
+            .iter()
+            .map(|(p, _)| p.mass(s.density.value))
+            .reduce(|a, b| a.plus(&b));
+        if let Some(mass) = mass {
+            sum.figures = sum.figures.clone().with_mass(&mass);
+            sum.uncertainty = printed_uncertainty(&mass, substance);
+        }
     }
 }
 
@@ -563,6 +635,7 @@ fn together(
     let bounds = bounds.map(|b| b.map(|p| p.map(|x| x * metres)));
     Whole {
         figures: Figures::from_volume(&total, area, condition, bounds, substance, about),
+        made: None,
         uncertainty: uncertainty(&total, substance, estimate.as_ref()),
         estimate,
     }

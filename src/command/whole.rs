@@ -290,6 +290,7 @@ pub(super) fn judge(
                 condition: None,
                 ..Figures::of(&solid, bounds, unit.metres(), substance, about)
             },
+            made: None,
             estimate: None,
             uncertainty: super::weigh::uncertainty(
                 &solid.moments.scaled(unit.metres()),

@@ -56,6 +56,21 @@ impl Aabb {
     }
 }
 
+impl Aabb {
+    /// From a point to the box; less by a few roundings where it must not be more.
+    #[inline(always)]
+    fn squared_distance(&self, p: &Point) -> f64 {
+        let mut sum = 0.0;
+        for k in 0..3 {
+            let d = (f64::from(self.low[k]) - p[k])
+                .max(p[k] - f64::from(self.high[k]))
+                .max(0.0);
+            sum += d * d;
+        }
+        sum * (1.0 - 4.0 * f64::EPSILON)
+    }
+}
+
 /// The largest f32 that is no more than x.
 #[inline(always)]
 fn down(x: f64) -> f32 {
@@ -181,6 +196,49 @@ impl BoxTree {
                 found
             })
             .collect()
+    }
+
+    /// Visits triangles near a point, near ones first, as long as they may be within a squared
+    /// distance: `visit(t, corners)` returns the bound for the triangles after it.
+    pub fn near(
+        &self,
+        facets: &impl Corners,
+        point: &Point,
+        mut bound: f64,
+        mut visit: impl FnMut(u32, &[Point; 3]) -> f64,
+    ) {
+        let Some(&(_, 1)) = self.levels.last() else {
+            return;
+        };
+        let root = Node {
+            level: self.levels.len() - 1,
+            at: 0,
+        };
+        // Each level leaves at most one node waiting.
+        let mut waiting = Vec::with_capacity(self.levels.len());
+        waiting.push((self.of(root).squared_distance(point), root));
+        while let Some((distance, node)) = waiting.pop() {
+            if distance > bound {
+                continue;
+            }
+            if node.level == 0 {
+                for &t in self.leaf(node) {
+                    bound = visit(t, &facets.triangle(t as usize));
+                }
+                continue;
+            }
+            let from = waiting.len();
+            for child in self.children(node) {
+                let d = self.of(child).squared_distance(point);
+                if d <= bound {
+                    waiting.push((d, child));
+                }
+            }
+            // The nearer child is taken next.
+            if waiting.len() == from + 2 && waiting[from].0 < waiting[from + 1].0 {
+                waiting.swap(from, from + 1);
+            }
+        }
     }
 
     fn inside<A>(

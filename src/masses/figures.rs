@@ -131,6 +131,28 @@ impl Figures {
         out
     }
 
+    /// The same body where its mass is not that of a solid: `mass` are its mass moments in SI
+    /// units. Volume figures stay the mesh's; axes and radii are then those of the mass.
+    #[must_use]
+    pub fn with_mass(mut self, mass: &Moments) -> Self {
+        let (centre, inertia) = (mass.centre(), mass.inertia());
+        let p = inertia.as_ref().map(principal);
+        self.mass_kg = mass.zeroth.is_finite().then_some(mass.zeroth);
+        self.centre_of_mass_m = centre.map(Into::into);
+        self.inertia_kg_m2 = inertia.as_ref().map(rows);
+        self.principal_moments_kg_m2 = p.as_ref().map(|p| p.moments);
+        self.radii_of_gyration_m = p
+            .as_ref()
+            .map(|p| p.moments.map(|m| (m / mass.zeroth).max(0.0).sqrt()));
+        self.principal_axes = p.as_ref().map(|p| p.axes);
+        self.axes_free = p.map(|p| p.free);
+        if let Some(about) = &mut self.about {
+            let here = mass.shifted(Vector3::from(about.point_m)).inertia_here();
+            about.inertia_kg_m2 = Some(rows(&here));
+        }
+        self
+    }
+
     /// Nothing but the box is known.
     pub fn unknown(bounds_m: Option<[[f64; 3]; 2]>) -> Self {
         Self {

@@ -49,6 +49,7 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
             out.push_str(&estimated(&p.path, e, unit, look));
         }
     }
+    out.push_str(&printed(b, look));
     if let Some(e) = b.total.as_ref().and_then(|t| t.estimate.as_ref()) {
         out.push_str(&estimated("the whole", e, unit, look));
     }
@@ -80,6 +81,26 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     out.push_str(&statics_text::caution(&b.statics, &b.limits));
     out.push_str(&format!("{CAUTION}\n"));
     out.push_str(&footer(document, look));
+    out
+}
+
+/// How parts are printed; repeats of one once.
+fn printed(b: &Balance, look: Look) -> String {
+    let mut out = String::new();
+    let mut rows = b.parts.iter().filter(|p| p.made.is_some()).peekable();
+    while let Some(p) = rows.next() {
+        let mut more = 0;
+        while rows.next_if(|next| next.made == p.made).is_some() {
+            more += 1;
+        }
+        let of = match more {
+            0 => p.path.clone(),
+            n => format!("{} and {n} more, each", p.path),
+        };
+        if let Some(made) = &p.made {
+            out.push_str(&super::print_text::render(&of, made, p.volume_m3, look));
+        }
+    }
     out
 }
 
@@ -126,7 +147,9 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
     };
     for p in &b.parts {
         let c = p.centre_of_mass_m;
-        let implied = p.implied_density_kg_m3.map_or(String::new(), |d| {
+        // What a print implies stands with its other figures.
+        let implied = p.implied_density_kg_m3.filter(|_| p.made.is_none());
+        let implied = implied.map_or(String::new(), |d| {
             let against = p
                 .density_kg_m3
                 .map_or(String::new(), |t| format!(" against {}", significant(t, 4)));

@@ -12,6 +12,7 @@ mod footer;
 mod look;
 pub mod materials;
 pub mod picture;
+mod print_text;
 mod statics_text;
 mod sure;
 pub mod survey;

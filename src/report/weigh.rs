@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use super::estimate::Estimated;
 use crate::error::Error;
-use crate::masses::Figures;
+use crate::masses::{Figures, PrintFigures};
 use crate::soundness::Finding;
 use crate::uncertainty::Uncertainty;
 
@@ -57,6 +57,9 @@ pub struct Whole {
     /// Volume, mass, centres, inertia.
     #[serde(flatten)]
     pub figures: Figures,
+    /// How they are printed; absent for solids.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub made: Option<PrintFigures>,
     /// How far they may be off for the open bodies among them; absent where all are closed.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub estimate: Option<Estimated>,
@@ -90,6 +93,9 @@ pub struct WeighedBody {
     pub findings: Vec<Finding>,
     /// Why it was not weighed.
     pub refused: Option<Refused>,
+    /// How it is printed; absent for a solid.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub made: Option<PrintFigures>,
     /// How the figures were come by, where they are not exact for the mesh.
     pub estimate: Option<Estimated>,
     /// What the facets do to the figures of a curved body.

@@ -60,7 +60,8 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         .first()
         .map(|b| &b.figures)
         .or(file.whole.as_ref().map(|w| &w.figures));
-    out.push_str(&substance(first));
+    let printed = bodies.iter().any(|b| b.made.is_some());
+    out.push_str(&substance(first, printed));
     if file.bodies.is_none() {
         out.push_str(&super::whole_text::render(file, unit, look));
         return out;
@@ -74,7 +75,22 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
         if let Some(e) = &b.estimate {
             out.push_str(&estimated(&b.id, &b.figures, e, unit, look));
         }
+        if let Some(made) = &b.made {
+            let solid = b.figures.volume_m3;
+            out.push_str(&super::print_text::render(&b.id, made, solid, look));
+        }
         out.push_str(&remarks(b, look));
+    }
+    if let Some(made) = file.whole.as_ref().and_then(|w| w.made.as_ref())
+        && bodies.len() > 1
+    {
+        let solid = file.whole.as_ref().and_then(|w| w.figures.volume_m3);
+        out.push_str(&super::print_text::render(
+            "all bodies together",
+            made,
+            solid,
+            look,
+        ));
     }
     if let (Some(whole), true) = (&file.whole, bodies.len() > 1)
         && let Some(e) = &whole.estimate
@@ -126,7 +142,7 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
 }
 
 /// What the figures are of.
-fn substance(first: Option<&Figures>) -> String {
+fn substance(first: Option<&Figures>, printed: bool) -> String {
     let Some(first) = first else {
         return String::new();
     };
@@ -138,7 +154,11 @@ fn substance(first: Option<&Figures>) -> String {
         .material
         .as_deref()
         .map_or(String::new(), |m| format!("{m}, "));
-    format!("material: {name}{} kg/m3, solid\n", significant(density, 6))
+    let solid = if printed { "as printed" } else { "solid" };
+    format!(
+        "material: {name}{} kg/m3, {solid}\n",
+        significant(density, 6)
+    )
 }
 
 fn refusal(b: &WeighedBody, look: Look) -> String {
@@ -265,7 +285,9 @@ pub(super) fn in_full(
         "\n{}\n",
         look.marked(&crate::text::shown(title), Mark::Heading)
     );
-    let (Some(centre), Some(volume_inertia)) = (&f.centroid_m, &f.volume_inertia_m5) else {
+    // Of a print the centre of mass is not the mesh's centroid.
+    let centre = f.centre_of_mass_m.as_ref().or(f.centroid_m.as_ref());
+    let (Some(centre), Some(volume_inertia)) = (centre, &f.volume_inertia_m5) else {
         return out;
     };
     let u = unit.symbol();
@@ -484,10 +506,10 @@ pub(super) fn cells(
             Cell::figure(text, scale.of(m))
         }),
     ];
-    match (&f.centroid_m, &f.bounds_m) {
+    match (f.centre_of_mass_m.or(f.centroid_m), &f.bounds_m) {
         (Some(c), Some(b)) => {
             let size = (0..3).map(|k| b[1][k] - b[0][k]).fold(0.0, f64::max);
-            let shown = coordinates(c, size, unit);
+            let shown = coordinates(&c, size, unit);
             match estimate {
                 None => row.extend(shown.map(|(text, x)| Cell::figure(text, x))),
                 Some(e) => row.extend(shown.map(|(_, x)| match e.centre_bound_m {

@@ -61,7 +61,7 @@ fn keys() {
         &["this version"],
     );
     fault(
-        &format!("{PART}[part.made]\nwall = 1\n"),
+        &format!("{PART}smear = 1\n"),
         Kind::UnknownKey,
         7,
         &["this version"],

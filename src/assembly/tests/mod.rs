@@ -2,6 +2,7 @@
 
 mod by_hand;
 mod faults;
+mod made;
 mod materials;
 mod properties;
 mod published;
@@ -52,6 +53,11 @@ struct Read {
 impl MeshBody for Read {
     fn figures(&self) -> &BodyFigures {
         &self.figures
+    }
+
+    fn facets(&self) -> Vec<[[f64; 3]; 3]> {
+        let [lo, hi] = self.figures.bounds;
+        crate::printed::tests::cuboid(lo, hi)
     }
 
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {

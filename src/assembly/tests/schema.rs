@@ -33,9 +33,11 @@ accept-open = "2 %"
 each = "independent"
 maturity = "layout"
 expect = { volume = "1 cm3", mass = "1 kg ± 50 %", size = [1, 2, 3], centre = [0, 0, 0] }
+made = { layers = "0.1 mm", wall = 0.2, skin = { top = "0.2 mm", bottom = 0.1 }, infill = "20 %", up = "z", filament = "1.75 mm" }
 [[part]]
 name = "second"
 mesh = "frame.obj"
+made = { shell = "0.1 mm", drain = [[0, 0.5, 0.5]], fill = "0.5 g/cm3" }
 places = [[0, 0, 0], [1, 0, 0]]
 [[item]]
 name = "box"
@@ -172,6 +174,8 @@ fn keys_of_reader_and_schema_agree() {
         ("assign", vec!["Assign"]),
         ("material", vec!["Material"]),
         ("part", vec!["Part"]),
+        ("made", vec!["Made"]),
+        ("skin", vec!["Sides"]),
         ("turn", vec!["Turn"]),
         ("expect", vec!["Expect"]),
         ("item", vec!["Item"]),
