@@ -43,6 +43,7 @@ pub mod assembly;
 pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;
+pub mod curvature;
 pub mod error;
 pub mod format;
 pub mod geometry;

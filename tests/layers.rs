@@ -14,7 +14,7 @@ const ROWS: &[&[&str]] = &[
     &["mesh"],
     &["format"],
     &["stream"],
-    &["soundness"],
+    &["curvature", "soundness"],
     &["masses", "material"],
     &["limits"],
     &["assembly"],

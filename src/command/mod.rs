@@ -3,6 +3,7 @@
 mod balance;
 mod check;
 mod copy;
+mod curves;
 mod inputs;
 mod materials;
 mod meshes;

@@ -2,6 +2,7 @@
 
 use clap::{Args, ValueEnum};
 
+use super::curves::CurveArgs;
 use super::inputs::{Input, MeshArgs, ReadMesh, expand, open, picked, read};
 use super::open::{self, Opened};
 use super::{Answer, Common, gather, point, whole};
@@ -12,6 +13,7 @@ use crate::mesh::{Body, Mesh, NestedRule, Refusal};
 use crate::moments::{Moments, SolidIntegrals};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::estimate::Estimated;
+use crate::report::facets::Facets;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
 use crate::soundness::{
@@ -43,6 +45,8 @@ pub(super) struct WeighArgs {
     /// see doubled meshes, solids in solids or single shells inside out
     #[arg(long, conflicts_with_all = ["nested", "join", "filled", "accept_open"])]
     whole: bool,
+    #[command(flatten)]
+    curves: CurveArgs,
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
     accept_open: Option<f64>,
@@ -205,19 +209,33 @@ fn answer(
     let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
     let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
-    let results: Vec<Weighing> = chosen
+    let mut results: Vec<Weighing> = chosen
         .iter()
         .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
         .collect();
+    let mut facets = Vec::with_capacity(chosen.len());
+    for (&(i, body), weighing) in chosen.iter().zip(&mut results) {
+        let seen = match weighing {
+            Weighing::Closed(solid) if !is_cut(i) => args.curves.look(&m.mesh, body)?.map(|e| {
+                let said = Facets::of(solid, &e, metres, args.curves.true_curves);
+                *solid = args.curves.corrected(solid, &e);
+                said
+            }),
+            _ => None,
+        };
+        facets.push(seen);
+    }
     let bodies: Vec<WeighedBody> = chosen
         .iter()
         .zip(&results)
-        .map(|(&(i, body), weighing)| {
+        .zip(facets)
+        .map(|((&(i, body), weighing), facets)| {
             let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about)
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
+            out.facets = facets;
             out.findings = std::mem::take(&mut audit.bodies[i]);
             if let Some(refused) = &mut out.refused {
                 advise_joining(refused, &out.findings, m.unit);
@@ -277,7 +295,11 @@ fn answer(
         proved: None,
         turned: None,
     };
-    Ok((file, m.warnings.clone(), fact.clone()))
+    let mut warnings = m.warnings.clone();
+    let flat = file.bodies.iter().flatten().filter(|b| b.facets.is_none());
+    let flat: Vec<String> = flat.map(|b| b.id.clone()).collect();
+    warnings.extend(args.curves.not_corrected(&input.path, &flat));
+    Ok((file, warnings, fact.clone()))
 }
 
 /// What a body came to, in the file's unit.
