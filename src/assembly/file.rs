@@ -148,6 +148,8 @@ pub struct Part {
     pub measured: Option<Quantity>,
     /// Open bodies of it are taken capped while the bound is at most this share of the volume.
     pub accept_open: Option<f64>,
+    /// Whether its facets are what is meant or stand for curves; none where it does not say.
+    pub facets: Option<crate::curvature::Reading>,
     /// What the CAD model says of it.
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.

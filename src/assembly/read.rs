@@ -13,6 +13,7 @@ use super::reader::{Reader, Shared};
 use super::shape;
 use super::substance::{self, OwnMaterials};
 use super::tree;
+use crate::curvature::Reading;
 use crate::error::Kind;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 
@@ -191,6 +192,7 @@ impl Context<'_, '_> {
         let accept_open = r
             .quantity("accept-open", Dimension::Fraction)
             .map(|(q, _)| q.value);
+        let facets = facets(&r);
         let expect = expect(&r);
         let each = each(&r);
         let mesh = r
@@ -221,6 +223,7 @@ impl Context<'_, '_> {
             position,
             measured,
             accept_open,
+            facets,
             expect,
             each,
         })
@@ -316,6 +319,19 @@ fn measured(r: &Reader<'_, '_>) -> Option<Quantity> {
     r.shared
         .fault(line, Kind::BadNumber, "`measured` is zero".into(), advice);
     None
+}
+
+fn facets(r: &Reader<'_, '_>) -> Option<Reading> {
+    match r.text("facets")? {
+        (s, _) if s == "flat" => Some(Reading::Flat),
+        (s, _) if s == "curved" => Some(Reading::Curved),
+        (s, line) => {
+            let message = format!("`facets` is `{s}`");
+            let advice = "write \"curved\" where facets stand for curves, or \"flat\" where they are what is meant";
+            r.shared.fault(line, Kind::Usage, message, advice);
+            None
+        }
+    }
 }
 
 fn each(r: &Reader<'_, '_>) -> Each {

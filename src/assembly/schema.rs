@@ -147,10 +147,20 @@ struct Part {
     /// this per cent of it.
     #[serde(rename = "accept-open")]
     accept_open: Option<Quantity>,
+    /// Whether its facets are what is meant, or stand for the curves that their corners lie on.
+    facets: Option<Reading>,
     /// Figures that it must have.
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
+}
+
+/// How facets are read.
+#[derive(JsonSchema)]
+#[serde(rename_all = "lowercase")]
+enum Reading {
+    Flat,
+    Curved,
 }
 
 /// Whether repeats share one error of each tolerance, or have one each.

@@ -32,14 +32,18 @@ fn degrees(text: &str) -> std::result::Result<f64, String> {
 }
 
 impl CurveArgs {
-    /// What the facets do to a body that is weighed as it stands; `None` where it was not looked
-    /// at: many triangles and not asked for, or solids within the solid, whose parts count in ways
-    /// of their own.
+    /// Whether a body is looked at: not one of many triangles unasked, nor one with a solid in its
+    /// solid, whose parts count in ways of their own.
+    pub(super) fn looks(&self, body: &Body) -> bool {
+        !body.has_nested() && (body.triangles <= UNASKED || self.true_curves)
+    }
+
+    /// What the facets do to a body that is weighed as it stands; `None` where it is not looked at.
     ///
     /// # Errors
     /// As [`estimate`].
     pub(super) fn look(&self, mesh: &Mesh, body: &Body) -> Result<Option<FacetError>> {
-        if body.has_nested() || (body.triangles > UNASKED && !self.true_curves) {
+        if !self.looks(body) {
             return Ok(None);
         }
         estimate(&mesh.outward_facets(body), self.crease).map(Some)

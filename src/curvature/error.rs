@@ -11,7 +11,7 @@ use crate::moments::Moments;
 /// chords' ends disagree by.
 const LEAST: f64 = 0.02;
 /// Weight of what the two ends of the chords disagree by, as a volume.
-const OFF: f64 = 1.0;
+const OFF: f64 = 1.5;
 
 /// How the facets of a body are read.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]

@@ -134,7 +134,7 @@ pub(super) fn integrate(
         let longest = (0..3).map(|k| s.along(3 * t + k).norm()).fold(0.0, f64::max);
         let largest = c.iter().map(|c| c.value.abs()).fold(0.0, f64::max);
         out.unsure += area / 12.0 * c.iter().map(|c| c.off).sum::<f64>();
-        if largest <= 1e-9 * longest {
+        if largest <= 1e-9 * longest || area <= 0.0 {
             continue;
         }
         out.curved += area;
