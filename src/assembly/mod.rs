@@ -53,9 +53,7 @@ pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
 pub use overlap::{Overlap, Stand};
 pub use resolve::{Basis, FacetBias, Piece, Resolved, Source, Weighed, resolve};
-pub use rollup::{
-    Balance, BasisRow, GroupRow, MaterialRow, PartFacets, PartRow, Total, balance,
-};
+pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartFacets, PartRow, Total, balance};
 pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};

@@ -516,9 +516,7 @@ fn moments_of(body: &Arc<dyn MeshBody>, part: &Part) -> Moments {
     }
     let mesh = body.figures().moments;
     match part.facets {
-        Some(Reading::Curved) => body
-            .facet_error(true)
-            .map_or(mesh, |e| e.corrected(&mesh)),
+        Some(Reading::Curved) => body.facet_error(true).map_or(mesh, |e| e.corrected(&mesh)),
         _ => mesh,
     }
 }

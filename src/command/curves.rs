@@ -9,7 +9,7 @@ use crate::moments::SolidIntegrals;
 
 /// Bodies of more triangles are looked at only where the curves are asked for: it would take longer
 /// than all the rest.
-const UNASKED: usize = 200_000;
+const UNASKED: usize = 50_000;
 
 /// Options of facets that stand for curves.
 #[derive(Args, Clone, Copy, Debug)]

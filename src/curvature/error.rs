@@ -11,7 +11,7 @@ use crate::moments::Moments;
 /// chords' ends disagree by.
 const LEAST: f64 = 0.02;
 /// Weight of what the two ends of the chords disagree by, as a volume.
-const OFF: f64 = 1.5;
+const OFF: f64 = 2.5;
 
 /// How the facets of a body are read.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -64,7 +64,11 @@ impl FacetError {
             } else {
                 0.0
             },
-            curved_share: if whole > 0.0 { added.curved / whole } else { 0.0 },
+            curved_share: if whole > 0.0 {
+                added.curved / whole
+            } else {
+                0.0
+            },
             crease_deg,
         }
     }
@@ -130,10 +134,7 @@ impl FacetError {
         match reading {
             Some(Reading::Flat) => (mesh, mesh),
             Some(Reading::Curved) => (true_one - doubt, true_one + doubt),
-            None => (
-                mesh.min(true_one - doubt),
-                mesh.max(true_one + doubt),
-            ),
+            None => (mesh.min(true_one - doubt), mesh.max(true_one + doubt)),
         }
     }
 

@@ -85,6 +85,3 @@ fn on_planes(s: &Surface, faces: &Faces, nodes: &[[u32; 3]], normals: &mut [V]) 
         })
         .collect()
 }
-
-#[cfg(test)]
-mod tests;

@@ -51,8 +51,5 @@ pub(super) fn nodes(s: &Surface, smooth: &[bool]) -> (Vec<[u32; 3]>, usize) {
         }
     }
     let (number, count) = groups.numbers();
-    (
-        number.as_chunks::<3>().0.to_vec(),
-        count,
-    )
+    (number.as_chunks::<3>().0.to_vec(), count)
 }

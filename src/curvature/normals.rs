@@ -23,8 +23,10 @@ use nalgebra::Matrix3;
 use super::surface::{NEXT, NONE, Surface, V};
 
 // Chosen by measurement over the test bodies and the solids of `tests/outside/curved_solids.py`.
-/// Steps of the iteration.
-const STEPS: usize = 16;
+/// Steps of the iteration, at most.
+const STEPS: usize = 40;
+/// It ends where no normal moves by more than this angle.
+const STILL: f64 = 1e-6;
 /// A node moves all the way where it gains so many times as much as those it is tied to.
 const CLEARLY: f64 = 1.4;
 /// Weight of staying where it is, as a part of the chords' weight.
@@ -100,7 +102,10 @@ pub(super) fn edges(s: &Surface, smooth: &[bool], nodes: &[[u32; 3]]) -> (Vec<Ed
             side: !is_diagonal(s, h),
         });
     }
-    weigh(&mut out, nodes.iter().flatten().max().map_or(0, |&n| n as usize + 1));
+    weigh(
+        &mut out,
+        nodes.iter().flatten().max().map_or(0, |&n| n as usize + 1),
+    );
     (out, of)
 }
 
@@ -245,7 +250,11 @@ pub(super) fn singular(edges: &[Edge], normals: &[V], trust: &mut [Trust]) {
     for e in edges.iter().filter(|e| e.length > 0.0) {
         let [a, b] = e.ends.map(|i| normals[i as usize].dot(&e.along));
         let size = a.abs() + b.abs();
-        let off = if size > 1e-4 { (a + b).abs() / size } else { 0.0 };
+        let off = if size > 1e-4 {
+            (a + b).abs() / size
+        } else {
+            0.0
+        };
         for i in e.ends {
             part[i as usize] = part[i as usize].min(off);
         }
@@ -270,7 +279,12 @@ pub(super) fn refine(edges: &[Edge], normals: &mut [V], trust: &[Trust]) {
         for i in e.ends {
             let m = &mut matrix[i as usize];
             for (x, y) in m.iter_mut().zip([
-                a.x * a.x, a.y * a.y, a.z * a.z, a.x * a.y, a.x * a.z, a.y * a.z,
+                a.x * a.x,
+                a.y * a.y,
+                a.z * a.z,
+                a.x * a.y,
+                a.x * a.z,
+                a.y * a.z,
             ]) {
                 *x += w * y;
             }
@@ -279,9 +293,15 @@ pub(super) fn refine(edges: &[Edge], normals: &mut [V], trust: &[Trust]) {
     for (m, n) in matrix.iter_mut().zip(&*normals) {
         let stay = STAY * (m[0] + m[1] + m[2]);
         let full = Matrix3::new(
-            m[0] + stay, m[3], m[4],
-            m[3], m[1] + stay, m[5],
-            m[4], m[5], m[2] + stay,
+            m[0] + stay,
+            m[3],
+            m[4],
+            m[3],
+            m[1] + stay,
+            m[5],
+            m[4],
+            m[5],
+            m[2] + stay,
         );
         // A normal only tilts: along itself it is held fast.
         let full = full + n * n.transpose() * (100.0 * (m[0] + m[1] + m[2]));
@@ -306,7 +326,11 @@ pub(super) fn refine(edges: &[Edge], normals: &mut [V], trust: &[Trust]) {
                 m[3] * p.x + m[1] * p.y + m[5] * p.z,
                 m[4] * p.x + m[5] * p.y + m[2] * p.z,
             );
-            gain[i] = if trust[i] == Trust::Free { step[i].dot(&p) } else { 0.0 };
+            gain[i] = if trust[i] == Trust::Free {
+                step[i].dot(&p)
+            } else {
+                0.0
+            };
         }
         rival.fill(0.0);
         whole.fill(0.0);
@@ -324,6 +348,7 @@ pub(super) fn refine(edges: &[Edge], normals: &mut [V], trust: &[Trust]) {
                 }
             }
         }
+        let mut most: f64 = 0.0;
         for i in 0..n {
             let part = if trust[i] != Trust::Free {
                 continue;
@@ -334,10 +359,13 @@ pub(super) fn refine(edges: &[Edge], normals: &mut [V], trust: &[Trust]) {
             } else {
                 continue;
             };
+            most = most.max(step[i].norm());
             if let Some(v) = (normals[i] - step[i] * part).try_normalize(0.0) {
                 normals[i] = v;
             }
         }
+        if most < STILL {
+            break;
+        }
     }
 }
-

@@ -44,7 +44,14 @@ fn rule() -> [(f64, [f64; 3]); 12] {
     }
     let (w, a, b) = TRIPLE;
     let c = 1.0 - a - b;
-    for l in [[a, b, c], [a, c, b], [b, a, c], [b, c, a], [c, a, b], [c, b, a]] {
+    for l in [
+        [a, b, c],
+        [a, c, b],
+        [b, a, c],
+        [b, c, a],
+        [c, a, b],
+        [c, b, a],
+    ] {
         out[n] = (w, l);
         n += 1;
     }
@@ -131,7 +138,9 @@ pub(super) fn integrate(
     for t in 0..s.corners.len() {
         let c = [0, 1, 2].map(|k| side(3 * t + k));
         let area = s.area[t];
-        let longest = (0..3).map(|k| s.along(3 * t + k).norm()).fold(0.0, f64::max);
+        let longest = (0..3)
+            .map(|k| s.along(3 * t + k).norm())
+            .fold(0.0, f64::max);
         let largest = c.iter().map(|c| c.value.abs()).fold(0.0, f64::max);
         out.unsure += area / 12.0 * c.iter().map(|c| c.off).sum::<f64>();
         if largest <= 1e-9 * longest || area <= 0.0 {

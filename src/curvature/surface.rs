@@ -96,7 +96,11 @@ impl Surface {
 
     /// The angle at an edge below which rounding leaves open whether its facets are coplanar.
     pub(super) fn level(&self, h: usize) -> f64 {
-        let least = |t: usize| (0..3).map(|k| self.width(3 * t + k)).fold(f64::INFINITY, f64::min);
+        let least = |t: usize| {
+            (0..3)
+                .map(|k| self.width(3 * t + k))
+                .fold(f64::INFINITY, f64::min)
+        };
         let (a, b) = (least(h / 3), least(self.opposite[h] as usize / 3));
         1e-5 + 2.0 * self.grain * (1.0 / a + 1.0 / b).min(1e300)
     }

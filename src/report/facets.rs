@@ -87,25 +87,38 @@ impl Facets {
         let percent = |x: f64| 100.0 * x / whole;
         let signed = |x: f64| {
             let size = significant(percent(x).abs(), 2);
-            if x < 0.0 { format!("−{size} %") } else { format!("+{size} %") }
+            if x < 0.0 {
+                format!("−{size} %")
+            } else {
+                format!("+{size} %")
+            }
         };
         let mut by = Vec::new();
-        if self.convex_m3 != 0.0 {
+        let least = 1e-6 * self.convex_m3.abs().max(self.concave_m3);
+        if -self.convex_m3 > least {
             by.push(format!("outer curves {}", signed(self.convex_m3)));
         }
-        if self.concave_m3 != 0.0 {
+        if self.concave_m3 > least {
             by.push(format!("bores and hollows {}", signed(self.concave_m3)));
         }
         let by = by.join(", ");
         let doubt = at_most(percent(self.volume_doubt_m3));
-        let side = if self.volume_error_m3 < 0.0 { "low" } else { "high" };
+        let side = if self.volume_error_m3 < 0.0 {
+            "low"
+        } else {
+            "high"
+        };
         let off = significant(percent(self.volume_error_m3).abs(), 2);
         let what = if self.figures == "curved" {
-            format!("figures are of the true curves (--true-curves); the mesh's volume is about {off} % {side}")
+            format!(
+                "figures are of the true curves (--true-curves); the mesh's volume is about {off} % {side}"
+            )
         } else {
             format!("volume about {off} % {side}")
         };
-        format!("facets: {what}: {by}, itself within {doubt} %; {crease}, if they are meant the volume is the mesh's own")
+        format!(
+            "facets: {what}: {by}, itself within {doubt} %; {crease}, if they are meant the volume is the mesh's own"
+        )
     }
 }
 
@@ -146,7 +159,12 @@ mod tests {
     #[test]
     fn the_line_says_total_regions_and_crease() {
         let line = facets(false).line();
-        for part in ["about 1 % low", "outer curves −1.5 %", "hollows +0.5 %", "30°"] {
+        for part in [
+            "about 1 % low",
+            "outer curves −1.5 %",
+            "hollows +0.5 %",
+            "30°",
+        ] {
             assert!(line.contains(part), "{part} not in {line}");
         }
         assert!(facets(true).line().contains("--true-curves"));

@@ -5,16 +5,16 @@ use std::collections::HashMap;
 use std::f64::consts::{FRAC_PI_2, PI, TAU};
 
 /// A point.
-pub type P = [f64; 3];
+pub(crate) type P = [f64; 3];
 /// Three corners.
-pub type Tri = [P; 3];
+pub(crate) type Tri = [P; 3];
 
 /// A small generator of numbers (xorshift): the same meshes on every run.
 #[derive(Clone)]
-pub struct Random(pub u64);
+pub(crate) struct Random(pub(crate) u64);
 
 impl Random {
-    pub fn unit(&mut self) -> f64 {
+    pub(crate) fn unit(&mut self) -> f64 {
         self.0 ^= self.0 << 13;
         self.0 ^= self.0 >> 7;
         self.0 ^= self.0 << 17;
@@ -22,11 +22,11 @@ impl Random {
     }
 
     /// Between −1 and 1.
-    pub fn signed(&mut self) -> f64 {
+    pub(crate) fn signed(&mut self) -> f64 {
         2.0 * self.unit() - 1.0
     }
 
-    pub fn shuffle<T>(&mut self, list: &mut [T]) {
+    pub(crate) fn shuffle<T>(&mut self, list: &mut [T]) {
         for i in (1..list.len()).rev() {
             list.swap(i, (self.unit() * (i + 1) as f64) as usize);
         }
@@ -35,25 +35,25 @@ impl Random {
 
 /// Figures of a curved solid: volume, area, ∫x dV, and ∫x², ∫y², ∫z² dV about the origin.
 #[derive(Clone, Copy, Debug, Default)]
-pub struct Truth {
-    pub volume: f64,
-    pub area: f64,
-    pub first: P,
-    pub second: P,
+pub(crate) struct Truth {
+    pub(crate) volume: f64,
+    pub(crate) area: f64,
+    pub(crate) first: P,
+    pub(crate) second: P,
 }
 
 /// A faceted solid and the curved one that it stands for.
-pub struct Case {
-    pub name: String,
-    pub facets: Vec<Tri>,
-    pub truth: Truth,
+pub(crate) struct Case {
+    pub(crate) name: String,
+    pub(crate) facets: Vec<Tri>,
+    pub(crate) truth: Truth,
     /// Mesh minus true of the convex and of the concave surfaces, where they are known apart.
-    pub regions: Option<[f64; 2]>,
+    pub(crate) regions: Option<[f64; 2]>,
 }
 
 /// A stretch of a profile (r, z), walked counter-clockwise with r to the right and z up.
 #[derive(Clone, Copy)]
-pub enum Stretch {
+pub(crate) enum Stretch {
     /// From the point to the next stretch's start.
     Line([f64; 2]),
     /// The same in several steps.
@@ -136,7 +136,15 @@ fn fine(profile: &[Stretch]) -> Vec<(usize, [f64; 4])> {
             for (x, w) in node.iter().zip(weight) {
                 let t = (x + 1.0) / 2.0;
                 let d = [b[0] - a[0], b[1] - a[1]];
-                out.push((of, [a[0] + t * d[0], a[1] + t * d[1], d[0] * w / 2.0, d[1] * w / 2.0]));
+                out.push((
+                    of,
+                    [
+                        a[0] + t * d[0],
+                        a[1] + t * d[1],
+                        d[0] * w / 2.0,
+                        d[1] * w / 2.0,
+                    ],
+                ));
             }
         };
         match *s {
@@ -148,7 +156,15 @@ fn fine(profile: &[Stretch]) -> Vec<(usize, [f64; 4])> {
                     for (x, w) in node.iter().zip(weight) {
                         let a = from + (i as f64 + (x + 1.0) / 2.0) * step;
                         let w = w / 2.0 * step * r;
-                        out.push((k, [c[0] + r * a.cos(), c[1] + r * a.sin(), -a.sin() * w, a.cos() * w]));
+                        out.push((
+                            k,
+                            [
+                                c[0] + r * a.cos(),
+                                c[1] + r * a.sin(),
+                                -a.sin() * w,
+                                a.cos() * w,
+                            ],
+                        ));
                     }
                 }
             }
@@ -158,7 +174,7 @@ fn fine(profile: &[Stretch]) -> Vec<(usize, [f64; 4])> {
 }
 
 /// The solid of a profile turned about z (Pappus and Guldin, in integral form).
-pub fn turned_truth(profile: &[Stretch]) -> Truth {
+pub(crate) fn turned_truth(profile: &[Stretch]) -> Truth {
     let mut t = Truth::default();
     for (_, [r, z, dr, dz]) in fine(profile) {
         t.volume += PI * r * r * dz;
@@ -174,7 +190,7 @@ pub fn turned_truth(profile: &[Stretch]) -> Truth {
 
 /// How the facets of a turned solid are laid.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub enum Lay {
+pub(crate) enum Lay {
     /// Even steps, all diagonals one way.
     Even,
     /// Uneven steps round and along, diagonals at random, edges flipped, facets shuffled.
@@ -182,7 +198,7 @@ pub enum Lay {
 }
 
 /// A profile turned about z in `n` steps, with the error of each stretch where they are even.
-pub fn turned(name: &str, profile: &[Stretch], n: usize, lay: Lay) -> Case {
+pub(crate) fn turned(name: &str, profile: &[Stretch], n: usize, lay: Lay) -> Case {
     let (mut points, of) = walk(profile);
     let m = points.len();
     let mut random = Random(match lay {
@@ -196,7 +212,8 @@ pub fn turned(name: &str, profile: &[Stretch], n: usize, lay: Lay) -> Case {
         }
         // Points between two steps of one arc slide along it.
         for i in 0..m {
-            if of[i] != usize::MAX && of[(i + m - 1) % m] == of[i]
+            if of[i] != usize::MAX
+                && of[(i + m - 1) % m] == of[i]
                 && let Stretch::Arc(c, r, from, to, steps) = profile[of[i]]
             {
                 let a = (points[i][1] - c[1]).atan2(points[i][0] - c[0]);
@@ -213,7 +230,9 @@ pub fn turned(name: &str, profile: &[Stretch], n: usize, lay: Lay) -> Case {
             if p[0] == 0.0 {
                 return vec![mesh.point([0.0, 0.0, p[1]], 0); n];
             }
-            let own = lay != Lay::Even && of[i] != usize::MAX && of[(i + m - 1) % m] == of[i]
+            let own = lay != Lay::Even
+                && of[i] != usize::MAX
+                && of[(i + m - 1) % m] == of[i]
                 && !matches!(profile[of[i]], Stretch::Line(_));
             // No further along a row than the rows lie apart.
             let q = points[(i + 1) % m];
@@ -272,19 +291,19 @@ pub fn turned(name: &str, profile: &[Stretch], n: usize, lay: Lay) -> Case {
 
 /// Points with faces that belong to surfaces.
 #[derive(Default)]
-pub struct Indexed {
-    pub points: Vec<P>,
-    pub faces: Vec<([usize; 3], usize)>,
+pub(crate) struct Indexed {
+    pub(crate) points: Vec<P>,
+    pub(crate) faces: Vec<([usize; 3], usize)>,
 }
 
 impl Indexed {
-    pub fn point(&mut self, p: P, _: usize) -> usize {
+    pub(crate) fn point(&mut self, p: P, _: usize) -> usize {
         self.points.push(p);
         self.points.len() - 1
     }
 
     /// Two facets, less those that collapse.
-    pub fn quad(&mut self, q: [usize; 4], of: usize, other: bool) {
+    pub(crate) fn quad(&mut self, q: [usize; 4], of: usize, other: bool) {
         let pair = if other {
             [[q[0], q[1], q[3]], [q[1], q[2], q[3]]]
         } else {
@@ -299,7 +318,7 @@ impl Indexed {
     }
 
     /// Flips edges inside one surface at random where both new facets are sound and face as the old ones.
-    pub fn flip(&mut self, random: &mut Random) {
+    pub(crate) fn flip(&mut self, random: &mut Random) {
         let key: HashMap<[u64; 3], usize> = self
             .points
             .iter()
@@ -322,7 +341,9 @@ impl Indexed {
                 let k = (random.unit() * 3.0) as usize;
                 let f = self.faces[t].0;
                 let (a, b, c) = (f[k], f[(k + 1) % 3], f[(k + 2) % 3]);
-                let Some(&u) = halves.get(&(b, a)) else { continue };
+                let Some(&u) = halves.get(&(b, a)) else {
+                    continue;
+                };
                 if touched[t]
                     || touched[u]
                     || self.faces[t].1 != self.faces[u].1
@@ -367,14 +388,23 @@ impl Indexed {
         }
     }
 
-    pub fn facets(&self) -> Vec<Tri> {
-        self.faces.iter().map(|f| f.0.map(|i| self.points[i])).collect()
+    pub(crate) fn facets(&self) -> Vec<Tri> {
+        self.faces
+            .iter()
+            .map(|f| f.0.map(|i| self.points[i]))
+            .collect()
     }
 }
 
 /// An extruded outline of lines and arcs that every ray from the origin meets once, less an inner
 /// one, between two heights; even steps. Caps are fans or rings of facets.
-pub fn extruded(name: &str, outer: &[Stretch], inner: &[Stretch], height: f64, rows: usize) -> Case {
+pub(crate) fn extruded(
+    name: &str,
+    outer: &[Stretch],
+    inner: &[Stretch],
+    height: f64,
+    rows: usize,
+) -> Case {
     let mut facets = Vec::new();
     let mut truth = Truth::default();
     let (mut convex, mut concave) = (0.0, 0.0);
@@ -398,13 +428,21 @@ pub fn extruded(name: &str, outer: &[Stretch], inner: &[Stretch], height: f64, r
         }
         for i in 0..points.len() {
             let (p, q) = (points[i], points[(i + 1) % points.len()]);
-            *each.entry(of[i]).or_insert(0.0) +=
-                (p[0] * q[1] - p[1] * q[0]) / 2.0 * sign * height;
+            *each.entry(of[i]).or_insert(0.0) += (p[0] * q[1] - p[1] * q[0]) / 2.0 * sign * height;
             for r in 0..rows {
                 let z = [r, r + 1].map(|r| height * r as f64 / rows as f64);
-                let c = [[p[0], p[1], z[0]], [q[0], q[1], z[0]], [q[0], q[1], z[1]], [p[0], p[1], z[1]]];
+                let c = [
+                    [p[0], p[1], z[0]],
+                    [q[0], q[1], z[0]],
+                    [q[0], q[1], z[1]],
+                    [p[0], p[1], z[1]],
+                ];
                 let both = [[c[0], c[1], c[2]], [c[0], c[2], c[3]]];
-                facets.extend(if sign > 0.0 { both } else { both.map(|t| [t[0], t[2], t[1]]) });
+                facets.extend(if sign > 0.0 {
+                    both
+                } else {
+                    both.map(|t| [t[0], t[2], t[1]])
+                });
             }
         }
         for e in each.values() {
@@ -460,7 +498,7 @@ pub fn extruded(name: &str, outer: &[Stretch], inner: &[Stretch], height: f64, r
 
 /// A box of half sides `half` with all edges and corners rounded to `r` outside of it, in `n`
 /// steps a turn (a multiple of four).
-pub fn rounded_box(half: P, r: f64, n: usize) -> Case {
+pub(crate) fn rounded_box(half: P, r: f64, n: usize) -> Case {
     let q = n / 4;
     let mut mesh = Indexed::default();
     let rows: Vec<Vec<usize>> = (0..2 * (q + 1))
@@ -474,7 +512,11 @@ pub fn rounded_box(half: P, r: f64, n: usize) -> Case {
                     let [cx, cy] = at([0.0; 2], 1.0, lon);
                     let [ring, z] = at([0.0; 2], r, lat);
                     let s = [
-                        if corner == 0 || corner == 3 { 1.0 } else { -1.0 },
+                        if corner == 0 || corner == 3 {
+                            1.0
+                        } else {
+                            -1.0
+                        },
                         if corner < 2 { 1.0 } else { -1.0 },
                         if upper { 1.0 } else { -1.0 },
                     ];
@@ -499,7 +541,11 @@ pub fn rounded_box(half: P, r: f64, n: usize) -> Case {
     for (row, up) in [(&rows[0], false), (&rows[rows.len() - 1], true)] {
         let c = [0, 1, 2, 3].map(|k| mesh.points[row[k * (q + 1)]]);
         let both = [[c[0], c[1], c[2]], [c[0], c[2], c[3]]];
-        facets.extend(if up { both } else { both.map(|t| [t[0], t[2], t[1]]) });
+        facets.extend(if up {
+            both
+        } else {
+            both.map(|t| [t[0], t[2], t[1]])
+        });
     }
     let [a, b, c] = half.map(|x| 2.0 * x);
     let truth = Truth {
@@ -521,7 +567,7 @@ pub fn rounded_box(half: P, r: f64, n: usize) -> Case {
 }
 
 /// A sphere of the icosahedron cut `times` in four, points shifted about by `rough` of an edge.
-pub fn ball(r: f64, times: usize, rough: f64, seed: u64) -> Case {
+pub(crate) fn ball(r: f64, times: u32, rough: f64, seed: u64) -> Case {
     let phi = (1.0 + 5f64.sqrt()) / 2.0;
     let mut points: Vec<P> = Vec::new();
     for k in 0..3 {
@@ -543,7 +589,11 @@ pub fn ball(r: f64, times: usize, rough: f64, seed: u64) -> Case {
                     a != b && dot(d, d) < 4.1
                 };
                 let [p, q, s] = [i, j, k].map(|i| points[i]);
-                if i < j && i < k && near(i, j) && near(j, k) && near(k, i)
+                if i < j
+                    && i < k
+                    && near(i, j)
+                    && near(j, k)
+                    && near(k, i)
                     && dot(cross(sub(q, p), sub(s, p)), p) > 0.0
                 {
                     faces.push([i, j, k]);
@@ -566,7 +616,12 @@ pub fn ball(r: f64, times: usize, rough: f64, seed: u64) -> Case {
                     points.len() - 1
                 })
             });
-            next.extend([[f[0], m[0], m[2]], [m[0], f[1], m[1]], [m[2], m[1], f[2]], m]);
+            next.extend([
+                [f[0], m[0], m[2]],
+                [m[0], f[1], m[1]],
+                [m[2], m[1], f[2]],
+                m,
+            ]);
         }
         faces = next;
     }
@@ -576,7 +631,10 @@ pub fn ball(r: f64, times: usize, rough: f64, seed: u64) -> Case {
         let moved = [0, 1, 2].map(|k| to_sphere(*p)[k] + rough * edge * random.signed());
         *p = to_sphere(moved).map(|x| x * r);
     }
-    let mut mesh = Indexed { points, faces: faces.into_iter().map(|f| (f, 0)).collect() };
+    let mut mesh = Indexed {
+        points,
+        faces: faces.into_iter().map(|f| (f, 0)).collect(),
+    };
     if rough > 0.0 {
         mesh.flip(&mut random);
         random.shuffle(&mut mesh.faces);
@@ -596,7 +654,7 @@ pub fn ball(r: f64, times: usize, rough: f64, seed: u64) -> Case {
 }
 
 /// The case with its axes stretched; the area is no longer known.
-pub fn stretched(case: Case, k: P) -> Case {
+pub(crate) fn stretched(case: Case, k: P) -> Case {
     let d = k[0] * k[1] * k[2];
     let t = case.truth;
     Case {
@@ -617,7 +675,7 @@ pub fn stretched(case: Case, k: P) -> Case {
 }
 
 /// Volume, area, first and second moments of the facets about the origin.
-pub fn of_mesh(facets: &[Tri]) -> Truth {
+pub(crate) fn of_mesh(facets: &[Tri]) -> Truth {
     let mut t = Truth::default();
     for [a, b, c] in facets {
         let n = cross(sub(*b, *a), sub(*c, *a));
@@ -633,11 +691,11 @@ pub fn of_mesh(facets: &[Tri]) -> Truth {
     t
 }
 
-pub fn sub(a: P, b: P) -> P {
+pub(crate) fn sub(a: P, b: P) -> P {
     [a[0] - b[0], a[1] - b[1], a[2] - b[2]]
 }
 
-pub fn cross(a: P, b: P) -> P {
+pub(crate) fn cross(a: P, b: P) -> P {
     [
         a[1] * b[2] - a[2] * b[1],
         a[2] * b[0] - a[0] * b[2],
@@ -645,56 +703,84 @@ pub fn cross(a: P, b: P) -> P {
     ]
 }
 
-pub fn dot(a: P, b: P) -> f64 {
+pub(crate) fn dot(a: P, b: P) -> f64 {
     a[0] * b[0] + a[1] * b[1] + a[2] * b[2]
 }
 
 /// Profiles and outlines of the test bodies, with arcs in `n` steps a turn.
-pub mod bodies {
+pub(crate) mod bodies {
     use super::Stretch::{Arc, Line, Rows};
     use super::*;
 
-    pub fn cylinder() -> Vec<Stretch> {
-        vec![Line([0.0, 0.0]), Line([3.0, 0.0]), Line([3.0, 5.0]), Line([0.0, 5.0])]
+    pub(crate) fn cylinder() -> Vec<Stretch> {
+        vec![
+            Line([0.0, 0.0]),
+            Line([3.0, 0.0]),
+            Line([3.0, 5.0]),
+            Line([0.0, 5.0]),
+        ]
     }
 
-    pub fn rows(n: usize) -> Vec<Stretch> {
-        vec![Line([0.0, 0.0]), Rows([3.0, 0.0], n / 4), Line([3.0, 5.0]), Line([0.0, 5.0])]
+    pub(crate) fn rows(n: usize) -> Vec<Stretch> {
+        vec![
+            Line([0.0, 0.0]),
+            Rows([3.0, 0.0], n / 4),
+            Line([3.0, 5.0]),
+            Line([0.0, 5.0]),
+        ]
     }
 
-    pub fn disc() -> Vec<Stretch> {
-        vec![Line([0.0, 0.0]), Line([50.0, 0.0]), Line([50.0, 2.0]), Line([0.0, 2.0])]
+    pub(crate) fn disc() -> Vec<Stretch> {
+        vec![
+            Line([0.0, 0.0]),
+            Line([50.0, 0.0]),
+            Line([50.0, 2.0]),
+            Line([0.0, 2.0]),
+        ]
     }
 
-    pub fn tube() -> Vec<Stretch> {
-        vec![Line([2.0, 0.0]), Line([3.0, 0.0]), Line([3.0, 5.0]), Line([2.0, 5.0])]
+    pub(crate) fn tube() -> Vec<Stretch> {
+        vec![
+            Line([2.0, 0.0]),
+            Line([3.0, 0.0]),
+            Line([3.0, 5.0]),
+            Line([2.0, 5.0]),
+        ]
     }
 
-    pub fn cone() -> Vec<Stretch> {
+    pub(crate) fn cone() -> Vec<Stretch> {
         vec![Line([0.0, 0.0]), Line([3.0, 0.0]), Line([0.0, 5.0])]
     }
 
-    pub fn flat_cone() -> Vec<Stretch> {
+    pub(crate) fn flat_cone() -> Vec<Stretch> {
         vec![Line([0.0, 0.0]), Line([3.0, 0.0]), Line([0.0, 0.6])]
     }
 
-    pub fn frustum() -> Vec<Stretch> {
-        vec![Line([0.0, 0.0]), Line([3.0, 0.0]), Line([1.0, 5.0]), Line([0.0, 5.0])]
+    pub(crate) fn frustum() -> Vec<Stretch> {
+        vec![
+            Line([0.0, 0.0]),
+            Line([3.0, 0.0]),
+            Line([1.0, 5.0]),
+            Line([0.0, 5.0]),
+        ]
     }
 
-    pub fn sphere(n: usize) -> Vec<Stretch> {
+    pub(crate) fn sphere(n: usize) -> Vec<Stretch> {
         vec![Arc([0.0; 2], 3.0, -FRAC_PI_2, FRAC_PI_2, n / 2)]
     }
 
-    pub fn cap(n: usize) -> Vec<Stretch> {
-        vec![Line([0.0, 1.5]), Arc([0.0; 2], 3.0, FRAC_PI_2 / 3.0, FRAC_PI_2, n / 6)]
+    pub(crate) fn cap(n: usize) -> Vec<Stretch> {
+        vec![
+            Line([0.0, 1.5]),
+            Arc([0.0; 2], 3.0, FRAC_PI_2 / 3.0, FRAC_PI_2, n / 6),
+        ]
     }
 
-    pub fn torus(n: usize) -> Vec<Stretch> {
+    pub(crate) fn torus(n: usize) -> Vec<Stretch> {
         vec![Arc([4.0, 0.0], 1.0, 0.0, TAU, n)]
     }
 
-    pub fn capsule(n: usize) -> Vec<Stretch> {
+    pub(crate) fn capsule(n: usize) -> Vec<Stretch> {
         vec![
             Arc([0.0, -4.0], 3.0, -FRAC_PI_2, 0.0, n / 4),
             Arc([0.0, 4.0], 3.0, 0.0, FRAC_PI_2, n / 4),
@@ -702,7 +788,7 @@ pub mod bodies {
     }
 
     /// A puck with its upper rim rounded.
-    pub fn puck(n: usize) -> Vec<Stretch> {
+    pub(crate) fn puck(n: usize) -> Vec<Stretch> {
         vec![
             Line([0.0, 0.0]),
             Line([10.0, 0.0]),
@@ -712,7 +798,7 @@ pub mod bodies {
     }
 
     /// A flange: bore, hub with a hollow fillet to the disc, rounded rim.
-    pub fn flange(n: usize) -> Vec<Stretch> {
+    pub(crate) fn flange(n: usize) -> Vec<Stretch> {
         vec![
             Line([4.0, 0.0]),
             Line([20.0, 0.0]),
@@ -726,20 +812,35 @@ pub mod bodies {
     fn arcs(half: [f64; 2], r: f64, n: usize) -> Vec<Stretch> {
         (0..4)
             .map(|k| {
-                let s = [if k == 0 || k == 3 { 1.0 } else { -1.0 }, if k < 2 { 1.0 } else { -1.0 }];
+                let s = [
+                    if k == 0 || k == 3 { 1.0 } else { -1.0 },
+                    if k < 2 { 1.0 } else { -1.0 },
+                ];
                 let from = FRAC_PI_2 * k as f64;
-                Arc([s[0] * half[0], s[1] * half[1]], r, from, from + FRAC_PI_2, n / 4)
+                Arc(
+                    [s[0] * half[0], s[1] * half[1]],
+                    r,
+                    from,
+                    from + FRAC_PI_2,
+                    n / 4,
+                )
             })
             .collect()
     }
 
     /// A slab with rounded upright edges.
-    pub fn slab(n: usize) -> Case {
-        extruded(&format!("slab {n}"), &arcs([30.0, 8.0], 2.0, n), &[], 6.0, 1)
+    pub(crate) fn slab(n: usize) -> Case {
+        extruded(
+            &format!("slab {n}"),
+            &arcs([30.0, 8.0], 2.0, n),
+            &[],
+            6.0,
+            1,
+        )
     }
 
     /// A cube with one edge rounded.
-    pub fn one_fillet(n: usize) -> Case {
+    pub(crate) fn one_fillet(n: usize) -> Case {
         let outline = [
             Line([-5.0, -5.0]),
             Line([5.0, -5.0]),
@@ -750,14 +851,25 @@ pub mod bodies {
     }
 
     /// A block with a round hole.
-    pub fn drilled(n: usize, rows: usize) -> Case {
-        let square = [Line([-5.0, -5.0]), Line([5.0, -5.0]), Line([5.0, 5.0]), Line([-5.0, 5.0])];
+    pub(crate) fn drilled(n: usize, rows: usize) -> Case {
+        let mut square = Vec::new();
+        for k in 0..4 {
+            let [c, s] = [[5.0, -5.0], [5.0, 5.0], [-5.0, 5.0], [-5.0, -5.0]][k];
+            let [d, t] = [[5.0, 0.0], [0.0, 5.0], [-5.0, 0.0], [0.0, -5.0]][k];
+            square.extend([Line([c, s]), Line([d, t])]);
+        }
         let hole = [Arc([0.0; 2], 3.0, 0.0, TAU, n)];
-        extruded(&format!("drilled {n} rows {rows}"), &square, &hole, 7.0, rows)
+        extruded(
+            &format!("drilled {n} rows {rows}"),
+            &square,
+            &hole,
+            7.0,
+            rows,
+        )
     }
 
     /// A plate with rounded corners and a through pocket with rounded corners.
-    pub fn pocket(n: usize) -> Case {
+    pub(crate) fn pocket(n: usize) -> Case {
         extruded(
             &format!("pocket {n}"),
             &arcs([40.0, 20.0], 5.0, n),
