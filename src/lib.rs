@@ -44,6 +44,7 @@ pub mod ballast;
 pub mod bytes;
 #[cfg(feature = "cli")]
 pub mod command;
+pub mod curvature;
 pub mod error;
 pub mod format;
 pub mod geometry;

@@ -15,7 +15,7 @@ const ROWS: &[&[&str]] = &[
     &["printed"],
     &["format"],
     &["stream"],
-    &["soundness"],
+    &["curvature", "soundness"],
     &["masses", "material"],
     &["limits", "uncertainty"],
     &["ballast"],

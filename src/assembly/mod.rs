@@ -63,8 +63,10 @@ pub use growth::{Growth, MaturityRow, Standing};
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};
 pub use overlap::{Overlap, Stand};
-pub use resolve::{Basis, Piece, Resolved, Source, Weighed, resolve};
-pub use rollup::{Balance, BasisRow, GroupRow, MaterialRow, PartRow, Total, balance, balance_with};
+pub use resolve::{Basis, FacetBias, Piece, Resolved, Source, Weighed, resolve};
+pub use rollup::{
+    Balance, BasisRow, GroupRow, MaterialRow, PartFacets, PartRow, Total, balance, balance_with,
+};
 pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
 pub use smear::Smeared;

@@ -18,6 +18,7 @@ use super::shape;
 use super::smear;
 use super::substance::{self, OwnMaterials};
 use super::tree;
+use crate::curvature::Reading;
 use crate::error::Kind;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 
@@ -209,6 +210,7 @@ impl Context<'_, '_> {
         let accept_open = r.exactly("accept-open", Dimension::Fraction);
         let join = join(&r);
         let made = made::read(&r);
+        let facets = facets(&r);
         let expect = expect(&r);
         let each = each(&r);
         let maturity = self.allowances.maturity(&r);
@@ -240,6 +242,7 @@ impl Context<'_, '_> {
             accept_open,
             join,
             made,
+            facets,
             expect,
             each,
             maturity,
@@ -349,6 +352,19 @@ fn join(r: &Reader<'_, '_>) -> Option<f64> {
     let advice = "state the distance that `bismar check` names for the crack";
     r.shared.fault(line, Kind::Usage, message, advice);
     None
+}
+
+fn facets(r: &Reader<'_, '_>) -> Option<Reading> {
+    match r.text("facets")? {
+        (s, _) if s == "flat" => Some(Reading::Flat),
+        (s, _) if s == "curved" => Some(Reading::Curved),
+        (s, line) => {
+            let message = format!("`facets` is `{s}`");
+            let advice = "write \"curved\" where facets stand for curves, or \"flat\" where they are what is meant";
+            r.shared.fault(line, Kind::Usage, message, advice);
+            None
+        }
+    }
 }
 
 fn each(r: &Reader<'_, '_>) -> Each {

@@ -122,6 +122,7 @@ fn place(r: Reader<'_, '_>, context: &mut Context<'_, '_>) -> Option<BallastPlac
             accept_open: None,
             join: None,
             made: None,
+            facets: None,
             expect: None,
             each: Each::Shared,
             maturity: None,

@@ -20,6 +20,7 @@ use super::printing::{self, Printing};
 use super::smear::{self, Smeared};
 use super::source::{MeshBody, MeshFiles};
 use super::{listed, notes, sum};
+use crate::curvature::Reading;
 use crate::error::{Error, Kind, Warning};
 use crate::masses::PrintFigures;
 use crate::moments::Moments;
@@ -66,6 +67,20 @@ pub struct Piece {
     pub moments: Moments,
 }
 
+/// What the facets of a part do to its mass moments: the mesh's minus the curved part's.
+///
+/// It is a bias. Of figures that are not `corrected` the interval runs from them to themselves less
+/// this, widened there by the doubt; of corrected ones, the doubt lies on both sides.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct FacetBias {
+    /// Whether the part's figures have had it taken off.
+    pub corrected: bool,
+    /// kg, kg m, kg m², in the assembly's axes.
+    pub moments: Moments,
+    /// How far the mass of it may itself be off, kg; the rest in the same proportion.
+    pub doubt_kg: f64,
+}
+
 /// One thing that stands in the assembly, weighed.
 #[derive(Clone, Debug)]
 pub struct Weighed {
@@ -85,7 +100,10 @@ pub struct Weighed {
     pub moments: Moments,
     /// How far its figures may be off, where its mesh is open.
     pub estimate: Option<MassBounds>,
-    /// m³, of the mesh.
+    /// What its facets do; none for items, parts whose facets are what is meant, and where it is not
+    /// known.
+    pub facets: Option<FacetBias>,
+    /// m³, of the mesh, or of the curves that its facets stand for.
     pub volume: Option<f64>,
     /// Measured mass / volume, kg/m³.
     pub implied_density: Option<f64>,
@@ -148,6 +166,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                     groups: instance.groups.to_vec(),
                     source: Source::Item,
                     estimate: None,
+                    facets: None,
                     basis: Basis::Stated,
                     pieces: vec![Piece {
                         material: None,
@@ -350,11 +369,24 @@ impl Work {
             .map(|(b, p)| Stand {
                 body: b.clone(),
                 placement: instance.placement,
-                density: p.moments.zeroth / b.figures().moments.zeroth,
+                density: p.moments.zeroth / moments_of(b, part).zeroth,
             })
             .collect();
+        let facets = bias(part, &bodies, &pieces, &instance.placement);
+        if part.facets == Some(Reading::Curved) && facets.is_none() && first {
+            out.warnings.push(notes::warning(
+                instance,
+                "curves-not-estimated",
+                format!(
+                    "the figures of `{}` are those of its facets as they stand",
+                    instance.path
+                ),
+                "curves are estimated of closed bodies without a solid inside their solid",
+            ));
+        }
         Some(Weighed {
             stands,
+            facets,
             estimate,
             path: instance.path.clone(),
             groups: instance.groups.to_vec(),
@@ -511,8 +543,42 @@ fn accepted<'b>(body: &'b Arc<dyn MeshBody>, part: &Part) -> Option<&'b Capped> 
     (capped.volume_bound <= most).then_some(capped)
 }
 
-fn moments_of<'b>(body: &'b Arc<dyn MeshBody>, part: &Part) -> &'b Moments {
-    accepted(body, part).map_or(&body.figures().moments, |c| &c.moments)
+fn moments_of(body: &Arc<dyn MeshBody>, part: &Part) -> Moments {
+    if let Some(capped) = accepted(body, part) {
+        return capped.moments;
+    }
+    let mesh = body.figures().moments;
+    match part.facets {
+        Some(Reading::Curved) => body.facet_error(true).map_or(mesh, |e| e.corrected(&mesh)),
+        _ => mesh,
+    }
+}
+
+/// What the facets of a part do to its mass moments where it stands; none where it is not known of
+/// one of its bodies.
+fn bias(
+    part: &Part,
+    bodies: &Bodies,
+    pieces: &[Piece],
+    placement: &crate::moments::Placement,
+) -> Option<FacetBias> {
+    if part.facets == Some(Reading::Flat) {
+        return None;
+    }
+    let asked = part.facets == Some(Reading::Curved);
+    let mut moments = Moments::zero(placement.at);
+    let mut doubt = 0.0;
+    for (body, piece) in bodies.iter().zip(pieces) {
+        let error = body.facet_error(asked)?;
+        let density = piece.moments.zeroth / moments_of(body, part).zeroth;
+        moments = moments.plus(&error.moments.weighted(density).placed(placement));
+        doubt += error.doubt * density;
+    }
+    Some(FacetBias {
+        corrected: asked,
+        moments,
+        doubt_kg: doubt,
+    })
 }
 
 /// What to do about a body that is refused, with the bound that it would have capped.

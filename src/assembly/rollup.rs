@@ -94,6 +94,19 @@ pub struct Total {
     pub moments: Moments,
 }
 
+/// What the facets of a part do to its figures: the mesh's minus the curved part's.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+pub struct PartFacets {
+    /// What the part's figures are of: `flat` facets as they stand, or the `curved` part.
+    pub figures: &'static str,
+    /// kg.
+    pub mass_error_kg: f64,
+    /// How far the mass's error may itself be off, kg.
+    pub mass_doubt_kg: f64,
+    /// m, in the assembly's axes.
+    pub centre_error_m: [f64; 3],
+}
+
 /// One thing of the assembly.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct PartRow {
@@ -124,6 +137,9 @@ pub struct PartRow {
     /// How far its figures may be off, where its mesh is open; absent where it is closed.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub estimate: Option<MassBounds>,
+    /// What its facets do, where they stand for curves; absent where that is not known or nothing.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub facets: Option<PartFacets>,
     /// Measured mass / volume.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub implied_density_kg_m3: Option<f64>,
@@ -367,6 +383,21 @@ fn share(of: f64, mass: Option<f64>) -> Option<f64> {
     mass.map(|mass| of / mass)
 }
 
+fn facets(w: &Weighed) -> Option<PartFacets> {
+    let bias = w.facets?;
+    let moved = match bias.corrected {
+        true => w.moments.plus(&bias.moments).centre()? - w.moments.centre()?,
+        false => w.moments.centre()? - w.moments.plus(&bias.moments.weighted(-1.0)).centre()?,
+    };
+    let none = bias.moments.zeroth == 0.0 && bias.doubt_kg == 0.0;
+    (!none).then(|| PartFacets {
+        figures: if bias.corrected { "curved" } else { "flat" },
+        mass_error_kg: bias.moments.zeroth,
+        mass_doubt_kg: bias.doubt_kg,
+        centre_error_m: moved.into(),
+    })
+}
+
 fn part_row(n: usize, w: &Weighed, mass: Option<f64>, sure: Option<&Sure>) -> PartRow {
     let (mass_standard_kg, centre_standard_m) = sure.and_then(|s| s.standards([n])).unzip();
     let (maturity, predicted_mass_kg) = sure.and_then(|s| s.maturity(n, w.moments.zeroth)).unzip();
@@ -391,6 +422,7 @@ fn part_row(n: usize, w: &Weighed, mass: Option<f64>, sure: Option<&Sure>) -> Pa
         predicted_mass_kg,
         basis: w.basis,
         estimate: w.estimate,
+        facets: facets(w),
         implied_density_kg_m3: w.implied_density,
         made: w.made.clone(),
         density_kg_m3: material.map(|m| m.density.value),

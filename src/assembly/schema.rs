@@ -219,12 +219,22 @@ struct Part {
     join: Option<Length>,
     /// How it is printed; a solid where left out.
     made: Option<Made>,
+    /// Whether its facets are what is meant, or stand for the curves that their corners lie on.
+    facets: Option<Reading>,
     /// Figures that it must have.
     expect: Option<Expect>,
     /// Whether repeats share one error of each tolerance.
     each: Option<Each>,
     /// How far along its design is: a name in [allowance].
     maturity: Option<String>,
+}
+
+/// How facets are read.
+#[derive(JsonSchema)]
+#[serde(rename_all = "lowercase")]
+enum Reading {
+    Flat,
+    Curved,
 }
 
 /// Whether repeats share one error of each tolerance, or have one each.

@@ -198,6 +198,7 @@ pub(super) fn weigh(instances: &[Instance<'_>], out: &mut Resolved) {
         });
         out.weighed.push(Weighed {
             made: None,
+            facets: None,
             path: format!("{}{}", a.prefix, a.entry.name),
             groups: a.groups,
             source: Source::Smear,

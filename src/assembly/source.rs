@@ -6,6 +6,7 @@ use std::sync::Arc;
 use nalgebra::Matrix3;
 
 use super::load::Input;
+use crate::curvature::FacetError;
 use crate::error::Error;
 use crate::moments::Moments;
 use crate::quantity::LengthUnit;
@@ -55,6 +56,14 @@ pub trait MeshBody: Send + Sync {
     /// at hand, and then nothing is said of the space that it shares.
     fn facets(&self) -> Vec<[[f64; 3]; 3]> {
         Vec::new()
+    }
+
+    /// What its facets do to its figures where they stand for curves (m, the file's frame); none
+    /// where that is not known: it is not closed, holds a solid within its solid, or has more
+    /// facets than are looked at unasked and it is not `asked`.
+    fn facet_error(&self, asked: bool) -> Option<FacetError> {
+        let _ = asked;
+        None
     }
 
     /// The exact bounds (m) of the body's vertices after `turn` about the file's origin.

@@ -13,7 +13,7 @@ use super::expand::{self, Instance, Level, What};
 use super::file::{Each, Item, Part, Shape, SmearMass};
 use super::load::Loaded;
 use super::open::MassBounds;
-use super::resolve::{Resolved, Weighed};
+use super::resolve::{FacetBias, Resolved, Weighed};
 use super::shape::second_of;
 use super::smear::Smeared;
 use crate::moments::Moments;
@@ -164,10 +164,43 @@ impl Sources {
         if let Some(bounds) = &weighed.estimate {
             term = self.open(instance, weighed, bounds, term);
         }
+        if let Some(facets) = &weighed.facets {
+            term = self.facets(&sharing, facets, weighed, term);
+        }
         if let Some(maturity) = &part.maturity {
             term = self.grown(&sharing, maturity.allowance, term);
         }
         self.placed(instance, part.each, term)
+    }
+
+    /// Facets that may stand for curves: a bias from the mesh's figures to those of the curves,
+    /// and how far these may themselves be off. All repeats of a mesh are off alike.
+    fn facets(
+        &mut self,
+        sharing: &Sharing<'_>,
+        facets: &FacetBias,
+        weighed: &Weighed,
+        mut term: Contribution,
+    ) -> Contribution {
+        let bias = facets.moments.weighted(-1.0);
+        if !facets.corrected && bias != Moments::zero(bias.about) {
+            let part = Distribution::Interval {
+                low: 0.0,
+                high: 1.0,
+            };
+            if let Some(by) = self.off(sharing, "facets for curves", "1", part) {
+                term = term.adding(by, bias);
+            }
+        }
+        if facets.doubt_kg > 0.0 {
+            let half = Distribution::Rectangular {
+                half_width: facets.doubt_kg,
+            };
+            if let Some(by) = self.off(sharing, "doubt of facets for curves", "kg", half) {
+                term = term.adding(by, weighed.moments.weighted(1.0 / weighed.moments.zeroth));
+            }
+        }
+        term
     }
 
     /// The bounds of a mesh that was taken with its holes capped. All repeats of the mesh are off

@@ -2,13 +2,15 @@
 
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 use nalgebra::Matrix3;
 
 use super::beside::Beside;
+use super::curves::CurveArgs;
 use super::inputs::{closing_distance, digest, joined_said};
 use crate::assembly::{BodyFigures, Capped, Input, MeshBody, MeshFiles, Refusal};
+use crate::curvature::{CREASE_DEG, FacetError};
 use crate::error::{Error, Result, Warning};
 use crate::format::{self, Bytes};
 use crate::mesh::{Body, Mesh, ReaderNote};
@@ -49,6 +51,8 @@ struct Placed {
     body: Body,
     metres: f64,
     figures: BodyFigures,
+    /// What its facets do, once it was looked at.
+    curves: OnceLock<Option<FacetError>>,
 }
 
 impl MeshBody for Placed {
@@ -62,6 +66,21 @@ impl MeshBody for Placed {
             .into_iter()
             .map(|t| t.map(|p| p.map(|x| x * self.metres)))
             .collect()
+    }
+
+    fn facet_error(&self, asked: bool) -> Option<FacetError> {
+        let look = CurveArgs {
+            true_curves: asked,
+            crease: CREASE_DEG,
+        };
+        if self.figures.refused.is_some() || !look.looks(&self.body) {
+            return None;
+        }
+        // Welding failed before if it fails here.
+        *self.curves.get_or_init(|| {
+            let found = look.look(&self.mesh, &self.body).ok().flatten()?;
+            Some(found.scaled(self.metres))
+        })
     }
 
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {
@@ -129,6 +148,7 @@ impl MeshFiles for Files<'_> {
                     body: body.clone(),
                     mesh: Arc::clone(&mesh),
                     metres,
+                    curves: OnceLock::new(),
                 };
                 Arc::new(placed) as Arc<dyn MeshBody>
             })

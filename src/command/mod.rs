@@ -5,6 +5,7 @@ mod balance;
 mod beside;
 mod check;
 mod copy;
+mod curves;
 mod inputs;
 mod made;
 mod materials;

@@ -2,11 +2,13 @@
 
 use clap::{Args, ValueEnum};
 
+use super::curves::CurveArgs;
 use super::inputs::{Input, MeshArgs, ReadMesh, closing_distance, expand, open, picked, read};
 use super::made::{self, MadeArgs};
 use super::open::{self, Opened};
 use super::progress::Terminal;
 use super::{Answer, Common, gather, point, slice, whole};
+use crate::curvature::FacetError;
 use crate::error::{Error, Kind, Result, Warning};
 use crate::masses::{Figures, Substance, box_union};
 use crate::material::Table;
@@ -16,6 +18,7 @@ use crate::printed::Printed;
 use crate::progress::Progress;
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 use crate::report::estimate::Estimated;
+use crate::report::facets::Facets;
 use crate::report::weigh::{NestedFigures, Refused, WeighBody, WeighedBody, WeighedFile, Whole};
 use crate::report::{self, InputFact, path_hex};
 use crate::soundness::{
@@ -23,7 +26,7 @@ use crate::soundness::{
     cap::{Cap, Estimate},
 };
 use crate::stream::Slice;
-use crate::uncertainty::{BodySources, Uncertainty};
+use crate::uncertainty::{BodySources, FacetSource, Uncertainty};
 
 /// Arguments of `weigh`.
 #[derive(Args, Clone, Debug)]
@@ -55,6 +58,8 @@ pub(super) struct WeighArgs {
     /// Write the partial of --slice to this file [default: standard output]
     #[arg(short, long, value_name = "PARTIAL", requires = "slice")]
     output: Option<std::path::PathBuf>,
+    #[command(flatten)]
+    curves: CurveArgs,
     /// Weigh an open body with its holes capped, if its volume is then bounded within P per cent
     #[arg(long, value_name = "PERCENT", value_parser = open::parse_percent)]
     accept_open: Option<f64>,
@@ -264,10 +269,22 @@ fn answer(
     let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
     let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
-    let results: Vec<Weighing> = chosen
+    let mut results: Vec<Weighing> = chosen
         .iter()
         .map(|(_, body)| weigh(&m.mesh, body, rule, args.accept_open))
         .collect();
+    let mut facets = Vec::with_capacity(chosen.len());
+    for (&(i, body), weighing) in chosen.iter().zip(&mut results) {
+        let seen = match weighing {
+            Weighing::Closed(solid) if !is_cut(i) => args.curves.look(&m.mesh, body)?.map(|e| {
+                let said = Facets::of(solid, &e, metres, args.curves.true_curves);
+                *solid = args.curves.corrected(solid, &e);
+                (said, e)
+            }),
+            _ => None,
+        };
+        facets.push(seen);
+    }
     let made = args.made.plan(m.unit)?;
     let mut warnings = m.warnings.clone();
     let printed: Vec<Option<Printed>> = chosen
@@ -281,12 +298,24 @@ fn answer(
     let bodies: Vec<WeighedBody> = chosen
         .iter()
         .zip(results.iter().zip(&printed))
-        .map(|(&(i, body), (weighing, printed))| {
+        .zip(facets)
+        .map(|((&(i, body), (weighing, printed)), facets)| {
             let mut out = if is_cut(i) {
                 filled(&m.mesh, body, metres, substance, about, progress)
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
+            if let Some((said, error)) = facets {
+                out.facets = Some(said);
+                facet_uncertainty(
+                    &mut out,
+                    weighing,
+                    &error,
+                    metres,
+                    substance,
+                    args.curves.true_curves,
+                );
+            }
             if let (Some(printed), Some(s)) = (printed, weighing.solid()) {
                 let of = [(printed, s.moments.scaled(metres))];
                 out.made = made::figures(&of, substance);
@@ -361,6 +390,9 @@ fn answer(
         proved: None,
         turned: None,
     };
+    let flat = file.bodies.iter().flatten().filter(|b| b.facets.is_none());
+    let flat: Vec<String> = flat.map(|b| b.id.clone()).collect();
+    warnings.extend(args.curves.not_corrected(&input.path, &flat));
     Ok((file, warnings, m.beside.clone()))
 }
 
@@ -467,13 +499,42 @@ pub(super) fn uncertainty(
     let sources = BodySources {
         density: substance.map(|s| (s.name.clone(), s.density)),
         bounds: estimate.and_then(Estimated::sources),
-        biases: Vec::new(),
+        facets: None,
     };
     // A volume with an error that nothing bounds has a mass with one.
     if estimate.is_some() && sources.bounds.is_none() {
         return None;
     }
     sources.spread(volume)
+}
+
+/// Adds what facets that may stand for curves do to how far the mass figures may be off.
+fn facet_uncertainty(
+    out: &mut WeighedBody,
+    weighing: &Weighing,
+    error: &FacetError,
+    metres: f64,
+    substance: Option<&Substance>,
+    corrected: bool,
+) {
+    let Some(solid) = weighing.solid() else {
+        return;
+    };
+    let error = error.scaled(metres);
+    let bias = if corrected {
+        Moments::zero(error.moments.about)
+    } else {
+        error.moments.weighted(-1.0)
+    };
+    let sources = BodySources {
+        density: substance.map(|s| (s.name.clone(), s.density)),
+        bounds: None,
+        facets: Some(FacetSource {
+            bias,
+            doubt: error.doubt,
+        }),
+    };
+    out.uncertainty = sources.spread(&solid.moments.scaled(metres));
 }
 
 /// How far the mass figures of a print may be off for its density. What a hollow keeps is taken to

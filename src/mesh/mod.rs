@@ -29,3 +29,4 @@ pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};
 pub(crate) use wedge::strictly_inside;
 pub use weld::MOST_TRIANGLES;
+pub(crate) use weld::weld;

@@ -155,10 +155,14 @@ fn parts(b: &Balance, unit: LengthUnit) -> Table {
                 .map_or(String::new(), |t| format!(" against {}", significant(t, 4)));
             format!(", implies {} kg/m3{against}", significant(d, 4))
         });
+        let curved = match p.facets {
+            Some(f) if f.figures == "curved" => ", facets taken as curves",
+            _ => "",
+        };
         table.row(vec![
             Cell::text(&p.path),
             Cell::text(&made_of(p)),
-            Cell::text(&format!("{}{implied}", basis_word(p.basis))),
+            Cell::text(&format!("{}{curved}{implied}", basis_word(p.basis))),
             Cell::figure(mass(p.mass_kg, p.mass_standard_kg), p.mass_kg),
             p.share_of_mass.map_or_else(Cell::empty, |s| {
                 Cell::figure(format!("{:.1}", 100.0 * s), s)

@@ -8,6 +8,7 @@ pub mod copy;
 pub mod digits;
 mod document;
 pub mod estimate;
+pub mod facets;
 mod footer;
 mod look;
 pub mod materials;

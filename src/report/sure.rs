@@ -178,7 +178,7 @@ pub(super) fn assumed(sources: &[Source]) -> String {
     match count("interval") {
         0 => {}
         n => said.push(format!(
-            "growth as anything from none to the whole allowance ({n} {})",
+            "growth and facets that stand for curves as a bias, anything from none to all of it ({n} {})",
             sources(n)
         )),
     }

@@ -3,6 +3,7 @@
 use serde::Serialize;
 
 use super::estimate::Estimated;
+use super::facets::Facets;
 use crate::error::Error;
 use crate::masses::{Figures, PrintFigures};
 use crate::soundness::Finding;
@@ -98,8 +99,8 @@ pub struct WeighedBody {
     pub made: Option<PrintFigures>,
     /// How the figures were come by, where they are not exact for the mesh.
     pub estimate: Option<Estimated>,
-    /// What the facets do to the figures of a curved body.
-    pub facets: Option<()>,
+    /// What the facets do to the figures of a curved body; null where it was not estimated.
+    pub facets: Option<Facets>,
     /// How far the figures may be off; null where it was not computed.
     pub uncertainty: Option<Uncertainty>,
 }

@@ -92,6 +92,13 @@ fn of_file(file: &WeighedFile, look: Look) -> String {
             look,
         ));
     }
+    if bodies.len() <= IN_FULL {
+        for b in bodies {
+            if let Some(f) = &b.facets {
+                out.push_str(&format!("{}: {}\n", crate::text::shown(&b.id), f.line()));
+            }
+        }
+    }
     if let (Some(whole), true) = (&file.whole, bodies.len() > 1)
         && let Some(e) = &whole.estimate
     {

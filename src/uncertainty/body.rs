@@ -16,9 +16,17 @@ pub struct BodySources {
     pub density: Option<(Option<String>, Quantity)>,
     /// Bounds of the volume where the mesh alone does not fix it.
     pub bounds: Option<BodyBounds>,
-    /// One-sided biases in the moments of volume, mesh to true, such as that of facets: each may
-    /// apply in part, from none of it to all of it.
-    pub biases: Vec<(String, Moments)>,
+    /// What the facets do, where they may stand for curves.
+    pub facets: Option<FacetSource>,
+}
+
+/// What facets do to the moments of a volume, in SI units.
+#[derive(Clone, Copy, Debug)]
+pub struct FacetSource {
+    /// From the volume of the facets to that of the curves; nothing where that was added already.
+    pub bias: Moments,
+    /// How far the volume of the curves may itself be off, m³.
+    pub doubt: f64,
 }
 
 /// How far the figures of a volume may be off, in SI units.
@@ -58,13 +66,23 @@ impl BodySources {
             let by = model.variable(Variable::new(source, "kg/m3", tolerance.into()));
             piece.scales.push((by, 1.0 / density.value));
         }
-        for (name, bias) in &self.biases {
-            let part = Distribution::Interval {
-                low: 0.0,
-                high: 1.0,
-            };
-            let by = model.variable(Variable::new(name, "1", part));
-            piece.additions.push((by, bias.weighted(density.value)));
+        if let Some(facets) = &self.facets {
+            if facets.bias != Moments::zero(facets.bias.about) {
+                let part = Distribution::Interval {
+                    low: 0.0,
+                    high: 1.0,
+                };
+                let by = model.variable(Variable::new("facets for curves", "1", part));
+                let bias = facets.bias.weighted(density.value);
+                piece.additions.push((by, bias));
+            }
+            if facets.doubt > 0.0 {
+                let half = Distribution::Rectangular {
+                    half_width: facets.doubt,
+                };
+                let by = model.variable(Variable::new("doubt of facets for curves", "m3", half));
+                piece.scales.push((by, 1.0 / volume.zeroth));
+            }
         }
         let mut known = true;
         let mut motions = Vec::new();

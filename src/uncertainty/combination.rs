@@ -17,10 +17,18 @@ const MOST_TERMS: usize = 8192;
 const NEGLIGIBLE: f64 = 1e-13;
 
 /// value + Σ c·X over independent sources X: its standard deviation, quantiles, probabilities.
+///
+/// A [`Distribution::Interval`] is a bias of one direction, of which nothing says how much applies:
+/// it is no spread. Intervals of the sum reach from where none of it applies to where all of it
+/// does, and a chance is the least over these.
 #[derive(Clone, Debug)]
 pub struct Combination {
     mean: f64,
     standard: f64,
+    /// Of the sources that are no bias.
+    spread: f64,
+    /// Half of what all biases together reach, about the mean.
+    span: f64,
     law: Law,
 }
 
@@ -53,6 +61,15 @@ impl Combination {
         let variance = |(c, d): &(f64, Distribution)| (c * d.standard()).powi(2);
         let total: f64 = parts.iter().map(variance).sum();
         let standard = total.sqrt();
+        let is_bias = |(_, d): &(f64, Distribution)| matches!(d, Distribution::Interval { .. });
+        let span = parts.iter().filter(|p| is_bias(p)).map(|(c, d)| {
+            let [low, high] = d.bounds().unwrap_or([0.0; 2]);
+            0.5 * (c * (high - low)).abs()
+        });
+        let span: f64 = span.sum();
+        parts.retain(|p| !is_bias(p));
+        let total: f64 = parts.iter().map(variance).sum();
+        let spread = total.sqrt();
         parts.sort_by(|a, b| variance(b).total_cmp(&variance(a)));
         let greatest = parts.first().map_or(0.0, variance);
         let normal = |(_, d): &(f64, Distribution)| matches!(d, Distribution::Normal { .. });
@@ -65,9 +82,6 @@ impl Combination {
                 [(c, Distribution::Rectangular { half_width })] => {
                     Law::Rectangular((c * half_width).abs())
                 }
-                [(c, Distribution::Interval { low, high })] => {
-                    Law::Rectangular((0.5 * c * (high - low)).abs())
-                }
                 _ => {
                     let rest: f64 = parts.iter().skip(CONVOLVED).map(variance).sum();
                     parts.truncate(CONVOLVED);
@@ -75,13 +89,15 @@ impl Combination {
                         let standard = rest.sqrt();
                         parts.push((1.0, Distribution::Normal { standard }));
                     }
-                    convolved(&parts, standard)
+                    convolved(&parts, spread)
                 }
             }
         };
         Self {
             mean,
             standard,
+            spread,
+            span,
             law,
         }
     }
@@ -96,33 +112,41 @@ impl Combination {
         self.standard
     }
 
-    /// The chance of a value up to `x`.
-    pub fn below(&self, x: f64) -> f64 {
-        let x = x - self.mean;
+    /// The chance of a value up to `x` where the biases come to `shift` from their middle.
+    fn below(&self, x: f64, shift: f64) -> f64 {
+        let x = x - self.mean - shift;
         match &self.law {
             Law::Exact => f64::from(u8::from(x >= 0.0)),
-            Law::Normal => normal_below(x / self.standard),
+            Law::Normal => normal_below(x / self.spread),
             Law::Rectangular(half) => (0.5 * (1.0 + x / half)).clamp(0.0, 1.0),
             Law::Series { half_period, terms } => series(x, *half_period, terms),
         }
     }
 
     /// The chance of a value within the band, its ends included; an end that is none is far away.
+    /// With a bias, the chance where it is least: as what is left is symmetric with one peak, that
+    /// is where none of the bias applies or all of it.
     pub fn within(&self, from: Option<f64>, to: Option<f64>) -> f64 {
-        if let Law::Exact = self.law {
-            let inside = from.is_none_or(|f| self.mean >= f) && to.is_none_or(|t| self.mean <= t);
-            return f64::from(u8::from(inside));
-        }
-        let below = from.map_or(0.0, |from| self.below(from));
-        let up_to = to.map_or(1.0, |to| self.below(to));
-        (up_to - below).clamp(0.0, 1.0)
+        let at = |shift: f64| {
+            if let Law::Exact = self.law {
+                let x = self.mean + shift;
+                // Half of an interval added to its middle may miss its end by rounding.
+                let near = 4.0 * f64::EPSILON * x.abs().max(self.span);
+                let inside = from.is_none_or(|f| x >= f - near) && to.is_none_or(|t| x <= t + near);
+                return f64::from(u8::from(inside));
+            }
+            let below = from.map_or(0.0, |from| self.below(from, shift));
+            let up_to = to.map_or(1.0, |to| self.below(to, shift));
+            (up_to - below).clamp(0.0, 1.0)
+        };
+        at(-self.span).min(at(self.span))
     }
 
     /// The 2.5 % and the 97.5 % quantile.
     pub fn interval_95(&self) -> [f64; 2] {
         let half = match &self.law {
             Law::Exact => 0.0,
-            Law::Normal => COVERAGE_95 * self.standard,
+            Law::Normal => COVERAGE_95 * self.spread,
             Law::Rectangular(half) => 0.95 * half,
             Law::Series { half_period, terms } => {
                 let (mut low, mut high) = (0.0, *half_period);
@@ -138,6 +162,7 @@ impl Combination {
             }
         };
         // The sum is symmetric about its mean, as every source is.
+        let half = half + self.span;
         [self.mean - half, self.mean + half]
     }
 }
@@ -231,8 +256,8 @@ mod tests {
             for k in 0..40 {
                 let x = f64::from(k) / 39.0 * (a + b);
                 // The series ends at k⁻³ of its first term, or at its 8192nd near a kink.
-                near(c.below(x), closed(x), 2e-7);
-                near(c.below(-x), 1.0 - closed(x), 2e-7);
+                near(c.below(x, 0.0), closed(x), 2e-7);
+                near(c.below(-x, 0.0), 1.0 - closed(x), 2e-7);
             }
             let high = c.interval_95()[1];
             near(closed(high), 0.975, 2e-7);
@@ -250,7 +275,7 @@ mod tests {
             let closed = |x: f64| sigma / (2.0 * a) * (g((x + a) / sigma) - g((x - a) / sigma));
             for k in -30..=30 {
                 let x = f64::from(k) / 20.0 * (a + 2.0 * sigma);
-                near(c.below(7.0 + x), closed(x), 2e-6);
+                near(c.below(7.0 + x, 0.0), closed(x), 2e-6);
             }
             near(closed(c.interval_95()[1] - 7.0), 0.975, 1e-7);
         }
@@ -273,7 +298,7 @@ mod tests {
         near(normal_below(COVERAGE_95), 0.975, 1e-15);
     }
 
-    /// A bias lies on one side of what was stated.
+    /// A bias reaches from what was stated to all of it, and a spread widens that on both sides.
     #[test]
     fn one_sided() {
         let bias = Distribution::Interval {
@@ -282,10 +307,15 @@ mod tests {
         };
         let c = Combination::new(5.0, [(1.0, bias)]);
         assert_eq!(c.mean(), 6.0);
-        let [low, high] = c.interval_95();
-        near(low, 5.05, 1e-12);
-        near(high, 6.95, 1e-12);
-        assert_eq!(c.within(None, Some(5.0)), 0.0);
+        near(c.standard(), 1.0 / 3.0_f64.sqrt(), 1e-15);
+        assert_eq!(c.interval_95(), [5.0, 7.0]);
+        assert_eq!(c.within(Some(5.0), Some(7.0)), 1.0);
+        assert_eq!(c.within(None, Some(6.9)), 0.0);
+        let c = Combination::new(5.0, [(-1.0, bias), (1.0, rectangular(0.1))]);
+        near(c.interval_95()[0], 3.0 - 0.095, 1e-12);
+        near(c.interval_95()[1], 5.0 + 0.095, 1e-12);
+        // All of it applies: half of the spread lies above 3.
+        near(c.within(Some(3.0), None), 0.5, 1e-12);
     }
 
     #[test]

@@ -22,8 +22,9 @@ pub enum Distribution {
         /// x.
         half_width: f64,
     },
-    /// Equally likely anywhere between two ends that need not lie about zero: the bias of facets,
-    /// the growth that is still to come.
+    /// A bias between two ends that need not lie about zero, of which nothing says how much
+    /// applies: that of facets, the growth that is still to come. Its standard deviation is that of
+    /// a value anywhere in between (4.3.7); intervals of a sum reach over all of it.
     Interval {
         /// The lower end.
         low: f64,

@@ -43,7 +43,7 @@ mod spread;
 #[cfg(test)]
 mod tests;
 
-pub use body::{BodyBounds, BodySources};
+pub use body::{BodyBounds, BodySources, FacetSource};
 pub use combination::Combination;
 pub use contribution::{Contribution, Motion, Piece};
 pub use distribution::Distribution;

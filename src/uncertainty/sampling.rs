@@ -4,6 +4,7 @@ use nalgebra::Matrix3;
 use rayon::prelude::*;
 use serde::Serialize;
 
+use super::distribution::Distribution;
 use super::figure::Figure;
 use super::model::{Model, Response, Values};
 use super::near::quantile;
@@ -216,7 +217,7 @@ pub fn sample(
             all.take(c);
         }
     }
-    Some(all.answer(&stated, bands, linear, sampling))
+    Some(all.answer(&stated, bands, linear, sampling, biased(model)))
 }
 
 fn add(sum: &mut [f64; 2], more: [f64; 2]) {
@@ -262,6 +263,7 @@ impl Chunk {
         bands: &[Band<'_>],
         linear: &Uncertainty,
         sampling: Sampling,
+        biased: bool,
     ) -> Sampled {
         let n = self.count as f64;
         let one = |k: usize| {
@@ -282,7 +284,13 @@ impl Chunk {
         let doubtful = (0..FIGURES).filter(|&k| {
             let s = &all[k];
             linear[k].is_some_and(|[low, high]| {
-                let off = (low - s.low_95).abs().max((high - s.high_95).abs());
+                // With a bias the linear interval reaches over all of it; only what it leaves out
+                // counts.
+                let off = if biased {
+                    (low - s.low_95).max(s.high_95 - high)
+                } else {
+                    (low - s.low_95).abs().max((high - s.high_95).abs())
+                };
                 off > half_of_last_place(s.standard) + chance(s, kept) + rounding[k]
             })
         });
@@ -332,6 +340,12 @@ impl Chunk {
 }
 
 /// The linear 95 % intervals in the order of [`NAMES`].
+/// Whether a source is a bias.
+fn biased(model: &Model) -> bool {
+    let bias = |v: &super::model::Variable| matches!(v.distribution, Distribution::Interval { .. });
+    model.variables().iter().any(bias)
+}
+
 fn intervals(u: &Uncertainty) -> [Option<[f64; 2]>; FIGURES] {
     let vector = |s: &Spread<[f64; 3]>, k: usize| Some([s.low_95[k], s.high_95[k]]);
     std::array::from_fn(|n| match n {
