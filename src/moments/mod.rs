@@ -1,6 +1,7 @@
 //! The one idea: everything that has mass becomes [`Moments`].
 
 mod algebra;
+pub mod liquid;
 mod principal;
 mod skin;
 mod solid;
