@@ -46,6 +46,7 @@ pub mod command;
 pub mod error;
 pub mod format;
 pub mod geometry;
+pub mod gravity;
 pub mod limits;
 pub mod masses;
 pub mod material;

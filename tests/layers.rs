@@ -16,7 +16,7 @@ const ROWS: &[&[&str]] = &[
     &["stream"],
     &["soundness"],
     &["masses", "material"],
-    &["limits"],
+    &["gravity", "limits"],
     &["assembly"],
     &["report"],
     &["command"],

@@ -5,7 +5,9 @@ use std::path::PathBuf;
 use globset::GlobMatcher;
 use nalgebra::{Matrix3, Vector3};
 
+use super::service::{ServiceKeys, Tank};
 use crate::limits::Limit;
+use crate::moments::Grading;
 use crate::quantity::{LengthUnit, Quantity};
 
 /// One assembly file. Lengths are in metres, everything in SI units.
@@ -23,6 +25,8 @@ pub struct AssemblyFile {
     pub entries: Vec<Entry>,
     /// The limits, one a quantity, in file order.
     pub limits: Vec<Limit>,
+    /// Gravity, cases, motions, phases and frames.
+    pub service: ServiceKeys,
 }
 
 /// A material that was chosen, with its density.
@@ -65,6 +69,8 @@ pub enum Entry {
     Part(Box<Part>),
     /// A bought-in thing of stated mass.
     Item(Box<Item>),
+    /// A tank with liquid in it.
+    Tank(Box<Tank>),
     /// Entries under a placement of their own.
     Group(Box<Group>),
 }
@@ -75,6 +81,7 @@ impl Entry {
         match self {
             Self::Part(p) => &p.name,
             Self::Item(i) => &i.name,
+            Self::Tank(t) => &t.name,
             Self::Group(g) => &g.name,
         }
     }
@@ -84,6 +91,7 @@ impl Entry {
         match self {
             Self::Part(p) => &p.position,
             Self::Item(i) => &i.position,
+            Self::Tank(t) => &t.position,
             Self::Group(g) => &g.position,
         }
     }
@@ -93,6 +101,7 @@ impl Entry {
         match self {
             Self::Part(p) => p.line,
             Self::Item(i) => i.line,
+            Self::Tank(t) => t.line,
             Self::Group(g) => g.line,
         }
     }
@@ -152,6 +161,30 @@ pub struct Part {
     pub expect: Option<Expect>,
     /// How its repeats share their tolerances.
     pub each: Each,
+    /// Its mass is this thickness of sheet over its surface, not what its mesh holds, m.
+    pub sheet: Option<Quantity>,
+    /// What coats its surface.
+    pub coating: Option<Coating>,
+    /// A density that varies along an axis of the mesh file.
+    pub graded: Option<Graded>,
+}
+
+/// A coat on a surface.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Coating {
+    /// m.
+    pub thickness: Quantity,
+    /// What it is.
+    pub material: Substance,
+}
+
+/// A density that varies along an axis.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Graded {
+    /// Stations from the mesh file's origin, m; kg/m³.
+    pub grading: Grading,
+    /// A name for it.
+    pub material: Option<String>,
 }
 
 /// A mesh file and, of its bodies, all or those of one name.

@@ -11,7 +11,7 @@ use sha2::{Digest as _, Sha256};
 use super::expand;
 use super::file::{AssemblyFile, MeshChoice};
 use super::reader::Shared;
-use super::{read, tree};
+use super::{read, service, tree};
 use crate::error::{Error, Kind, Warning};
 
 /// The deepest nesting of groups and included files.
@@ -55,6 +55,9 @@ pub fn load(path: &Path) -> Result<Loaded, Vec<Error>> {
         return Err(errors);
     };
     errors.extend(expand::faults(&file));
+    if errors.is_empty() {
+        errors.extend(service::faults(&file));
+    }
     if !errors.is_empty() {
         return Err(errors);
     }
@@ -116,6 +119,18 @@ impl Loader {
                 path: Some(path.to_string_lossy().into_owned()),
                 line: Some(line),
                 advice: "read the figures as nominal values".into(),
+            });
+        }
+        if let (true, Some(line)) = (depth > 0, file.service.first_line()) {
+            self.warnings.push(Warning {
+                kind: "service-ignored".into(),
+                message:
+                    "gravity, cases, motions, phases and frames of an included file are not used"
+                        .into(),
+                path: Some(path.to_string_lossy().into_owned()),
+                line: Some(line),
+                advice: "state them in the outer file, with the paths that things have there"
+                    .into(),
             });
         }
         if depth > 0 && !file.limits.is_empty() {

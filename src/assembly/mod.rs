@@ -35,8 +35,10 @@ mod reader;
 mod resolve;
 mod rollup;
 mod schema;
+pub mod service;
 mod shape;
 mod source;
+mod spread;
 mod substance;
 mod sum;
 mod tree;
@@ -46,8 +48,8 @@ mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, Each, Entry, Expect, Group, Item, MeshChoice, Part, Pattern, Position,
-    Shape, Substance, Turn,
+    AssemblyFile, Assign, Coating, Each, Entry, Expect, Graded, Group, Item, MeshChoice, Part,
+    Pattern, Position, Shape, Substance, Turn,
 };
 pub use load::{DEEPEST, Input, Loaded, load};
 pub use open::{Capped, MassBounds};

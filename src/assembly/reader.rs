@@ -14,10 +14,7 @@ use crate::error::{Error, Kind};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
-const NOT_READ: &[&str] = &[
-    "ballast", "case", "drain", "frame", "gravity", "hang", "made", "motion", "phase", "smear",
-    "support", "tank",
-];
+const NOT_READ: &[&str] = &["ballast", "drain", "hang", "made", "smear", "support"];
 
 /// What the readers of one file share.
 pub(super) struct Shared<'p> {
@@ -328,7 +325,7 @@ pub(super) fn lengths(shared: &Shared<'_>, node: &Node, key: &str) -> Option<[Qu
     None
 }
 
-fn direction(node: &Node) -> Option<Vector3<f64>> {
+pub(super) fn direction(node: &Node) -> Option<Vector3<f64>> {
     match &node.value {
         Value::Text(s) => match s.trim().to_lowercase().as_str() {
             "x" => Some(Vector3::x()),

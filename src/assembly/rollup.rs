@@ -216,7 +216,7 @@ pub fn balance(loaded: &Loaded, resolved: &Resolved) -> Result<Balance, Vec<Erro
 
 /// What arithmetic alone may move: a mass is good to 1e-13 of itself, a centre to 1e-13 of the
 /// box diagonal or 4 units in the last place of the coordinate.
-fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
+pub(super) fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
     let (value, rounding) = match limit.quantity {
         Measured::Mass => (total.mass_kg, 1e-13 * total.mass_kg),
         Measured::Centre(axis) => {
@@ -233,7 +233,7 @@ fn judged(limit: &crate::limits::Limit, total: &Total) -> Judged {
     )
 }
 
-fn total(weighed: &[Weighed]) -> Result<Total, Error> {
+pub(super) fn total(weighed: &[Weighed]) -> Result<Total, Error> {
     let moments = sum::total(weighed.iter().map(|w| &w.moments));
     let mass = moments.zeroth;
     if mass == 0.0 {
@@ -278,11 +278,11 @@ fn not_finite() -> Error {
 }
 
 /// −0 is written as 0.
-fn plain(v: Vector3<f64>) -> [f64; 3] {
+pub(super) fn plain(v: Vector3<f64>) -> [f64; 3] {
     [v.x + 0.0, v.y + 0.0, v.z + 0.0]
 }
 
-fn rows(m: &Matrix3<f64>) -> [[f64; 3]; 3] {
+pub(super) fn rows(m: &Matrix3<f64>) -> [[f64; 3]; 3] {
     std::array::from_fn(|r| std::array::from_fn(|c| m[(r, c)] + 0.0))
 }
 

@@ -3,6 +3,7 @@
 mod balance;
 mod check;
 mod copy;
+mod drain;
 mod inputs;
 mod materials;
 mod meshes;
@@ -64,6 +65,8 @@ enum Command {
     Weigh(weigh::WeighArgs),
     /// Give mass, balance point and inertia of an assembly, and judge its limits
     Balance(balance::BalanceArgs),
+    /// Follow mass, balance point and inertia as tanks empty and things move
+    Drain(drain::DrainArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -102,6 +105,7 @@ pub fn main() -> u8 {
         Command::Check(args) => check::run(args, &cli.common),
         Command::Weigh(args) => weigh::run(args, &cli.common),
         Command::Balance(args) => balance::run(args, &cli.common),
+        Command::Drain(args) => drain::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

@@ -394,6 +394,22 @@ impl Levelled<'_> {
         (wetted, rim)
     }
 
+    /// The wetted parts of the facets below the level `h`, in the vessel's frame, with a point of
+    /// the level plane: tetrahedra from there need no free surface.
+    pub fn wetted(&self, h: f64) -> (Vec<[[f64; 3]; 3]>, [f64; 3]) {
+        let middle = self.vessel.middle;
+        let lift = |p: [f64; 3]| (Vector3::from(p) + middle).into();
+        let mut facets = self.clipped(h.min(self.high)).0;
+        if h >= self.high {
+            let all = self.vessel.triangles.iter();
+            facets = all
+                .map(|t| t.map(|i| self.vessel.points[i as usize].into()))
+                .collect();
+        }
+        let facets = facets.into_iter().map(|t| t.map(lift)).collect();
+        (facets, (self.up * h + middle).into())
+    }
+
     /// The free surface from its rim, by signed triangles from `from` in the plane.
     fn surface(&self, rim: &[Edge], from: &Vector3<f64>) -> Option<Surface> {
         let mut area = Sum::ZERO;

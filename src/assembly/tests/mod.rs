@@ -2,6 +2,7 @@
 
 mod by_hand;
 mod faults;
+mod in_service;
 mod materials;
 mod properties;
 mod published;
@@ -50,6 +51,15 @@ struct Read {
 impl MeshBody for Read {
     fn figures(&self) -> &BodyFigures {
         &self.figures
+    }
+
+    /// Of insides of tanks and what is weighed by its surface alone.
+    fn facets(&self) -> Vec<[[f64; 3]; 3]> {
+        let [lo, hi] = self.figures.bounds;
+        match self.figures.id.as_str() {
+            "inside" | "frame" => crate::geometry::box_facets(lo, hi),
+            _ => Vec::new(),
+        }
     }
 
     fn bounds_turned(&self, turn: &Matrix3<f64>) -> [[f64; 3]; 2] {

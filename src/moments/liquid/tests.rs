@@ -6,27 +6,9 @@ use nalgebra::{Rotation3, Unit};
 use proptest::prelude::*;
 
 use super::*;
+use crate::geometry::box_facets;
 
 type Facets = Vec<[[f64; 3]; 3]>;
-
-/// A box between two corners.
-pub(super) fn block(lo: [f64; 3], hi: [f64; 3]) -> Facets {
-    let c = |n: usize| std::array::from_fn(|k| if n >> k & 1 == 0 { lo[k] } else { hi[k] });
-    let quads = [
-        [0, 2, 3, 1],
-        [4, 5, 7, 6],
-        [0, 1, 5, 4],
-        [2, 6, 7, 3],
-        [0, 4, 6, 2],
-        [1, 3, 7, 5],
-    ];
-    let split = |q: [usize; 4]| [[q[0], q[1], q[2]], [q[0], q[2], q[3]]];
-    quads
-        .into_iter()
-        .flat_map(split)
-        .map(|t| t.map(c))
-        .collect()
-}
 
 /// A prism over a regular polygon about z, standing on z = 0; a corner lies on x.
 fn prism(n: usize, radius: f64, height: f64) -> Facets {
@@ -135,14 +117,14 @@ proptest! {
         let n: [f64; 3] = up.into();
         let h = fill * up.dot(&Vector3::from(size));
         let want = box_below(size, n, h);
-        let vessel = Vessel::new(&block([0.0; 3], size));
+        let vessel = Vessel::new(&box_facets([0.0; 3], size));
         let got = level(&vessel, n, h);
         close(&got.moments, &want, 4.0, 1e-11);
         // And mirrored, so that every octant of attitudes is met.
         let m = Vector3::from(flip.map(|f| if f { -1.0 } else { 1.0 }));
         let mirror = crate::moments::Placement { turn: Matrix3::from_diagonal(&m), at: Vector3::zeros() };
         let [lo, hi] = [Vector3::zeros(), Vector3::from(size).component_mul(&m)];
-        let vessel = Vessel::new(&block(lo.inf(&hi).into(), lo.sup(&hi).into()));
+        let vessel = Vessel::new(&box_facets(lo.inf(&hi).into(), lo.sup(&hi).into()));
         let got = level(&vessel, up.component_mul(&m).into(), h);
         close(&got.moments, &want.placed(&mirror), 4.0, 1e-11);
     }
@@ -280,7 +262,7 @@ fn a_sphere_fills_as_a_cap() {
 /// and rises B²tan²θ/24d, exactly.
 #[test]
 fn a_tilted_box_tank_shifts_its_centroid() {
-    let vessel = Vessel::new(&block([-0.5, -1.0, 0.0], [0.5, 1.0, 1.0]));
+    let vessel = Vessel::new(&box_facets([-0.5, -1.0, 0.0], [0.5, 1.0, 1.0]));
     let a = 10f64.to_radians();
     let l = vessel.levelled(Vector3::new(-a.sin(), 0.0, a.cos()));
     let c = l
@@ -311,7 +293,7 @@ fn the_second_moment_of_the_surface_moves_the_centre() {
 
 #[test]
 fn full_empty_and_flat_levels() {
-    let vessel = Vessel::new(&block([0.0; 3], [1.0, 1.0, 2.0]));
+    let vessel = Vessel::new(&box_facets([0.0; 3], [1.0, 1.0, 2.0]));
     let l = vessel.levelled(Vector3::z());
     assert_eq!((l.low(), l.high()), (-1.0, 1.0));
     assert_eq!(
@@ -402,10 +384,10 @@ fn pools_part_at_a_saddle_only() {
     assert!((pools[0].centroid - Vector3::new(3.0, 0.5, 1.0)).norm() < 1e-12);
 
     // A box with a pillar that stands out of the water and a hollow ball under it.
-    let mut facets = block([0.0; 3], [4.0, 4.0, 4.0]);
+    let mut facets = box_facets([0.0; 3], [4.0, 4.0, 4.0]);
     let inward = |f: Facets| f.into_iter().map(|[a, b, c]| [a, c, b]);
-    facets.extend(inward(block([1.0, 1.0, 0.5], [1.5, 1.5, 3.0])));
-    facets.extend(inward(block([2.5, 2.5, 0.5], [3.0, 3.0, 1.0])));
+    facets.extend(inward(box_facets([1.0, 1.0, 0.5], [1.5, 1.5, 3.0])));
+    facets.extend(inward(box_facets([2.5, 2.5, 0.5], [3.0, 3.0, 1.0])));
     let vessel = Vessel::new(&facets);
     let pools = vessel.levelled(Vector3::z()).pools(2.0 - 2.0);
     near(
