@@ -385,6 +385,12 @@ fn a_worst_narrower_than_a_step_is_found() {
     near(&doc["envelope"]["centre_of_mass_m"][0][0], -0.1, 1e-9);
     near(&doc["envelope"]["centre_of_mass_m"][1][1], 0.1, 1e-9);
 
+    // A limit a millimetre farther out holds, and that is proved: nothing can hide behind it.
+    let doc = bench.answered("drain", &text.replace("99 mm", "101 mm"), &["--steps", "4"]);
+    let l = &doc["limits"][0];
+    assert_eq!(l["verdict"], "holds");
+    near(&l["margin"], 0.001, 1e-9);
+    assert!(number(&l["worst"]["within"]) <= 0.001 + 1e-6, "{l}");
     let text = text.replace(
         "turn = { axis = \"z\" }\nto = \"7200 deg\"",
         "through = [[0, 0, 0], [1, 0, 0], [1, 0.01, 0], [1, 0, 0], [2.5, 0, 0]]",

@@ -160,7 +160,18 @@ fn limits(d: &Drain, unit: LengthUnit, look: Look) -> String {
     let broken = broken
         .filter(|l| l.judged.verdict == Verdict::Broken)
         .count();
+    let unsure = d.limits.iter();
+    let unsure = unsure
+        .filter(|l| l.judged.verdict == Verdict::Unsure)
+        .count();
     let word = match broken {
+        0 if unsure > 0 => look.marked(
+            &format!(
+                "{unsure} of {} limits UNSURE: none was seen to break, and a narrow dip could",
+                d.limits.len()
+            ),
+            Mark::Unsure,
+        ),
         0 => look.marked(
             &format!("all {} limits hold on the whole way", d.limits.len()),
             Mark::Pass,
