@@ -270,8 +270,11 @@ impl Levelled<'_> {
     pub fn liquid(&self, h: f64, turn: &Matrix3<f64>) -> Liquid {
         let vessel = self.vessel;
         if h <= self.low {
+            // The first drop would lie on the lowest corner.
+            let lowest = self.heights.iter().position(|z| *z <= self.low);
+            let lowest = lowest.map_or_else(Vector3::zeros, |n| vessel.points[n]);
             return Liquid {
-                moments: Moments::zero(vessel.middle + self.up * self.low),
+                moments: Moments::zero(vessel.middle + lowest),
                 surface: None,
                 bounds: None,
             };

@@ -308,6 +308,8 @@ fn full_empty_and_flat_levels() {
         (empty.moments.zeroth, empty.surface, empty.bounds),
         (0.0, None, None)
     );
+    // Nothing is taken to be in the lowest corner, so that it widens no box.
+    assert_eq!(empty.moments.about, Vector3::zeros());
     let full = l.liquid(1.0, &turn);
     assert_eq!(full.moments.zeroth, 2.0);
     assert_eq!(full.surface, None);
