@@ -48,6 +48,7 @@ pub mod curvature;
 pub mod error;
 pub mod format;
 pub mod geometry;
+pub mod gravity;
 pub mod limits;
 pub mod masses;
 pub mod material;

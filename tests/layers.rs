@@ -17,7 +17,7 @@ const ROWS: &[&[&str]] = &[
     &["stream"],
     &["curvature", "soundness"],
     &["masses", "material"],
-    &["limits", "uncertainty"],
+    &["gravity", "limits", "uncertainty"],
     &["ballast"],
     &["assembly"],
     &["survey"],

@@ -5,10 +5,11 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use super::expand::Instance;
-use super::file::Part;
+use super::file::MeshChoice;
 use super::listed;
 use super::source::{MeshBody, MeshFiles};
 use crate::error::{Error, Kind, Warning};
+use crate::quantity::LengthUnit;
 
 pub(super) type Bodies = Vec<Arc<dyn MeshBody>>;
 
@@ -26,44 +27,42 @@ pub(super) struct Choice {
     /// Ids of the bodies that some part took, by file.
     taken: BTreeMap<PathBuf, HashSet<String>>,
     /// Bodies that an entry took.
-    chosen: HashMap<*const Part, Bodies>,
+    chosen: HashMap<*const MeshChoice, Bodies>,
     pub(super) errors: Vec<Error>,
 }
 
 impl Choice {
-    /// The bodies of a part.
-    pub(super) fn of(&self, part: &Part) -> Option<&Bodies> {
-        self.chosen.get(&std::ptr::from_ref(part))
+    /// The bodies that the mesh of a part or tank names.
+    pub(super) fn of(&self, mesh: &MeshChoice) -> Option<&Bodies> {
+        self.chosen.get(&std::ptr::from_ref(mesh))
     }
 
-    /// Finds the bodies of a part; once an entry.
+    /// Finds the bodies of a part or tank; once an entry.
     pub(super) fn choose(
         &mut self,
         instance: &Instance<'_>,
-        part: &Part,
+        mesh: &MeshChoice,
+        unit: LengthUnit,
+        join: Option<f64>,
         meshes: &mut dyn MeshFiles,
     ) {
-        let key: *const Part = part;
+        let key: *const MeshChoice = mesh;
         if self.chosen.contains_key(&key) {
             return;
         }
-        let path = &part.mesh.path;
-        let file = (
-            path.clone(),
-            part.unit.symbol(),
-            part.join.map(f64::to_bits),
-        );
+        let path = &mesh.path;
+        let file = (path.clone(), unit.symbol(), join.map(f64::to_bits));
         if !self.files.contains_key(&file) {
             if !self.order.contains(path) {
                 self.order.push(path.clone());
             }
-            let bodies = self.read(part, meshes);
+            let bodies = self.read(path, unit, join, meshes);
             self.files.insert(file.clone(), bodies);
         }
         let Some(Some(bodies)) = self.files.get(&file) else {
             return;
         };
-        let found: Result<Bodies, (Kind, String)> = match &part.mesh.body {
+        let found: Result<Bodies, (Kind, String)> = match &mesh.body {
             None => Ok(bodies.clone()),
             Some(name) => named(bodies, name),
         };
@@ -75,18 +74,23 @@ impl Choice {
             }
             Err((kind, message)) => {
                 let ids: Vec<&str> = bodies.iter().map(|b| b.figures().id.as_str()).collect();
-                let advice = format!("the bodies of `{}` are {}", part.mesh.typed, listed(&ids));
+                let advice = format!("the bodies of `{}` are {}", mesh.typed, listed(&ids));
                 let mut error = instance.error(kind, message, advice);
-                error.line = Some(part.mesh.line);
+                error.line = Some(mesh.line);
                 self.errors.push(error);
                 self.chosen.insert(key, Vec::new());
             }
         }
     }
 
-    fn read(&mut self, part: &Part, meshes: &mut dyn MeshFiles) -> Option<Bodies> {
-        let path: &Path = &part.mesh.path;
-        match meshes.bodies(path, part.unit, part.join) {
+    fn read(
+        &mut self,
+        path: &Path,
+        unit: LengthUnit,
+        join: Option<f64>,
+        meshes: &mut dyn MeshFiles,
+    ) -> Option<Bodies> {
+        match meshes.bodies(path, unit, join) {
             Ok(bodies) if bodies.is_empty() => {
                 self.errors.push(
                     Error::new(

@@ -7,6 +7,7 @@ use std::rc::Rc;
 use nalgebra::{Matrix3, Vector3};
 
 use super::file::{AssemblyFile, Entry, Item, Part, Position, Turn};
+use super::service::Tank;
 use crate::error::{Error, Kind};
 use crate::moments::Placement;
 
@@ -44,11 +45,12 @@ pub(super) struct Level<'f> {
     pub(super) path: Rc<str>,
 }
 
-/// A part or an item.
+/// A part, an item or a tank.
 #[derive(Clone, Copy, Debug)]
 pub(super) enum What<'f> {
     Part(&'f Part),
     Item(&'f Item),
+    Tank(&'f Tank),
 }
 
 /// A file, and where the paths that are its own begin within a path of the assembly.
@@ -70,6 +72,7 @@ impl<'f> Instance<'f> {
         match self.what {
             What::Part(p) => p.line,
             What::Item(i) => i.line,
+            What::Tank(t) => t.line,
         }
     }
 
@@ -171,7 +174,7 @@ pub(super) fn faults(file: &AssemblyFile) -> Vec<Error> {
 fn count(entries: &[Entry]) -> u64 {
     entries.iter().fold(0_u64, |sum, entry| {
         let each = match entry {
-            Entry::Part(_) | Entry::Item(_) => 1,
+            Entry::Part(_) | Entry::Item(_) | Entry::Tank(_) => 1,
             Entry::Group(g) => {
                 let included = g.include.as_ref().map_or(0, |f| count(&f.entries));
                 count(&g.entries).saturating_add(included)
@@ -179,6 +182,55 @@ fn count(entries: &[Entry]) -> u64 {
         };
         sum.saturating_add(each.saturating_mul(entry.position().at.len() as u64))
     })
+}
+
+/// An entry where it stands, groups included: what a case moves.
+#[derive(Clone, Debug)]
+pub(super) struct Node {
+    pub(super) path: String,
+    pub(super) entry_path: String,
+    /// From the frame that `at` is in to the assembly's.
+    pub(super) outer: Placement,
+    pub(super) at: Vector3<f64>,
+}
+
+/// Every entry of the assembly, in file order, each group before what stands in it.
+pub(super) fn nodes(file: &AssemblyFile) -> Vec<Node> {
+    let mut out = Vec::new();
+    name_nodes(&file.entries, &Placement::identity(), "", "", &mut out);
+    out
+}
+
+fn name_nodes(
+    entries: &[Entry],
+    outer: &Placement,
+    path: &str,
+    entry_path: &str,
+    out: &mut Vec<Node>,
+) {
+    for entry in entries {
+        for (n, own) in entry.position().placements().enumerate() {
+            let name = entry.name();
+            let node = Node {
+                path: match n {
+                    0 => format!("{path}{name}"),
+                    n => format!("{path}{name}#{}", n + 1),
+                },
+                entry_path: format!("{entry_path}{name}"),
+                outer: *outer,
+                at: own.at,
+            };
+            let (inner, inner_entry) = (format!("{}/", node.path), format!("{}/", node.entry_path));
+            out.push(node);
+            if let Entry::Group(group) = entry {
+                let here = own.then(outer);
+                name_nodes(&group.entries, &here, &inner, &inner_entry, out);
+                if let Some(file) = &group.include {
+                    name_nodes(&file.entries, &here, &inner, &inner_entry, out);
+                }
+            }
+        }
+    }
 }
 
 /// Every thing of the assembly, in file order.
@@ -233,6 +285,7 @@ fn walk<'f>(entries: &'f [Entry], here: &Place<'f>, out: &mut Vec<Instance<'f>>)
             let what = match entry {
                 Entry::Part(p) => What::Part(p),
                 Entry::Item(i) => What::Item(i),
+                Entry::Tank(t) => What::Tank(t),
                 Entry::Group(group) => {
                     let groups = here.groups.iter().cloned().chain([path.clone()]).collect();
                     let mut inside = Place {

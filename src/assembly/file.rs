@@ -5,7 +5,9 @@ use std::path::PathBuf;
 use globset::GlobMatcher;
 use nalgebra::Vector3;
 
+use super::service::{ServiceKeys, Tank};
 use crate::limits::Limit;
+use crate::moments::Grading;
 use crate::printed::Made;
 use crate::quantity::{LengthUnit, Quantity};
 use crate::statics::{Line, Stand};
@@ -25,6 +27,8 @@ pub struct AssemblyFile {
     pub entries: Vec<Entry>,
     /// The limits, one a quantity, in file order.
     pub limits: Vec<Limit>,
+    /// Gravity, cases, motions, phases and frames.
+    pub service: ServiceKeys,
     /// Mass that no mesh shows, in file order.
     pub smears: Vec<SmearEntry>,
     /// Where it stands, if that is stated.
@@ -33,10 +37,6 @@ pub struct AssemblyFile {
     pub hang: Option<Hang>,
     /// Where ballast may go.
     pub ballast: Vec<BallastPlace>,
-    /// Size of gravity, m/s².
-    pub gravity: f64,
-    /// Against gravity, a unit vector.
-    pub up: Vector3<f64>,
 }
 
 /// A place that ballast may be put at.
@@ -143,6 +143,8 @@ pub enum Entry {
     Part(Box<Part>),
     /// A bought-in thing of stated mass.
     Item(Box<Item>),
+    /// A tank with liquid in it.
+    Tank(Box<Tank>),
     /// Entries under a placement of their own.
     Group(Box<Group>),
 }
@@ -153,6 +155,7 @@ impl Entry {
         match self {
             Self::Part(p) => &p.name,
             Self::Item(i) => &i.name,
+            Self::Tank(t) => &t.name,
             Self::Group(g) => &g.name,
         }
     }
@@ -162,6 +165,7 @@ impl Entry {
         match self {
             Self::Part(p) => &p.position,
             Self::Item(i) => &i.position,
+            Self::Tank(t) => &t.position,
             Self::Group(g) => &g.position,
         }
     }
@@ -171,6 +175,7 @@ impl Entry {
         match self {
             Self::Part(p) => p.line,
             Self::Item(i) => i.line,
+            Self::Tank(t) => t.line,
             Self::Group(g) => g.line,
         }
     }
@@ -238,6 +243,30 @@ pub struct Part {
     pub each: Each,
     /// How far along it is.
     pub maturity: Option<Maturity>,
+    /// Its mass is this thickness of sheet over its surface, not what its mesh holds, m.
+    pub sheet: Option<Quantity>,
+    /// What coats its surface.
+    pub coating: Option<Coating>,
+    /// A density that varies along an axis of the mesh file.
+    pub graded: Option<Graded>,
+}
+
+/// A coat on a surface.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Coating {
+    /// m.
+    pub thickness: Quantity,
+    /// What it is.
+    pub material: Substance,
+}
+
+/// A density that varies along an axis.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Graded {
+    /// Stations from the mesh file's origin, m; kg/m³.
+    pub grading: Grading,
+    /// A name for it.
+    pub material: Option<String>,
 }
 
 /// A mesh file and, of its bodies, all or those of one name.

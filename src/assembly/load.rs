@@ -11,7 +11,7 @@ use sha2::{Digest as _, Sha256};
 use super::expand;
 use super::file::{AssemblyFile, MeshChoice};
 use super::reader::Shared;
-use super::{read, smear, tree};
+use super::{read, service, smear, tree};
 use crate::error::{Error, Kind, Warning};
 
 /// The deepest nesting of groups and included files.
@@ -56,6 +56,7 @@ pub fn load(path: &Path) -> Result<Loaded, Vec<Error>> {
     };
     errors.extend(expand::faults(&file));
     if errors.is_empty() {
+        errors.extend(service::faults(&file));
         errors.extend(smear::faults(&file));
     }
     if !errors.is_empty() {
@@ -110,6 +111,18 @@ impl Loader {
         let file = read::file(&mut shared, &entries, self);
         self.open.pop();
         self.errors[slot] = shared.take_faults();
+        if let (true, Some(line)) = (depth > 0, file.service.first_line()) {
+            self.warnings.push(Warning {
+                kind: "service-ignored".into(),
+                message:
+                    "gravity, cases, motions, phases and frames of an included file are not used"
+                        .into(),
+                path: Some(path.to_string_lossy().into_owned()),
+                line: Some(line),
+                advice: "state them in the outer file, with the paths that things have there"
+                    .into(),
+            });
+        }
         if depth > 0 && !file.limits.is_empty() {
             let names: Vec<&str> = file.limits.iter().map(|l| l.name.as_str()).collect();
             self.warnings.push(Warning {

@@ -40,10 +40,12 @@ mod reader;
 mod resolve;
 mod rollup;
 mod schema;
+pub mod service;
 mod shape;
 mod smear;
 mod source;
 mod sources;
+mod spread;
 mod standing;
 mod substance;
 mod sum;
@@ -56,8 +58,8 @@ mod tests;
 
 pub use expect::Expectation;
 pub use file::{
-    AssemblyFile, Assign, BallastPlace, Each, Entry, Expect, Group, Hang, Item, Maturity,
-    MeshChoice, Part, Pattern, Position, Shape, SmearEntry, SmearMass, Substance, Turn,
+    AssemblyFile, Assign, BallastPlace, Coating, Each, Entry, Expect, Graded, Group, Hang, Item,
+    Maturity, MeshChoice, Part, Pattern, Position, Shape, SmearEntry, SmearMass, Substance, Turn,
 };
 pub use growth::{Growth, MaturityRow, Standing};
 pub use load::{DEEPEST, Input, Loaded, load};

@@ -6,6 +6,7 @@ use super::assign::Used;
 use super::expand::Instance;
 use super::file::{AssemblyFile, Entry, Part};
 use super::load::Loaded;
+use super::spread;
 use crate::error::Warning;
 
 /// A measured part whose implied density lies well away from that of its material. Spreads of
@@ -37,6 +38,30 @@ pub(super) fn odd_density(
             "check the scale, the material and whether `{}` is the part that was weighed",
             part.mesh.typed
         ),
+    ))
+}
+
+/// A sheet or coat that is not thin against its body: the first order may not do.
+pub(super) fn thick_skin(
+    instance: &Instance<'_>,
+    part: &Part,
+    bodies: &super::choose::Bodies,
+) -> Option<Warning> {
+    let thickness = part.sheet.or(part.coating.as_ref().map(|c| c.thickness))?;
+    let ratio = bodies
+        .iter()
+        .filter_map(|b| spread::thick(b, thickness.value))
+        .reduce(f64::max)?;
+    Some(warning(
+        instance,
+        "thick-skin",
+        format!(
+            "the sheet or coating of `{}` is {:.1} % of the least side of its box; its mass is \
+             surface times thickness, the first order only",
+            instance.path,
+            100.0 * ratio
+        ),
+        "model its thickness in the mesh where the figures must be better than that",
     ))
 }
 

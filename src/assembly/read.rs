@@ -5,7 +5,9 @@ use std::path::Path;
 
 use globset::GlobBuilder;
 
-use super::file::{AssemblyFile, Assign, Each, Entry, Expect, Group, Item, Part, Pattern};
+use super::file::{
+    AssemblyFile, Assign, Each, Entry, Expect, Group, Item, MeshChoice, Part, Pattern,
+};
 use super::growth::{self, Allowances};
 use super::load::Loader;
 use super::made;
@@ -14,8 +16,10 @@ use super::read_ballast;
 use super::read_limits;
 use super::read_statics;
 use super::reader::{Reader, Shared};
+use super::service::{self, Tank};
 use super::shape;
 use super::smear;
+use super::spread;
 use super::substance::{self, OwnMaterials};
 use super::tree;
 use crate::curvature::Reading;
@@ -78,7 +82,8 @@ pub(super) fn file(
     };
     let entries = context.entries(&root, 0);
     let ballast = read_ballast::read(&root, &mut context);
-    let standing = read_statics::supports(&root);
+    let service = service::read(&root);
+    let standing = read_statics::supports(&root, &service.gravity);
     let hang = read_statics::hang(&root);
     let limits = read_limits::read(&root, &standing);
     let smears = smear::read(&root);
@@ -90,11 +95,10 @@ pub(super) fn file(
         assigns,
         entries,
         limits,
+        service,
         stand: standing.stand,
         hang,
         ballast,
-        gravity: standing.gravity,
-        up: standing.up,
         smears,
     }
 }
@@ -165,7 +169,7 @@ pub(super) fn pattern(r: &Reader<'_, '_>, key: &'static str) -> Option<Pattern> 
 }
 
 impl Context<'_, '_> {
-    /// The parts, items and groups of a table, in file order.
+    /// The parts, items, tanks and groups of a table, in file order.
     fn entries(&mut self, r: &Reader<'_, '_>, depth: usize) -> Vec<Entry> {
         let mut entries = Vec::new();
         for part in r.tables("part") {
@@ -175,6 +179,10 @@ impl Context<'_, '_> {
         for item in r.tables("item") {
             let at = item.offset;
             entries.extend(self.item(item).map(|i| (at, Entry::Item(Box::new(i)))));
+        }
+        for tank in r.tables("tank") {
+            let at = tank.offset;
+            entries.extend(self.tank(tank).map(|t| (at, Entry::Tank(Box::new(t)))));
         }
         for group in r.tables("group") {
             let at = group.offset;
@@ -204,7 +212,14 @@ impl Context<'_, '_> {
     fn part(&mut self, r: Reader<'_, '_>) -> Option<Part> {
         let name = r.text("name").map(|(name, _)| name);
         let unit = length_unit(&r, "unit").unwrap_or(self.shared.unit);
-        let material = substance::chosen(&r, self.own);
+        // A graded part's density is its own: `material` only names it then.
+        let material = match r.entry("graded") {
+            Some(_) => {
+                r.text("material");
+                None
+            }
+            None => substance::chosen(&r, self.own),
+        };
         let position = position::read(&r, true);
         let measured = measured(&r);
         let accept_open = r.exactly("accept-open", Dimension::Fraction);
@@ -214,6 +229,7 @@ impl Context<'_, '_> {
         let expect = expect(&r);
         let each = each(&r);
         let maturity = self.allowances.maturity(&r);
+        let (sheet, coating, graded) = spread::read(&r, self.own);
         let mesh = r
             .text("mesh")
             .and_then(|(typed, line)| self.loader.mesh(self.shared, &typed, line));
@@ -227,13 +243,9 @@ impl Context<'_, '_> {
         let line = r.line;
         r.finish();
         let mesh = mesh?;
-        let default = || {
-            let stem = || crate::format::stem(Path::new(&mesh.typed));
-            mesh.body.clone().unwrap_or_else(stem)
-        };
         Some(Part {
             line,
-            name: name.unwrap_or_else(default),
+            name: name.unwrap_or_else(|| default_name(&mesh)),
             mesh,
             unit,
             material,
@@ -246,6 +258,9 @@ impl Context<'_, '_> {
             expect,
             each,
             maturity,
+            sheet,
+            coating,
+            graded,
         })
     }
 
@@ -276,6 +291,51 @@ impl Context<'_, '_> {
         })
     }
 
+    fn tank(&mut self, r: Reader<'_, '_>) -> Option<Tank> {
+        let name = r.text("name").map(|(name, _)| name);
+        let unit = length_unit(&r, "unit").unwrap_or(self.shared.unit);
+        let liquid = substance::chosen_by(&r, "liquid", self.own);
+        let fill = r.entry("fill");
+        let position = position::read(&r, true);
+        let each = each(&r);
+        let mesh = r
+            .text("mesh")
+            .and_then(|(typed, line)| self.loader.mesh(self.shared, &typed, line));
+        let examples = [
+            (
+                "mesh",
+                "name the mesh of its inside: mesh = \"tank-inside.stl\"",
+            ),
+            (
+                "liquid",
+                "name what is in it, as a material: liquid = \"water\"",
+            ),
+            (
+                "fill",
+                "say how full it is: fill = \"60 %\", \"32 l\", \"30 kg\" or a level",
+            ),
+        ];
+        for (key, advice) in examples {
+            if r.entry(key).is_none() {
+                r.missing(key, Kind::Usage, advice);
+            }
+        }
+        let fill = fill.and_then(|e| service::fill(r.shared, &e.node, "fill"));
+        let line = r.line;
+        r.finish();
+        let mesh = mesh?;
+        Some(Tank {
+            line,
+            name: name.unwrap_or_else(|| default_name(&mesh)),
+            mesh,
+            unit,
+            liquid: liquid?,
+            fill: fill?,
+            position,
+            each,
+        })
+    }
+
     fn group(&mut self, r: Reader<'_, '_>, depth: usize) -> Option<Group> {
         let name = r.text("name").map(|(name, _)| name);
         let position = position::read(&r, true);
@@ -289,7 +349,7 @@ impl Context<'_, '_> {
         };
         if deep {
             // Not read, and not unknown either.
-            for key in ["part", "item", "group"] {
+            for key in ["part", "item", "tank", "group"] {
                 r.entry(key);
             }
         }
@@ -318,6 +378,14 @@ impl Context<'_, '_> {
             include,
         })
     }
+}
+
+/// What an unnamed entry is called: its body, or else the stem of its mesh file.
+fn default_name(mesh: &MeshChoice) -> String {
+    mesh.body.clone().unwrap_or_else(|| {
+        let stem = Path::new(&mesh.typed).file_stem().unwrap_or_default();
+        stem.to_string_lossy().into_owned()
+    })
 }
 
 fn named(r: &Reader<'_, '_>) -> Option<String> {

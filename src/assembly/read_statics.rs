@@ -15,11 +15,9 @@ use nalgebra::Vector3;
 
 use super::file::Hang;
 use super::reader::Reader;
+use super::service::Gravity;
 use crate::error::Kind;
 use crate::statics::{Line, Stand, Support};
-
-/// Standard gravity, m/s² (CGPM 1901).
-const STANDARD_GRAVITY: f64 = 9.80665;
 
 /// The supports of a file, with the gravity that acts there.
 #[derive(Clone, Debug)]
@@ -65,12 +63,16 @@ fn placed(r: Reader<'_, '_>, taken: &mut Vec<String>) -> Option<(String, Vector3
 }
 
 /// Reads every `[[support]]`.
-pub(super) fn supports(root: &Reader<'_, '_>) -> Standing {
+///
+/// They stand against effective gravity: the file's field at the assembly's origin, less the
+/// assembly's own acceleration.
+pub(super) fn supports(root: &Reader<'_, '_>, gravity: &Gravity) -> Standing {
+    let effective = gravity.effective();
     let mut out = Standing {
         stand: None,
         faulty: false,
-        gravity: STANDARD_GRAVITY,
-        up: Vector3::z(),
+        gravity: effective.map_or(0.0, |g| g.norm()),
+        up: effective.map_or(Vector3::z(), |g| -g.normalize()),
     };
     let tables = root.tables("support");
     let Some(line) = tables.first().map(|t| t.line) else {

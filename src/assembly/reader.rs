@@ -14,9 +14,7 @@ use crate::error::{Error, Kind};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 
 /// Keys that a file may hold for questions which this version does not answer.
-const NOT_READ: &[&str] = &[
-    "case", "drain", "frame", "gravity", "motion", "phase", "tank",
-];
+const NOT_READ: &[&str] = &[];
 
 /// What the readers of one file share.
 pub(super) struct Shared<'p> {
@@ -335,7 +333,7 @@ pub(super) fn lengths(shared: &Shared<'_>, node: &Node, key: &str) -> Option<[Qu
     None
 }
 
-fn direction(node: &Node) -> Option<Vector3<f64>> {
+pub(super) fn direction(node: &Node) -> Option<Vector3<f64>> {
     match &node.value {
         Value::Text(s) => match s.trim().to_lowercase().as_str() {
             "x" => Some(Vector3::x()),

@@ -11,19 +11,21 @@ use super::assign::{self, Used};
 use super::choose::{Bodies, Choice};
 use super::expand::{self, Instance, What};
 use super::expect::{self, Expectation};
-use super::file::{Part, Substance};
+use super::file::{Coating, Part, Substance};
 use super::load::{Input, Loaded};
 use super::open::Capped;
 use super::open::{self, MassBounds};
 use super::overlap::Stand;
 use super::printing::{self, Printing};
+use super::service::{self, Contents, Service, State, Tank};
 use super::smear::{self, Smeared};
 use super::source::{MeshBody, MeshFiles};
-use super::{listed, notes, sum};
+use super::{listed, notes, spread, sum};
 use crate::curvature::Reading;
 use crate::error::{Error, Kind, Warning};
 use crate::masses::PrintFigures;
 use crate::moments::Moments;
+use crate::moments::liquid::Vessel;
 
 /// Where a mass comes from.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize)]
@@ -98,6 +100,8 @@ pub struct Weighed {
     pub stands: Vec<Stand>,
     /// Their sum.
     pub moments: Moments,
+    /// Its mass is not spread evenly through its bodies: sheet, coated, or graded.
+    pub uneven: bool,
     /// How far its figures may be off, where its mesh is open.
     pub estimate: Option<MassBounds>,
     /// What its facets do; none for items, parts whose facets are what is meant, and where it is not
@@ -128,6 +132,10 @@ pub struct Resolved {
     pub inputs: Vec<Input>,
     /// What the smears among `weighed` cover.
     pub smears: Vec<Smeared>,
+    /// The same things in any state; none where a body cannot be weighed.
+    pub service: Option<Service>,
+    /// The state that `weighed` is in.
+    pub state: Option<State>,
 }
 
 /// Weighs every thing of an assembly.
@@ -139,8 +147,14 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
     let instances = expand::expand(&loaded.file);
     let mut work = Work::default();
     for instance in &instances {
-        if let What::Part(part) = instance.what {
-            work.choice.choose(instance, part, meshes);
+        match instance.what {
+            What::Part(part) => work
+                .choice
+                .choose(instance, &part.mesh, part.unit, part.join, meshes),
+            What::Tank(tank) => work
+                .choice
+                .choose(instance, &tank.mesh, tank.unit, None, meshes),
+            What::Item(_) => {}
         }
     }
     if !work.choice.errors.is_empty() {
@@ -153,7 +167,10 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
         warnings: loaded.warnings.clone(),
         inputs: loaded.inputs.clone(),
         smears: Vec::new(),
+        service: None,
+        state: None,
     };
+    let mut tanks = Vec::new();
     for instance in &instances {
         let weighed = match instance.what {
             What::Item(item) => {
@@ -174,6 +191,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                     }],
                     stands: Vec::new(),
                     moments,
+                    uneven: false,
                     volume: None,
                     implied_density: None,
                     made: None,
@@ -181,15 +199,32 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                 })
             }
             What::Part(part) => work.part(instance, part, &mut out),
+            What::Tank(tank) => work.tank(instance, tank, &mut tanks, &mut out),
         };
         out.weighed.extend(weighed);
     }
     if !work.errors.is_empty() {
         return Err(work.errors);
     }
+    if out.refused.is_empty() {
+        let all = std::mem::take(&mut out.weighed);
+        let smears = smear::planned(&instances);
+        let service = Service::new(loaded, &instances, all, smears, tanks, |i| match i.what {
+            What::Part(part) => work.choice.of(&part.mesh).cloned().unwrap_or_default(),
+            _ => Vec::new(),
+        });
+        let rest = service.rest(None).map_err(|e| vec![e])?;
+        (out.weighed, out.smears) = service.weighed(&rest).map_err(|e| vec![e])?;
+        out.warnings.extend(service::notes(
+            &service,
+            loaded,
+            std::slice::from_ref(&rest),
+        ));
+        out.state = Some(rest);
+        out.service = Some(service);
+    }
     work.choice.unused_bodies(&mut out.warnings);
     notes::unused_rules(loaded, &work.used, &mut out.warnings);
-    smear::weigh(&instances, &mut out);
     for path in &work.choice.order {
         out.inputs.extend(meshes.input(path));
         out.inputs.extend(meshes.beside(path));
@@ -210,6 +245,8 @@ struct Work {
     printing: Printing,
     /// Entries whose warnings have been given.
     said: HashSet<*const Part>,
+    /// Insides of tanks by entry: repeats hold alike.
+    vessels: HashMap<*const Tank, Arc<Vessel>>,
     errors: Vec<Error>,
 }
 
@@ -223,19 +260,26 @@ impl Work {
     ) -> Option<Weighed> {
         let key: *const Part = part;
         let first = self.said.insert(key);
-        let bodies = self.choice.of(part)?.clone();
+        let bodies = self.choice.of(&part.mesh)?.clone();
         let mut refused = false;
         for body in &bodies {
             let figures = body.figures();
             let volume = moments_of(body, part).zeroth;
             let why = match &figures.refused {
+                // A sheet is its surface: it need not hold anything.
+                _ if part.sheet.is_some() && figures.area > 0.0 => None,
                 Some(_) if accepted(body, part).is_some() => None,
                 Some(r) => Some((r.message.clone(), open_advice(body, part, &r.advice))),
                 None if !(volume > 0.0 && volume.is_finite()) => Some((
                     format!("its volume is {volume:e} m³"),
                     "check the mesh".to_string(),
                 )),
-                None => None,
+                None => spread::hollow(body, part).map(|why| {
+                    (
+                        why,
+                        "check the stations and densities of `graded`".to_string(),
+                    )
+                }),
             };
             let Some((why, advice)) = why else { continue };
             refused = true;
@@ -261,7 +305,7 @@ impl Work {
             }
         };
         let measured_kg = part.measured.map(|m| m.value);
-        let volume = sum::sum(bodies.iter().map(|b| moments_of(b, part).zeroth));
+        let volume = sum::sum(bodies.iter().map(|b| spread::volume(b, part)));
         // Mass moments in the mesh file's axes. Without densities the measured mass is spread
         // evenly over the volume.
         let computed: Vec<Moments> = bodies
@@ -273,13 +317,19 @@ impl Work {
                     return printing::mass_of(printed, material.as_ref());
                 }
                 let density = material.as_ref().map_or(1.0, |m| m.density.value);
-                moments_of(body, part).weighted(density)
+                spread::mass(body, part, density)
             })
             .collect();
         let made = printed
             .as_ref()
             .and_then(|all| printing::figures(all, &bodies, &materials, measured_kg));
-        let computed_mass = sum::sum(computed.iter().map(|m| m.zeroth));
+        let coats: Vec<(&Coating, Moments)> = part
+            .coating
+            .iter()
+            .flat_map(|c| bodies.iter().map(move |b| (c, spread::coat(b, c))))
+            .collect();
+        let all = computed.iter().chain(coats.iter().map(|(_, m)| m));
+        let computed_mass = sum::sum(all.clone().map(|m| m.zeroth));
         let known = materials.iter().all(Option::is_some);
         let factor = part.measured.map_or(1.0, |m| m.value / computed_mass);
         if let (Some(made), true) = (&made, first) {
@@ -290,7 +340,7 @@ impl Work {
             let table = computed_mass / volume;
             let spread = sum::sum(materials.iter().zip(&bodies).map(|(m, b)| {
                 let tolerance = m.as_ref().and_then(|m| m.density.tolerance);
-                tolerance.map_or(0.0, |t| t.amount) * moments_of(b, part).zeroth / volume
+                tolerance.map_or(0.0, |t| t.amount) * spread::volume(b, part) / volume
             }));
             out.warnings.extend(notes::odd_density(
                 instance,
@@ -301,7 +351,11 @@ impl Work {
             ));
         }
         self.twice(instance, part, &bodies, &mut out.warnings);
-        let own = sum::total(computed.iter());
+        if first {
+            out.warnings
+                .extend(notes::thick_skin(instance, part, &bodies));
+        }
+        let own = sum::total(all);
         if let Some(expect) = &part.expect {
             let figures = expect::Figures {
                 volume,
@@ -321,7 +375,7 @@ impl Work {
                 }
             }
         }
-        let pieces: Vec<Piece> = materials
+        let mut pieces: Vec<Piece> = materials
             .into_iter()
             .zip(&computed)
             .map(|(material, moments)| Piece {
@@ -329,6 +383,11 @@ impl Work {
                 moments: moments.weighted(factor).placed(&instance.placement),
             })
             .collect();
+        // Coats stand behind the bodies: what pairs bodies with pieces ends before them.
+        pieces.extend(coats.iter().map(|(coating, moments)| Piece {
+            material: Some(coating.material.clone()),
+            moments: moments.weighted(factor).placed(&instance.placement),
+        }));
         let moments = match pieces.as_slice() {
             [one] => one.moments,
             _ => sum::total(pieces.iter().map(|p| &p.moments)),
@@ -365,7 +424,7 @@ impl Work {
         let stands = bodies
             .iter()
             .zip(&pieces)
-            .filter(|(b, _)| b.figures().refused.is_none())
+            .filter(|(b, _)| b.figures().refused.is_none() && part.sheet.is_none())
             .map(|(b, p)| Stand {
                 body: b.clone(),
                 placement: instance.placement,
@@ -401,12 +460,57 @@ impl Work {
                 (None, None) => Basis::Computed,
             },
             pieces,
+            uneven: part.sheet.is_some() || part.coating.is_some() || part.graded.is_some(),
             moments,
             volume: Some(volume),
             implied_density: part.measured.map(|m| m.value / volume),
             made,
             bounds,
         })
+    }
+
+    /// A tank where it stands, still empty; `None` where its inside has no volume, which is then
+    /// said.
+    fn tank(
+        &mut self,
+        instance: &Instance<'_>,
+        tank: &Tank,
+        tanks: &mut Vec<Contents>,
+        out: &mut Resolved,
+    ) -> Option<Weighed> {
+        let key: *const Tank = tank;
+        let bodies = self.choice.of(&tank.mesh)?.clone();
+        let first = !self.vessels.contains_key(&key);
+        let mut refused = false;
+        for body in &bodies {
+            let figures = body.figures();
+            let (why, advice) = match &figures.refused {
+                Some(r) => (r.message.clone(), r.advice.clone()),
+                None if figures.moments.zeroth > 0.0 => continue,
+                None => ("it holds nothing".to_owned(), "check the mesh".to_owned()),
+            };
+            refused = true;
+            if first {
+                let message = format!(
+                    "tank `{}`: body `{}` of `{}` cannot be filled: {why}",
+                    instance.path, figures.id, tank.mesh.typed
+                );
+                let mut error = instance.error(Kind::NotClosed, message, advice);
+                error.line = Some(tank.mesh.line);
+                out.refused.push(error);
+            }
+        }
+        let vessel = self.vessels.entry(key).or_insert_with(|| {
+            let facets: Vec<_> = bodies.iter().flat_map(|b| b.facets()).collect();
+            Arc::new(Vessel::new(&facets))
+        });
+        if refused {
+            return None;
+        }
+        let (weighed, contents) =
+            service::weighed_tank(instance, tank, Arc::clone(vessel), &bodies);
+        tanks.push(contents);
+        Some(weighed)
     }
 
     /// The material of each body of a part. All `None` only for a measured part that names none.
@@ -416,6 +520,13 @@ impl Work {
         part: &Part,
         bodies: &Bodies,
     ) -> Option<Vec<Option<Substance>>> {
+        if let Some(graded) = &part.graded {
+            let of = bodies.iter();
+            return Some(
+                of.map(|b| Some(spread::substance(b, part, graded)))
+                    .collect(),
+            );
+        }
         let mut materials = Vec::with_capacity(bodies.len());
         let mut without = Vec::new();
         let mut fault = false;
@@ -543,7 +654,7 @@ fn accepted<'b>(body: &'b Arc<dyn MeshBody>, part: &Part) -> Option<&'b Capped> 
     (capped.volume_bound <= most).then_some(capped)
 }
 
-fn moments_of(body: &Arc<dyn MeshBody>, part: &Part) -> Moments {
+pub(super) fn moments_of(body: &Arc<dyn MeshBody>, part: &Part) -> Moments {
     if let Some(capped) = accepted(body, part) {
         return capped.moments;
     }

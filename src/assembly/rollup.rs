@@ -9,11 +9,12 @@ use super::load::Loaded;
 use super::open::{self, MassBounds};
 use super::overlap::{self, Overlap};
 use super::resolve::{Basis, Resolved, Source, Weighed, around};
+use super::service::Seen;
 use super::standing::{self, Statics};
 use super::sum;
 use super::sure::Sure;
 use crate::error::{Error, Kind, Warning};
-use crate::limits::{Judged, Verdict};
+use crate::limits::{Judged, Measured, Verdict};
 use crate::masses::PrintFigures;
 use crate::moments::{Moments, principal};
 use crate::progress::Progress;
@@ -271,14 +272,26 @@ pub fn balance_with(
         sure.sample(&loaded.file.limits, sampling);
     }
     let sure = sure.as_ref();
-    let limits = total.as_ref().map_or_else(Vec::new, |total| {
-        let limits = loaded.file.limits.iter();
-        limits.map(|limit| judged(limit, total, sure)).collect()
-    });
+    let limits = match &total {
+        None => Vec::new(),
+        Some(total) => {
+            let seen = seen(loaded, resolved).map_err(|e| vec![e])?;
+            let limits = loaded.file.limits.iter().zip(&seen);
+            limits
+                .map(|(limit, seen)| judged(limit, total, seen, sure))
+                .collect()
+        }
+    };
     let (statics, warnings) = match &total {
         Some(t) => {
             let centre = Vector3::from(t.centre_of_mass_m);
-            standing::statics(&loaded.file, t.mass_kg, &mut |_| Ok(centre)).map_err(|e| vec![e])?
+            let mut centre_at = |down: &Vector3<f64>| match (&resolved.service, &resolved.state) {
+                (Some(service), Some(state)) if !service.tanks().is_empty() => {
+                    service.centre_when(state, down)
+                }
+                _ => Ok(centre),
+            };
+            standing::statics(&loaded.file, t.mass_kg, &mut centre_at).map_err(|e| vec![e])?
         }
         None => Default::default(),
     };
@@ -307,15 +320,39 @@ pub fn balance_with(
     })
 }
 
-fn judged(limit: &crate::limits::Limit, total: &Total, sure: Option<&Sure>) -> Judged {
+/// What the limits of the file need to know of the state beyond its moments.
+fn seen(loaded: &Loaded, resolved: &Resolved) -> Result<Vec<Seen>, Error> {
+    let limits = loaded.file.limits.iter();
+    let (Some(service), Some(state)) = (&resolved.service, &resolved.state) else {
+        return Ok(limits.map(|_| Seen::default()).collect());
+    };
+    let snapshot = service.at(state)?;
+    limits
+        .map(|l| service.seen(l, state, &snapshot, loaded.file.stand.as_ref()))
+        .collect()
+}
+
+pub(super) fn judged(
+    limit: &crate::limits::Limit,
+    total: &Total,
+    seen: &Seen,
+    sure: Option<&Sure>,
+) -> Judged {
     let [lo, hi] = total.bounds_m.map(Vector3::from);
     let diagonal = (hi - lo).norm();
     let stated = limit.judge_whole(&total.moments, diagonal);
-    let value = stated.value;
-    let judged = match sure.and_then(|s| s.predicted(&limit.quantity)) {
-        Some(predicted) => {
+    let value = seen.slope.unwrap_or(stated.value);
+    // The margin of a mass limit is that of the predicted mass.
+    let predicted = seen
+        .predicted_kg
+        .filter(|_| limit.quantity == Measured::Mass);
+    let judged = match predicted.or(seen.slope) {
+        Some(figure) => {
             let rounding = limit.quantity.rounding(&total.moments, diagonal);
-            limit.judge(predicted, rounding)
+            Judged {
+                basic: predicted.map(|_| stated.value),
+                ..limit.judge(figure, rounding)
+            }
         }
         None => stated,
     };
@@ -326,7 +363,7 @@ fn judged(limit: &crate::limits::Limit, total: &Total, sure: Option<&Sure>) -> J
     }
 }
 
-fn total(weighed: &[Weighed]) -> Result<Total, Error> {
+pub(super) fn total(weighed: &[Weighed]) -> Result<Total, Error> {
     let moments = sum::total(weighed.iter().map(|w| &w.moments));
     let mass = moments.zeroth;
     if mass == 0.0 {
@@ -371,11 +408,11 @@ fn not_finite() -> Error {
 }
 
 /// −0 is written as 0.
-fn plain(v: Vector3<f64>) -> [f64; 3] {
+pub(super) fn plain(v: Vector3<f64>) -> [f64; 3] {
     [v.x + 0.0, v.y + 0.0, v.z + 0.0]
 }
 
-fn rows(m: &Matrix3<f64>) -> [[f64; 3]; 3] {
+pub(super) fn rows(m: &Matrix3<f64>) -> [[f64; 3]; 3] {
     std::array::from_fn(|r| std::array::from_fn(|c| m[(r, c)] + 0.0))
 }
 

@@ -77,8 +77,20 @@ struct AssemblyFile {
     part: Option<Vec<Part>>,
     /// Bought-in things of stated mass.
     item: Option<Vec<Item>>,
-    /// Parts, items and groups under a placement of their own.
+    /// Tanks with liquid in them.
+    tank: Option<Vec<Tank>>,
+    /// Parts, items, tanks and groups under a placement of their own.
     group: Option<Vec<Group>>,
+    /// The field, and what else accelerates the assembly; standard gravity along −z where left out.
+    gravity: Option<Gravity>,
+    /// States of loading.
+    case: Option<Vec<Case>>,
+    /// What moves in service.
+    motion: Option<Vec<Motion>>,
+    /// What drains and moves, one after the other.
+    phase: Option<Vec<Phase>>,
+    /// Frames to give centre and inertia in.
+    frame: Option<Vec<Frame>>,
     /// Bands that figures of the whole must stay in.
     limit: Option<Vec<Limit>>,
     /// Feet, wheels or scales that it stands on.
@@ -227,6 +239,12 @@ struct Part {
     each: Option<Each>,
     /// How far along its design is: a name in [allowance].
     maturity: Option<String>,
+    /// Its mass is this thickness over its surface; its mesh need not be closed.
+    sheet: Option<Length>,
+    /// What coats its surface.
+    coating: Option<Coating>,
+    /// A density that varies along an axis; `material` then only names it.
+    graded: Option<Graded>,
 }
 
 /// How facets are read.
@@ -235,6 +253,194 @@ struct Part {
 enum Reading {
     Flat,
     Curved,
+}
+
+/// A coat on a surface: surface times thickness, the first order in thickness.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Coating {
+    /// How thick it is.
+    thickness: Length,
+    /// A material of this file or of the table.
+    material: String,
+}
+
+/// A density by the straight line or parabola through stations along an axis of the mesh file.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Graded {
+    /// The axis, from the mesh file's origin.
+    along: Direction,
+    /// Two or three stations.
+    #[schemars(length(min = 2, max = 3))]
+    at: Vec<Length>,
+    /// The density at each.
+    #[schemars(length(min = 2, max = 3))]
+    density: Vec<Quantity>,
+}
+
+/// The inside of a tank, and what is in it.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Tank {
+    /// Its name in its group; the body's or the file's where left out.
+    name: Option<String>,
+    /// The mesh of its inside, relative to this file; file#body takes the bodies of one name.
+    mesh: String,
+    /// Unit of the mesh, where it is not that of the assembly.
+    unit: Option<Unit>,
+    /// A material of this file or of the table.
+    liquid: String,
+    /// How full it is.
+    fill: FillLevel,
+    /// Where its origin stands, in its group's frame.
+    at: Option<[Length; 3]>,
+    /// Turn about its origin, after the mirror and before `at`.
+    turn: Option<Turn>,
+    /// Normal of the plane through its origin that it is mirrored in, before anything else.
+    mirror: Option<Direction>,
+    /// One position for each repeat; takes the place of `at`.
+    #[schemars(length(min = 1))]
+    places: Option<Vec<[Length; 3]>>,
+    /// How many stand in the one place; takes the place of `places`.
+    #[schemars(range(min = 1, max = 100_000))]
+    count: Option<u32>,
+    /// Whether repeats share one error of each tolerance.
+    each: Option<Each>,
+}
+
+/// A fill: per cent, a volume or a mass with its unit; a length is a level above the tank's lowest
+/// point along effective up.
+#[derive(JsonSchema)]
+#[serde(untagged)]
+enum FillLevel {
+    /// A level in the file's unit.
+    Bare(f64),
+    /// Such as "60 %", "32 l", "30 kg" or "120 mm".
+    Text(String),
+}
+
+/// The field in which the assembly stands, and its own acceleration.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Gravity {
+    /// "uniform" where left out.
+    field: Option<FieldKind>,
+    /// Of a uniform field; standard gravity where left out.
+    g: Option<Quantity>,
+    /// Where down is, uniform or on the Earth; −z where left out.
+    down: Option<Direction>,
+    /// Geodetic latitude, on the Earth.
+    latitude: Option<Quantity>,
+    /// Height above the ellipsoid, on the Earth.
+    height: Option<Length>,
+    /// Gravitational parameter of a central field, such as "3.986004418e14 m3/s2".
+    gm: Option<Quantity>,
+    /// The assembly's origin as seen from the centre of a central field, in the assembly's axes.
+    at: Option<[Length; 3]>,
+    /// Acceleration of the assembly in its own axes; liquid lags behind it.
+    acceleration: Option<[Acceleration; 3]>,
+}
+
+#[derive(JsonSchema)]
+#[serde(rename_all = "lowercase")]
+enum FieldKind {
+    Uniform,
+    Earth,
+    Central,
+}
+
+/// An acceleration with its unit, or the number 0.
+#[derive(JsonSchema)]
+#[serde(untagged)]
+enum Acceleration {
+    /// Nothing along this axis.
+    Nil(f64),
+    /// Such as "2 m/s2".
+    Text(String),
+}
+
+/// A state of loading.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Case {
+    /// Its name.
+    name: String,
+    /// Paths that are left out.
+    without: Option<Names>,
+    /// Paths that stand in this case, and in no other that does not name them.
+    with: Option<Names>,
+    /// Fills by path of tank.
+    fill: Option<BTreeMap<String, FillLevel>>,
+    /// Positions by path, in their groups' frames.
+    at: Option<BTreeMap<String, [Length; 3]>>,
+}
+
+/// One name, or several.
+#[derive(JsonSchema)]
+#[serde(untagged)]
+enum Names {
+    /// One.
+    One(String),
+    /// Several.
+    Several(Vec<String>),
+}
+
+/// Something that moves; one of along, turn and through. Where the file places it its value is 0.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Motion {
+    /// Its name; that of what moves where left out.
+    name: Option<String>,
+    /// Path of the part, item, tank or group that moves.
+    of: String,
+    /// Along a direction, by lengths.
+    along: Option<Direction>,
+    /// About an axis, by angles.
+    turn: Option<MotionTurn>,
+    /// Through positions in straight lines, by shares of the way; the first is where it stands.
+    #[schemars(length(min = 2))]
+    through: Option<Vec<[Length; 3]>>,
+    /// Where it begins: nothing where left out.
+    from: Option<Length>,
+    /// Where it ends; the whole way through positions where left out.
+    to: Option<Length>,
+}
+
+/// A right-handed axis in the assembly's frame.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct MotionTurn {
+    /// Its direction.
+    axis: Direction,
+    /// A point of it; the assembly's origin where left out.
+    at: Option<[Length; 3]>,
+}
+
+/// A stretch of service.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Phase {
+    /// Its name.
+    name: String,
+    /// Tanks that drain, one after the other.
+    drain: Option<Names>,
+    /// What is left in each; nothing where left out.
+    to: Option<FillLevel>,
+    /// Motions that run to their other end while the tanks drain.
+    r#move: Option<Names>,
+}
+
+/// A frame to give centre and inertia in.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Frame {
+    /// Its name.
+    name: String,
+    /// Its origin in the assembly's frame.
+    at: Option<[Length; 3]>,
+    /// Its x, y and z in the assembly's axes, at right angles, right-handed.
+    axes: Option<[Direction; 3]>,
 }
 
 /// Whether repeats share one error of each tolerance, or have one each.
@@ -398,6 +604,8 @@ struct Group {
     part: Option<Vec<Part>>,
     /// Bought-in things of stated mass.
     item: Option<Vec<Item>>,
+    /// Tanks with liquid in them.
+    tank: Option<Vec<Tank>>,
     /// Groups in this one.
     group: Option<Vec<Group>>,
 }

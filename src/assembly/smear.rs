@@ -1,14 +1,16 @@
 //! `[[smear]]`: mass that no mesh shows, placed with what it covers.
 
 use std::collections::HashMap;
+use std::path::PathBuf;
 
-use super::expand::{self, Instance};
+use super::expand::{self, Instance, What};
 use super::file::{AssemblyFile, SmearEntry, SmearMass};
+use super::listed;
 use super::read::pattern;
 use super::reader::Reader;
-use super::resolve::{Basis, Piece, Resolved, Source, Weighed, around};
-use super::{listed, sum};
+use super::resolve::{Basis, Piece, Source, Weighed};
 use crate::error::{Error, Kind};
+use crate::moments::Moments;
 use crate::quantity::{Dimension, Quantity};
 
 /// A smear among the things that were weighed.
@@ -122,7 +124,9 @@ fn appearances<'f>(instances: &[Instance<'f>]) -> Vec<Appearance<'f>> {
                 let own = &instance.path[scope.path_from..];
                 let plain = &instance.entry_path[scope.entry_path_from..];
                 let matcher = &entry.of.matcher;
-                if matcher.is_match(own) || matcher.is_match(plain) {
+                // Paint and harness do not lie on what a tank holds.
+                let solid = !matches!(instance.what, What::Tank(_));
+                if solid && (matcher.is_match(own) || matcher.is_match(plain)) {
                     all[at].covers.push(n);
                 }
             }
@@ -164,43 +168,56 @@ pub(super) fn faults(file: &AssemblyFile) -> Vec<Error> {
     errors
 }
 
-/// Adds every smear to what was weighed. Where a thing could not be weighed there is no total, and
-/// no smear either.
-pub(super) fn weigh(instances: &[Instance<'_>], out: &mut Resolved) {
-    if out.weighed.len() != instances.len() {
-        return;
-    }
-    for a in appearances(instances) {
-        let covered = sum::total(a.covers.iter().map(|n| &out.weighed[*n].moments));
-        let factor = match a.entry.mass {
-            SmearMass::Fraction(q) => q.value,
-            SmearMass::Mass(q) if covered.zeroth > 0.0 => q.value / covered.zeroth,
-            SmearMass::Mass(_) => {
-                let message = format!(
-                    "the smear `{}{}` covers things without any mass, and cannot be placed",
-                    a.prefix, a.entry.name
-                );
-                let advice = "state it in an [[item]] with its own place";
-                let error = Error::new(Kind::Empty, message, advice);
-                let error = error.at_line(a.entry.line).in_file(&a.file.path);
-                out.refused.push(error);
-                continue;
+/// A smear that is worked out anew in every state of the assembly.
+#[derive(Clone, Debug)]
+pub(super) struct Planned {
+    /// With the path of its file.
+    pub(super) path: String,
+    groups: Vec<String>,
+    name: String,
+    entry: usize,
+    mass: SmearMass,
+    /// Which of the things it covers, by their numbers.
+    pub(super) covers: Vec<usize>,
+    /// Its file and line.
+    place: (PathBuf, u64),
+}
+
+impl Planned {
+    /// Its moments, from those of all that it covers; `None` where a stated mass covers nothing
+    /// that has any.
+    pub(super) fn moments(&self, covered: &Moments) -> Option<Moments> {
+        match self.mass {
+            SmearMass::Fraction(q) => Some(covered.weighted(q.value)),
+            SmearMass::Mass(q) => {
+                (covered.zeroth > 0.0).then(|| covered.weighted(q.value / covered.zeroth))
             }
+        }
+    }
+
+    /// Whether there is more of it where what it covers grows.
+    pub(super) fn grows(&self) -> bool {
+        matches!(self.mass, SmearMass::Fraction(_))
+    }
+
+    /// As a thing, `at` this place among what was weighed, over those places.
+    pub(super) fn weighed(
+        &self,
+        moments: Moments,
+        bounds: [[f64; 3]; 2],
+        at: usize,
+        covers: Vec<usize>,
+    ) -> (Weighed, Smeared) {
+        let smeared = Smeared {
+            at,
+            covers,
+            mass: self.mass,
+            entry: self.entry,
+            name: self.name.clone(),
         };
-        let bounds = around(a.covers.iter().map(|n| out.weighed[*n].bounds));
-        let moments = covered.weighted(factor);
-        out.smears.push(Smeared {
-            at: out.weighed.len(),
-            mass: a.entry.mass,
-            entry: std::ptr::from_ref(a.entry).addr(),
-            name: a.entry.name.clone(),
-            covers: a.covers.clone(),
-        });
-        out.weighed.push(Weighed {
-            made: None,
-            facets: None,
-            path: format!("{}{}", a.prefix, a.entry.name),
-            groups: a.groups,
+        let weighed = Weighed {
+            path: self.path.clone(),
+            groups: self.groups.clone(),
             source: Source::Smear,
             basis: Basis::Stated,
             pieces: vec![Piece {
@@ -209,10 +226,42 @@ pub(super) fn weigh(instances: &[Instance<'_>], out: &mut Resolved) {
             }],
             stands: Vec::new(),
             moments,
+            uneven: false,
             estimate: None,
+            facets: None,
             volume: None,
             implied_density: None,
+            made: None,
             bounds,
-        });
+        };
+        (weighed, smeared)
     }
+
+    /// The error where nothing that it covers has any mass.
+    pub(super) fn unplaced(&self) -> Error {
+        let message = format!(
+            "the smear `{}` covers things without any mass, and cannot be placed",
+            self.path
+        );
+        let advice = "state it in an [[item]] with its own place";
+        let (path, line) = &self.place;
+        Error::new(Kind::Empty, message, advice)
+            .at_line(*line)
+            .in_file(path)
+    }
+}
+
+/// Every smear, over the instances that it covers.
+pub(super) fn planned(instances: &[Instance<'_>]) -> Vec<Planned> {
+    let all = appearances(instances).into_iter();
+    all.map(|a| Planned {
+        path: format!("{}{}", a.prefix, a.entry.name),
+        groups: a.groups,
+        name: a.entry.name.clone(),
+        entry: std::ptr::from_ref(a.entry).addr(),
+        mass: a.entry.mass,
+        covers: a.covers,
+        place: (a.file.path.clone(), a.entry.line),
+    })
+    .collect()
 }

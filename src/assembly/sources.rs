@@ -14,6 +14,7 @@ use super::file::{Each, Item, Part, Shape, SmearMass};
 use super::load::Loaded;
 use super::open::MassBounds;
 use super::resolve::{FacetBias, Resolved, Weighed};
+use super::service::{FillOf, Tank};
 use super::shape::second_of;
 use super::smear::Smeared;
 use crate::moments::Moments;
@@ -51,6 +52,7 @@ pub(super) fn of(loaded: &Loaded, resolved: &Resolved) -> Sources {
             (None, Some(instance)) => match instance.what {
                 What::Item(item) => Arc::new(out.item(instance, item, weighed)),
                 What::Part(part) => Arc::new(out.part(instance, part, weighed)),
+                What::Tank(tank) => Arc::new(out.tank(instance, tank, weighed, resolved)),
             },
             (None, None) => Arc::new(Contribution::new(weighed.moments)),
         };
@@ -171,6 +173,36 @@ impl Sources {
             term = self.grown(&sharing, maturity.allowance, term);
         }
         self.placed(instance, part.each, term)
+    }
+
+    /// Liquid: its density, how far its tank is filled, and where the tank stands. A little more or
+    /// less liquid lies in the free surface: the surface's own moments are the exact derivative by
+    /// the volume.
+    fn tank(
+        &mut self,
+        instance: &Instance<'_>,
+        tank: &Tank,
+        weighed: &Weighed,
+        resolved: &Resolved,
+    ) -> Contribution {
+        let sharing = Sharing::of(instance, tank.each);
+        let mut term = Contribution::new(weighed.moments);
+        let density = tank.liquid.density;
+        let by_density = self.density(&tank.liquid.name, density);
+        let of_mass = tank.fill.of == FillOf::Mass;
+        // A stated mass of liquid is that mass whatever its density, but for where its level is.
+        if let (Some(by), false) = (by_density, of_mass) {
+            term = term.scaled(by, 1.0 / density.value);
+        }
+        let known = resolved.service.as_ref().zip(resolved.state.as_ref());
+        let filled = known.and_then(|(service, state)| service.fill_rate(&instance.path, state));
+        let Some(filled) = filled else {
+            return self.placed(instance, tank.each, term);
+        };
+        if let Some(by) = self.own(&sharing, "fill", filled.unit, filled.tolerance) {
+            term = term.adding(by, filled.per_unit);
+        }
+        self.placed(instance, tank.each, term)
     }
 
     /// Facets that may stand for curves: a bias from the mesh's figures to those of the curves,

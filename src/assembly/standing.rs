@@ -109,7 +109,9 @@ pub fn statics(
 ) -> Result<(Statics, Vec<Warning>)> {
     let mut out = Statics::default();
     let mut warnings = Vec::new();
-    let weight = mass_kg * file.gravity;
+    let effective = file.service.gravity.effective();
+    let weight = mass_kg * effective.map_or(0.0, |g| g.norm());
+    let down = effective.map_or(-Vector3::z(), |g| g.normalize());
     let warning = |kind: &str, message: String, line: Option<u64>, advice: &str| Warning {
         kind: kind.into(),
         message,
@@ -118,7 +120,7 @@ pub fn statics(
         advice: advice.into(),
     };
     if let Some(stand) = &file.stand {
-        let here = centre_at(&-file.up)?;
+        let here = centre_at(&down)?;
         let r = stand.reactions(&here, weight);
         if r.tips {
             warnings.push(warning(
@@ -139,7 +141,7 @@ pub fn statics(
         out.tip_by_direction = Some(sweep(stand, centre_at)?);
     }
     if let Some(hang) = &file.hang {
-        let hung = statics::hang(&hang.hook, &hang.lines, &-file.up, weight, centre_at);
+        let hung = statics::hang(&hang.hook, &hang.lines, &down, weight, centre_at);
         out.hang = Some(match hung {
             Ok(h) => Some(hang_row(h)),
             Err(e) => {

@@ -70,7 +70,16 @@ pub(super) fn own_materials(root: &Reader<'_, '_>) -> OwnMaterials {
 
 /// The substance that `material =` of a table names.
 pub(super) fn chosen(r: &Reader<'_, '_>, own: &OwnMaterials) -> Option<Substance> {
-    let (word, line) = r.text("material")?;
+    chosen_by(r, "material", own)
+}
+
+/// The substance that the `key` of a table names.
+pub(super) fn chosen_by(
+    r: &Reader<'_, '_>,
+    key: &'static str,
+    own: &OwnMaterials,
+) -> Option<Substance> {
+    let (word, line) = r.text(key)?;
     let standard = Table::standard();
     if let Some(material) = own.table.find(&word).or_else(|| standard.find(&word)) {
         if own.at_fault.contains(&material.name) {

@@ -52,6 +52,7 @@ impl Sure {
                 let maturity = match i.what {
                     What::Part(p) => p.maturity.clone(),
                     What::Item(item) => item.maturity.clone(),
+                    What::Tank(_) => None,
                 };
                 Some((i.path.as_str(), maturity?))
             })
@@ -122,26 +123,13 @@ impl Sure {
         Some(self.sources.model.standards(things))
     }
 
-    /// The figure that a limit is held against where it is not the stated one: masses with all
-    /// growth (the margin of a mass limit is that of the predicted mass).
-    pub(super) fn predicted(&self, of: &Measured) -> Option<f64> {
-        match (of, &self.growth) {
-            (Measured::Mass, Some(growth)) => Some(growth.predicted.mass_kg),
-            _ => None,
-        }
-    }
-
     /// Adds the standard uncertainty of the value, the chance that the true value lies inside,
-    /// and what the value is without growth.
     ///
     /// Where the band itself moves with the whole (an outline of mass and station, a permitted
     /// unbalance), the chance is 1 less the chances of each margin being negative: no more than
     /// the true one. A length that may be nothing within three standard uncertainties has no
     /// linear spread; there both are left out, and draws tell the chance.
     pub(super) fn judge(&self, limit: &Limit, stated: f64, mut judged: Judged) -> Judged {
-        if limit.quantity == Measured::Mass && self.growth.is_some() {
-            judged.basic = Some(stated);
-        }
         let Some(u) = &self.uncertainty else {
             return judged;
         };

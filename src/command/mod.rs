@@ -6,6 +6,7 @@ mod beside;
 mod check;
 mod copy;
 mod curves;
+mod drain;
 mod inputs;
 mod made;
 mod materials;
@@ -78,6 +79,8 @@ enum Command {
     Add(add::AddArgs),
     /// Weigh a whole library of meshes into a table, one row a body
     Survey(survey::SurveyArgs),
+    /// Follow mass, balance point and inertia as tanks empty and things move
+    Drain(drain::DrainArgs),
     /// List densities with their spread and source
     Materials(materials::MaterialsArgs),
     /// Print the JSON Schema of the assembly file
@@ -119,6 +122,7 @@ pub fn main() -> u8 {
         Command::Trim(args) => trim::run(args, &cli.common),
         Command::Add(args) => add::run(args, &cli.common),
         Command::Survey(args) => survey::run(args, &cli.common),
+        Command::Drain(args) => drain::run(args, &cli.common),
         Command::Materials(args) => materials::run(args, &cli.common),
         Command::Schema => Ok(schema::run()),
         Command::Completions { shell } => {

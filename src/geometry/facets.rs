@@ -121,3 +121,20 @@ impl Select<'_> {
         }
     }
 }
+
+/// The twelve facets of the box between two corners, facing outward.
+pub fn box_facets(lo: [f64; 3], hi: [f64; 3]) -> Vec<[[f64; 3]; 3]> {
+    let corner = |n: usize| std::array::from_fn(|k| if n >> k & 1 == 0 { lo[k] } else { hi[k] });
+    let sides = [
+        [0, 2, 3, 1],
+        [4, 5, 7, 6],
+        [0, 1, 5, 4],
+        [2, 6, 7, 3],
+        [0, 4, 6, 2],
+        [1, 3, 7, 5],
+    ];
+    let halves = sides
+        .into_iter()
+        .flat_map(|[a, b, c, d]| [[a, b, c], [a, c, d]]);
+    halves.map(|t| t.map(corner)).collect()
+}

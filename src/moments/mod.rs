@@ -1,12 +1,15 @@
 //! The one idea: everything that has mass becomes [`Moments`].
 
 mod algebra;
+mod graded;
+pub mod liquid;
 mod principal;
 mod skin;
 mod solid;
 mod total;
 
 pub use algebra::{Moments, Placement};
+pub use graded::Grading;
 pub use principal::{Principal, principal};
 pub use skin::integrate_skin;
 pub(crate) use solid::Running;

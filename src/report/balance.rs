@@ -5,11 +5,14 @@ use serde::Serialize;
 use super::Document;
 use super::digits::{at_most, figure, length_in, place, significant, supported};
 use super::footer::{CAUTION, footer, nominal};
-use super::statics_text::{self, readable};
+use super::service;
+use super::statics_text;
+pub(super) use super::statics_text::readable;
 use super::sure;
 use super::table::{Cell, Column, Look, Mark, Table};
 use super::weigh_text::matrix;
 use super::words::{box_size, direction, point, point_in};
+use crate::assembly::service::{CaseRow, Centres, TankRow};
 use crate::assembly::{Balance, Basis, MassBounds, PartRow, Source, Total};
 use crate::error::Result;
 use crate::limits::{End, Judged, PercentOf, Verdict};
@@ -25,14 +28,33 @@ pub struct BalanceBody {
     /// Inertia about a point that was asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub about: Option<AboutPoint>,
+    /// The case that the figures are of; absent for the file as it stands.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub case: Option<String>,
+    /// Every case of the file; absent where it has none.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub cases: Vec<CaseRow>,
+    /// The tanks as they are filled; absent where there are none.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub tanks: Vec<TankRow>,
+    /// Centroid, centre of mass and centre of gravity; absent where not asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub centres: Option<Centres>,
 }
 
-/// The tensor of the whole about a stated point.
+/// Centre and tensor of the whole seen from a stated point or frame.
 #[derive(Clone, Debug, Serialize)]
 pub struct AboutPoint {
-    /// m, in the assembly's frame.
+    /// Name of the frame; absent for a point.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub frame: Option<String>,
+    /// The frame's origin, m, in the assembly's frame.
     pub point_m: [f64; 3],
-    /// About the point, in the assembly's axes; off-diagonals −∫xy dm.
+    /// The frame's axes as rows, in the assembly's axes.
+    pub axes: [[f64; 3]; 3],
+    /// Centre of mass in the frame.
+    pub centre_of_mass_m: [f64; 3],
+    /// About the frame's origin, in the frame's axes; off-diagonals −∫xy dm.
     pub inertia_kg_m2: [[f64; 3]; 3],
 }
 
@@ -41,6 +63,9 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     let body = &document.body;
     let b = &body.balance;
     let mut out = look.marked(&crate::text::shown(&b.name), Mark::Heading);
+    if let Some(case) = &body.case {
+        out.push_str(&format!(" · case {}", crate::text::shown(case)));
+    }
     out.push_str("\n\n");
     out.push_str(&parts(b, unit).render(look));
     out.push_str(&subtotals(b, look));
@@ -52,6 +77,9 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     out.push_str(&printed(b, look));
     if let Some(e) = b.total.as_ref().and_then(|t| t.estimate.as_ref()) {
         out.push_str(&estimated("the whole", e, unit, look));
+    }
+    if !body.tanks.is_empty() {
+        out.push_str(&service::tanks(&body.tanks, unit, look));
     }
     match &b.total {
         Some(total) => {
@@ -67,6 +95,9 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
             )
         )),
     }
+    if let Some(c) = &body.centres {
+        out.push_str(&service::centres(c, unit, look));
+    }
     if !b.expectations.is_empty() {
         out.push_str(&expectations(b, unit, look));
     }
@@ -76,6 +107,9 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         out.push_str("\nno limits are stated\n");
     }
     out.push_str(&statics_text::render(&b.statics, unit, look));
+    if !body.cases.is_empty() {
+        out.push_str(&service::cases(body, unit, look));
+    }
     out.push_str(&overlaps(b, unit, look));
     out.push_str(&nominal(&document.warnings));
     out.push_str(&statics_text::caution(&b.statics, &b.limits));
@@ -210,7 +244,7 @@ fn position(x: f64, standard: Option<f64>) -> String {
 }
 
 /// Hundredths of the unit at most: a position is not known finer.
-fn fixed(x: f64) -> String {
+pub(super) fn fixed(x: f64) -> String {
     let text = format!("{x:.2}");
     if text
         .trim_start_matches('-')
@@ -363,8 +397,20 @@ fn whole(
     }
     out.push_str(&table.render(look));
     if let Some(a) = about {
+        let place = point(&a.point_m, unit);
+        let (of, axes) = match &a.frame {
+            Some(name) => (
+                format!("frame {} at {place}", crate::text::shown(name)),
+                "the frame's axes",
+            ),
+            None => (place, "the assembly's axes"),
+        };
+        out.push_str(&format!(
+            "balance point  {} from {of}, in {axes}\n",
+            point(&a.centre_of_mass_m, unit)
+        ));
         out.push_str(&matrix(
-            &format!("inertia about {}, kg m2", point(&a.point_m, unit)),
+            &format!("inertia about {of}, in {axes}, kg m2"),
             &a.inertia_kg_m2,
             standard.filter(|s| *s > 0.0),
         ));
@@ -471,7 +517,7 @@ fn overlaps(b: &Balance, unit: LengthUnit, look: Look) -> String {
     )
 }
 
-fn verdict(v: Verdict) -> (&'static str, Mark) {
+pub(super) fn verdict(v: Verdict) -> (&'static str, Mark) {
     match v {
         Verdict::Holds => ("holds", Mark::Pass),
         Verdict::Broken => ("BROKEN", Mark::Fail),

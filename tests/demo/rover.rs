@@ -61,9 +61,9 @@ pub(crate) fn files() -> Vec<File> {
             spray_tank(),
         ),
         one(
-            "spray-liquid.stl",
-            "orchard sprayer rover: spray liquid, mm",
-            spray_liquid(),
+            "spray-tank-inside.stl",
+            "orchard sprayer rover: inside of the spray tank, mm",
+            spray_tank_inside(),
         ),
         one(
             "nozzle-bracket.stl",
@@ -267,32 +267,28 @@ fn tank_floor(inset: f64) -> Vec<[f64; 2]> {
     profile
 }
 
+/// The tank's profile, at `inset` inside the outer surface.
+fn tank_skin(inset: f64) -> Vec<[f64; 2]> {
+    let mut profile = tank_floor(inset);
+    profile.extend(arc([130.0, 300.0], 80.0 - inset, 0.0, 1.0, 10));
+    profile.extend([[60.0 - inset, 380.0 - inset], [60.0 - inset, 400.0 - inset]]);
+    profile.push([0.0, 400.0 - inset]);
+    profile
+}
+
 /// Rotationally moulded: one closed outer surface, one closed chamber 5 mm inside it.
 fn spray_tank() -> Body {
-    let skin = |inset: f64| {
-        let mut profile = tank_floor(inset);
-        profile.extend(arc([130.0, 300.0], 80.0 - inset, 0.0, 1.0, 10));
-        profile.extend([[60.0 - inset, 380.0 - inset], [60.0 - inset, 400.0 - inset]]);
-        profile.push([0.0, 400.0 - inset]);
-        // The level of the liquid is a row of corners, so that both meet exactly.
-        profile.insert(10, [210.0 - inset, LEVEL]);
-        profile
-    };
     let mut body = Body::new("spray tank", BINARY_GRID);
-    body.revolve(Axis::Z, [0.0, 0.0], &skin(5.0), TANK_STEPS, false);
+    body.revolve(Axis::Z, [0.0, 0.0], &tank_skin(5.0), TANK_STEPS, false);
     body.turn_inside_out();
-    body.revolve(Axis::Z, [0.0, 0.0], &skin(0.0), TANK_STEPS, false);
+    body.revolve(Axis::Z, [0.0, 0.0], &tank_skin(0.0), TANK_STEPS, false);
     body
 }
 
-/// Height of the liquid above the tank's foot.
-const LEVEL: f64 = 200.0;
-
-fn spray_liquid() -> Body {
-    let mut profile = tank_floor(5.0);
-    profile.extend([[205.0, LEVEL], [0.0, LEVEL]]);
-    let mut body = Body::new("spray liquid", BINARY_GRID);
-    body.revolve(Axis::Z, [0.0, 0.0], &profile, TANK_STEPS, false);
+/// The chamber as a solid of its own: what liquid can fill.
+fn spray_tank_inside() -> Body {
+    let mut body = Body::new("spray tank inside", BINARY_GRID);
+    body.revolve(Axis::Z, [0.0, 0.0], &tank_skin(5.0), TANK_STEPS, false);
     body
 }
 

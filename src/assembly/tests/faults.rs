@@ -49,13 +49,13 @@ fn keys() {
         &["the keys here are"],
     );
     fault(
-        &format!("{ITEM}[[tank]]\nname = \"t\"\n"),
+        &format!("{ITEM}[[support]]\nname = \"t\"\n"),
         Kind::UnknownKey,
         6,
         &["this version"],
     );
     fault(
-        &format!("{ITEM}[gravity]\n"),
+        &format!("{ITEM}[hang]\n"),
         Kind::UnknownKey,
         6,
         &["this version"],

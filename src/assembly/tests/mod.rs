@@ -2,6 +2,7 @@
 
 mod by_hand;
 mod faults;
+mod in_service;
 mod made;
 mod materials;
 mod properties;

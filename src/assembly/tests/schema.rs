@@ -77,6 +77,71 @@ mass = "1 g"
 [[group.group]]
 name = "tip"
 places = [[0, 0, 0]]
+[[tank]]
+name = "tank"
+mesh = "inside.obj"
+unit = "mm"
+liquid = "water"
+fill = "60 %"
+at = [0, 0, 0]
+turn = { axis = "z", angle = "90 deg" }
+mirror = "y"
+each = "shared"
+count = 1
+[[group.tank]]
+mesh = "inside.obj#inside"
+liquid = "own"
+fill = 0.5
+places = [[9, 0, 0]]
+[gravity]
+field = "uniform"
+g = "9.81 m/s2"
+down = [0, 0, -1]
+acceleration = ["0.1 m/s2", 0, 0]
+[[case]]
+name = "light"
+without = ["tip-weight"]
+with = ["payload"]
+fill = { tank = "10 %" }
+at = { payload = [1, 2, 3] }
+[[item]]
+name = "payload"
+mass = "1 kg"
+[[item]]
+name = "tip-weight"
+mass = "1 kg"
+[[motion]]
+name = "swing"
+of = "motor"
+turn = { axis = "z", at = [0, 0, 0] }
+from = "10 deg"
+to = "90 deg"
+[[motion]]
+of = "ball"
+along = "x"
+to = 10
+[[motion]]
+of = "roll"
+through = [[0, 0, 0], [1, 0, 0]]
+[[phase]]
+name = "out"
+drain = ["tank"]
+to = "5 %"
+move = ["swing"]
+[[frame]]
+name = "eye"
+at = [0, 0, 1]
+axes = ["x", "y", "z"]
+[[part]]
+name = "skin"
+mesh = "frame.obj"
+material = "own"
+sheet = 0.1
+coating = { thickness = "0.1 mm", material = "own" }
+[[part]]
+name = "graded"
+mesh = "frame.obj"
+graded = { along = "z", at = [0, 1], density = ["1 kg/m3", "2 kg/m3"] }
 [[limit]]
 name = "all"
 mass = { from = "1 kg", to = "2 kg" }
@@ -136,7 +201,9 @@ layout = "15 %"
 "#;
 
 fn bench() -> Bench {
-    let bench = Bench::new().mesh("frame.obj", vec![block("frame", [0.0; 3], [1.0; 3])]);
+    let bench = Bench::new()
+        .mesh("frame.obj", vec![block("frame", [0.0; 3], [1.0; 3])])
+        .mesh("inside.obj", vec![block("inside", [0.0; 3], [1.0; 3])]);
     bench.put(
         "inner.toml",
         "[assembly]\nunit = \"m\"\n[[item]]\nname = \"x\"\nmass = \"1 kg\"\n",
@@ -185,6 +252,15 @@ fn keys_of_reader_and_schema_agree() {
         ("group", vec!["Group"]),
         ("limit", vec!["Limit"]),
         ("smear", vec!["Smear"]),
+        ("tank", vec!["Tank"]),
+        ("gravity", vec!["Gravity"]),
+        ("case", vec!["Case"]),
+        ("motion", vec!["Motion"]),
+        ("turn of a motion", vec!["MotionTurn"]),
+        ("phase", vec!["Phase"]),
+        ("frame", vec!["Frame"]),
+        ("coating", vec!["Coating"]),
+        ("graded", vec!["Graded"]),
         ("centre of a limit", vec!["Centre"]),
         ("band of a limit", vec!["Band", "MassBand", "QuantityBand"]),
         ("station", vec!["Station"]),
