@@ -147,6 +147,23 @@ impl Read for Around<'_> {
     }
 }
 
+/// A ball in 500 layers, beside weighing it as a solid.
+fn printed(path: &Path) {
+    let layers = || {
+        let mut command = Command::new(env!("CARGO_BIN_EXE_bismar"));
+        command.args(["weigh", "--json", "--unit", "mm", "--layers", "0.2"]);
+        command.args(["--wall", "1.2", "--skin", "0.8", "--infill", "20"]);
+        let status = command.arg(path).stdout(Stdio::null()).status().unwrap();
+        assert!(status.success(), "{status}");
+    };
+    let (print, solid) = (best(layers), best(|| weigh(path, false)));
+    println!(
+        "weigh --layers, 500 of them: {:.3} s, {:.1} × weigh",
+        print.as_secs_f64(),
+        print.as_secs_f64() / solid.as_secs_f64()
+    );
+}
+
 /// Time a triangle must not grow with their number.
 fn growth(divisor: u64) {
     let rings = support::rings_for(10_000);
@@ -244,6 +261,9 @@ fn main() {
         "200 named bodies, 1 M triangles of OBJ",
         write("many.obj", support::obj(&spheres(n, 5000))),
     );
+    let ball = write("printed.stl", support::binary_stl(&sphere(1_310_000)));
+    printed(&ball);
+    std::fs::remove_file(ball).unwrap();
     std::fs::remove_dir_all(&folder).unwrap();
     let ratio = |a: Duration, b: Duration| a.as_secs_f64() / b.as_secs_f64();
     rows.sort_by(|a, b| ratio(b.time, b.limit).total_cmp(&ratio(a.time, a.limit)));

@@ -120,6 +120,13 @@ fn meshes_answer_as_the_schemas_say() {
         "--json",
         "demo-data/rover/frame.obj#frame rail left",
     ]);
+    let bracket = "demo-data/rover/nozzle-bracket.stl";
+    let weigh = ["weigh", "--json", "--material", "petg", bracket];
+    let layers = [
+        "--layers", "1", "--wall", "1", "--skin", "1", "--infill", "20",
+    ];
+    hold(&[&weigh[..], &layers[..]].concat());
+    hold(&[&weigh[..], &["--shell", "2", "--fill", "0.6 g/cm3"]].concat());
     for name in ["check", "weigh", "error"] {
         assert!(answered.get(name).is_some_and(|n| *n > 3), "{answered:?}");
     }

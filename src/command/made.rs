@@ -182,6 +182,9 @@ fn up(text: &str) -> Result<Unit<Vector3<f64>>> {
         "x" => Some(Vector3::x()),
         "y" => Some(Vector3::y()),
         "z" => Some(Vector3::z()),
+        "-x" => Some(-Vector3::x()),
+        "-y" => Some(-Vector3::y()),
+        "-z" => Some(-Vector3::z()),
         _ => None,
     };
     if let Some(axis) = axis {

@@ -22,13 +22,16 @@ use crate::moments::Moments;
 
 /// The core's volume is refined until the error figure is this part of the solid's.
 const TOLERANCE: f64 = 1e-4;
-/// Levels at which cells are halved without being asked: nothing thicker than a 32nd of the part
-/// can then hide between samples that agree.
+/// A core that is known no better than this part of the solid's volume is not told.
+const WORST: f64 = 0.01;
+/// Levels at which cells are halved without being asked, as they are while larger than the
+/// shell's thickness: a core that hides between samples that agree is then next to nothing beside
+/// the shell around it.
 const FIRST: u8 = 5;
-/// Levels of the octree; cells are then a 1024th of the part.
-const LAST: u8 = 10;
+/// Levels of the octree, for parts that are long and thin.
+const LAST: u8 = 18;
 /// Cells cut at one level, at most: some 200 bytes each.
-const MOST_CELLS: usize = 300_000;
+const MOST_CELLS: usize = 200_000;
 
 /// A cube of the octree over the part.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -66,7 +69,8 @@ pub(super) type Leaf = (Cell, Moments);
 /// not taken off the shell.
 ///
 /// # Errors
-/// `bad-number` for a plan that no print can have, `usage` for a drain that reaches no hollow.
+/// `bad-number` for a plan that no print can have, `usage` for a drain that reaches no hollow,
+/// `too-large` where the core cannot be found within 1 % of the solid's volume.
 pub fn hollowed(
     facets: &impl Corners,
     solid: &Moments,
@@ -81,6 +85,13 @@ pub fn hollowed(
     } else {
         core(facets, &room, solid.zeroth, plan.thickness, progress)
     };
+    if error > WORST * solid.zeroth {
+        return Err(Error::new(
+            Kind::TooLarge,
+            "the shell is too thin for the part's size and detail: its inside is not found within 1 %",
+            "take a thicker shell, weigh the solid, or hollow the mesh in the program that made it",
+        ));
+    }
     let core = if plan.thickness == 0.0 {
         *solid
     } else {
@@ -272,11 +283,18 @@ fn core(
                 .sum();
             (found - parent.moments.zeroth).abs()
         };
-        let judged = level >= FIRST;
+        let estimated = level >= FIRST;
+        let judged = estimated && 2.0 * room.half(level) <= thickness;
         let changes: Vec<f64> = open
             .iter()
             .zip(&halved)
-            .map(|(p, c)| if judged { change(p, c) } else { f64::INFINITY })
+            .map(|(p, c)| {
+                if estimated {
+                    change(p, c)
+                } else {
+                    f64::INFINITY
+                }
+            })
             .collect();
         let cut = halved
             .iter()
@@ -284,7 +302,7 @@ fn core(
             .filter(|(_, s, _)| matches!(s, State::Cut(_)))
             .count();
         let total: f64 = changes.iter().sum();
-        let end = judged && (total <= left || level + 1 == LAST || cut > MOST_CELLS);
+        let end = (judged && total <= left) || level + 1 == LAST || cut > MOST_CELLS;
         let share = if end {
             f64::INFINITY
         } else {
@@ -292,7 +310,7 @@ fn core(
         };
         let mut next = Vec::new();
         for (change, children) in changes.into_iter().zip(halved) {
-            let enough = judged && change <= share;
+            let enough = end || (judged && change <= share);
             if enough {
                 settled += change;
                 left -= change;

@@ -612,6 +612,15 @@ fn a_box_in_a_uniform_shell_is_exact_and_so_is_a_hole_through_it() {
 }
 
 #[test]
+fn a_long_thin_rod_keeps_its_core() {
+    // 3 mm wide and a metre long: the first cells are ten times as wide as the rod.
+    let rod = cuboid([0.1, 0.2, 0.3], [1000.1, 3.2, 3.3]);
+    let p = shell(&rod, 1.0, Some(0.0), &[]);
+    assert!(p.core_error.unwrap() < 2e-4 * 9000.0, "{:?}", p.core_error);
+    near(p.core.zeroth, 998.0, 1e-3);
+}
+
+#[test]
 fn a_torus_and_a_cylinder_in_a_uniform_shell_are_within_the_error() {
     let pi = std::f64::consts::PI;
     let n = 96;

@@ -45,10 +45,8 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
         if let Some(e) = &p.estimate {
             out.push_str(&estimated(&p.path, e, unit, look));
         }
-        if let Some(made) = &p.made {
-            out.push_str(&super::print_text::render(&p.path, made, p.volume_m3, look));
-        }
     }
+    out.push_str(&printed(b, look));
     if let Some(e) = b.total.as_ref().and_then(|t| t.estimate.as_ref()) {
         out.push_str(&estimated("the whole", e, unit, look));
     }
@@ -74,6 +72,26 @@ pub fn render(document: &Document<BalanceBody>, unit: LengthUnit, look: Look) ->
     out.push_str(&nominal(&document.warnings));
     out.push_str(&format!("{CAUTION}\n"));
     out.push_str(&footer(document, look));
+    out
+}
+
+/// How parts are printed; repeats of one once.
+fn printed(b: &Balance, look: Look) -> String {
+    let mut out = String::new();
+    let mut rows = b.parts.iter().filter(|p| p.made.is_some()).peekable();
+    while let Some(p) = rows.next() {
+        let mut more = 0;
+        while rows.next_if(|next| next.made == p.made).is_some() {
+            more += 1;
+        }
+        let of = match more {
+            0 => p.path.clone(),
+            n => format!("{} and {n} more, each", p.path),
+        };
+        if let Some(made) = &p.made {
+            out.push_str(&super::print_text::render(&of, made, p.volume_m3, look));
+        }
+    }
     out
 }
 

@@ -11,7 +11,9 @@ pub const CAUTION: &str = "Figures are estimates from the meshes and the stated 
 /// What a printed sheet must not lose with the standard error: tolerances that are not in it, and
 /// what throws doubt on its meshes.
 pub(super) fn nominal(warnings: &[Warning]) -> String {
-    let kept = |w: &&Warning| w.kind == "tolerances-ignored" || w.path.is_some();
+    let kept = |w: &&Warning| {
+        w.path.is_some() || ["tolerances-ignored", "printed-as-solid"].contains(&w.kind.as_str())
+    };
     let quiet = |w: &&Warning| w.kind != "unit-assumed" && w.kind != "body-unused";
     warnings
         .iter()
