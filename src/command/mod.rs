@@ -62,7 +62,7 @@ enum Command {
     /// Say whether meshes can be weighed: what is wrong, where, and what it does to the volume
     Check(check::CheckArgs),
     /// Give volume, area, centroid, mass and inertia of each body
-    Weigh(weigh::WeighArgs),
+    Weigh(Box<weigh::WeighArgs>),
     /// Give mass, balance point and inertia of an assembly, and judge its limits
     Balance(balance::BalanceArgs),
     /// List densities with their spread and source
