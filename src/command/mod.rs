@@ -70,7 +70,7 @@ enum Command {
     /// Say whether meshes can be weighed: what is wrong, where, and what it does to the volume
     Check(check::CheckArgs),
     /// Give volume, area, centroid, mass and inertia of each body
-    Weigh(weigh::WeighArgs),
+    Weigh(Box<weigh::WeighArgs>),
     /// Give mass, balance point and inertia of an assembly, and judge its limits
     Balance(balance::BalanceArgs),
     /// Give the least ballast that brings an assembly inside its limits

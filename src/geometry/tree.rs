@@ -61,10 +61,8 @@ impl Aabb {
     #[inline(always)]
     fn squared_distance(&self, p: &Point) -> f64 {
         let mut sum = 0.0;
-        for k in 0..3 {
-            let d = (f64::from(self.low[k]) - p[k])
-                .max(p[k] - f64::from(self.high[k]))
-                .max(0.0);
+        for ((low, high), x) in self.low.iter().zip(&self.high).zip(p) {
+            let d = (f64::from(*low) - x).max(x - f64::from(*high)).max(0.0);
             sum += d * d;
         }
         sum * (1.0 - 4.0 * f64::EPSILON)

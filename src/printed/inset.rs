@@ -150,9 +150,9 @@ mod tests {
     #[test]
     fn convex_corners_are_mitred_and_reflex_ones_rounded() {
         let square = vec![[0.0, 0.0], [20.0, 0.0], [20.0, 20.0], [0.0, 20.0]];
-        assert!((area(&[square.clone()], 1.5) - 17.0 * 17.0).abs() < 1e-9);
+        assert!((area(std::slice::from_ref(&square), 1.5) - 17.0 * 17.0).abs() < 1e-9);
         // Nothing is left of it from half its width on.
-        assert_eq!(area(&[square.clone()], 10.0), 0.0);
+        assert_eq!(area(std::slice::from_ref(&square), 10.0), 0.0);
         // A square hole grows by four sides and a circle.
         let hole = vec![[8.0, 8.0], [8.0, 12.0], [12.0, 12.0], [12.0, 8.0]];
         let want = 289.0 - (16.0 + 4.0 * 4.0 * 1.5 + std::f64::consts::PI * 2.25);
@@ -249,7 +249,7 @@ mod tests {
             p in star(), w in 0.05..6.0_f64, probes in prop::collection::vec((-40.0..40.0_f64, -40.0..40.0_f64), 60),
         ) {
             let grid = Grid::over([-40.0; 2], [40.0; 2]);
-            let region = region(&[p.clone()], &grid);
+            let region = region(std::slice::from_ref(&p), &grid);
             let raw = inset_contour(&region, grid.steps(w));
             let inset = Overlayer::new().wound(&raw);
             let winding = |contours: &Region, q: (f64, f64)| {
