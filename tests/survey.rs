@@ -220,3 +220,42 @@ fn paths_come_from_standard_input_and_mistakes_are_told() {
     let doc = json(&bismar(at, &["survey", "hollow", "-o", "h.csv", "--json"]));
     assert_eq!(doc["error"]["kind"], "empty");
 }
+
+/// Reading the same bytes and parsing them alone, on as many threads, beside the whole command.
+#[test]
+#[ignore = "measures: run it with --release on an idle machine"]
+fn a_survey_costs_at_most_three_times_reading_and_parsing() {
+    use rayon::prelude::*;
+    let folder = tempfile::tempdir().unwrap();
+    let at = folder.path();
+    support::library(false, 2000, &at.join("library")).unwrap();
+    let files = bismar::survey::files(&[at.join("library")]).unwrap();
+    let best = |run: &dyn Fn()| {
+        let time = || {
+            let begin = std::time::Instant::now();
+            run();
+            begin.elapsed().as_secs_f64()
+        };
+        (0..5).map(|_| time()).fold(f64::INFINITY, f64::min)
+    };
+    let parse = best(&|| {
+        files.par_iter().with_max_len(1).for_each(|(path, _)| {
+            let bytes = bismar::format::Bytes::Owned(std::fs::read(path).unwrap());
+            let soup = bismar::format::read(bytes, path, None);
+            std::hint::black_box(soup.is_ok());
+        });
+    });
+    let survey = best(&|| {
+        let _ = std::fs::remove_file(at.join("t.parquet"));
+        assert!(
+            bismar(at, &["survey", "library", "-o", "t.parquet"])
+                .status
+                .success()
+        );
+    });
+    println!(
+        "parse {parse:.3} s, survey {survey:.3} s, {:.2} times",
+        survey / parse
+    );
+    assert!(survey < 3.0 * parse, "{survey} {parse}");
+}

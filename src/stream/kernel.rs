@@ -46,9 +46,12 @@ impl Total {
 
     fn beside(&mut self, certificate: Certificate, bounds: &[[f64; 3]; 2]) {
         self.certificate = self.certificate.plus(certificate);
-        for k in 0..3 {
-            self.bounds[0][k] = self.bounds[0][k].min(bounds[0][k]);
-            self.bounds[1][k] = self.bounds[1][k].max(bounds[1][k]);
+        let [low, high] = &mut self.bounds;
+        for (mine, theirs) in low.iter_mut().zip(bounds[0]) {
+            *mine = mine.min(theirs);
+        }
+        for (mine, theirs) in high.iter_mut().zip(bounds[1]) {
+            *mine = mine.max(theirs);
         }
     }
 }

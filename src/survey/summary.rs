@@ -123,6 +123,6 @@ fn commonest(counts: BTreeMap<&str, u64>) -> Vec<KindCount> {
             count,
         })
         .collect();
-    out.sort_by(|a, b| b.count.cmp(&a.count));
+    out.sort_by_key(|k| std::cmp::Reverse(k.count));
     out
 }
