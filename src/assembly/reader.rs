@@ -13,9 +13,6 @@ use super::tree::{Entry, Node, Value};
 use crate::error::{Error, Kind};
 use crate::quantity::{Dimension, LengthUnit, Quantity};
 
-/// Keys that a file may hold for questions which this version does not answer.
-const NOT_READ: &[&str] = &[];
-
 /// What the readers of one file share.
 pub(super) struct Shared<'p> {
     pub(super) path: &'p Path,
@@ -238,15 +235,9 @@ impl<'a, 'p> Reader<'a, 'p> {
         let entries = self.entries.iter();
         for entry in entries.filter(|e| !asked.contains(&e.key.as_str())) {
             let key = &entry.key;
-            let advice = if NOT_READ.contains(&key.as_str()) {
-                format!(
-                    "`{key}` is not read by this version: take it out, or use one that reads it"
-                )
-            } else {
-                match nearest(key, asked.iter().copied()) {
-                    Some(near) => format!("did you mean `{near}`?"),
-                    None => format!("the keys here are {}", asked.join(", ")),
-                }
+            let advice = match nearest(key, asked.iter().copied()) {
+                Some(near) => format!("did you mean `{near}`?"),
+                None => format!("the keys here are {}", asked.join(", ")),
             };
             let message = format!("unknown key `{key}` in {}", self.what);
             self.shared

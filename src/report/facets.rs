@@ -160,9 +160,9 @@ mod tests {
     fn the_line_says_total_regions_and_crease() {
         let line = facets(false).line();
         for part in [
-            "about 1 % low",
+            "about 1.0 % low",
             "outer curves −1.5 %",
-            "hollows +0.5 %",
+            "hollows +0.50 %",
             "30°",
         ] {
             assert!(line.contains(part), "{part} not in {line}");

@@ -59,6 +59,11 @@ pub(super) fn block(draws: &mut Draws, reach: f64) -> Moments {
 
 /// Things of every kind with tolerances of every kind, each of relative size `scale`.
 pub(super) fn assembly(seed: u64, scale: f64) -> Model {
+    biased(seed, scale, scale)
+}
+
+/// As [`assembly`], with growth of up to `most`.
+pub(super) fn biased(seed: u64, scale: f64, most: f64) -> Model {
     let mut draws = Draws::new(seed, 0);
     let mut model = Model::default();
     let mut named = |what: &str, distribution| {
@@ -75,7 +80,7 @@ pub(super) fn assembly(seed: u64, scale: f64) -> Model {
         "growth",
         Distribution::Interval {
             low: 0.0,
-            high: scale,
+            high: most,
         },
     );
     let smeared = [rectangular(scale), normal(scale)].map(|d| named("smear", d));

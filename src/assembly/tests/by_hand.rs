@@ -248,7 +248,7 @@ fn the_document() {
     );
     assert_eq!(
         keys(&json["limits"][0]),
-        "from margin margin_percent name nearest percent_of probability quantity to unit value verdict"
+        "from margin margin_percent name nearest percent_of probability quantity standard to unit value verdict"
     );
     assert_eq!(json["parts"][0]["source"]["file"], "rover.obj");
     assert_eq!(json["parts"][0]["source"]["body"], "frame");

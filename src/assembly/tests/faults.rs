@@ -49,24 +49,6 @@ fn keys() {
         &["the keys here are"],
     );
     fault(
-        &format!("{ITEM}[[support]]\nname = \"t\"\n"),
-        Kind::UnknownKey,
-        6,
-        &["this version"],
-    );
-    fault(
-        &format!("{ITEM}[hang]\n"),
-        Kind::UnknownKey,
-        6,
-        &["this version"],
-    );
-    fault(
-        &format!("{PART}smear = 1\n"),
-        Kind::UnknownKey,
-        7,
-        &["this version"],
-    );
-    fault(
         &format!("{ITEM}turn = {{ axis = \"z\", angl = \"1 deg\", angle = \"1 deg\" }}\n"),
         Kind::UnknownKey,
         6,
