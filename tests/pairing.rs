@@ -326,6 +326,23 @@ fn an_open_shell_in_a_closed_one_refuses_the_body() {
     );
 }
 
+/// The contract: dropped where the rest closes, else refused as `duplicate`, `closed` as the edges say.
+#[test]
+fn a_doubled_facet_beside_a_hole_is_refused_as_such() {
+    let mut open = cube(0.0, 10.0);
+    open.push(open[0]);
+    assert_eq!(
+        volume(&mesh(open.clone()), &mesh(open.clone()).bodies()[0]),
+        1000.0
+    );
+    // The fourth facet lies away from the doubled one.
+    open.remove(3);
+    let m = mesh(open);
+    assert!(!m.bodies()[0].closed);
+    // Three edges of the hole and three of the second copy.
+    assert_eq!(refused(&m), ("duplicate", 6, 2));
+}
+
 /// A pipe without ends gives 2/3 of its volume about every origin: it is refused by its edges.
 #[test]
 fn a_pipe_without_ends_is_refused() {
