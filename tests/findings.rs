@@ -418,14 +418,25 @@ proptest! {
         m.remove(gone);
         let m = shuffled(&m, seed);
         let mesh = mesh_of(&m);
-        let found = findings(&mesh);
+        let mut found = findings(&mesh);
+        // Between the slit and the hole what is left may touch at a vertex, which is no fault.
+        found.retain(|f| (f.kind, f.severity) != (FindingKind::NonManifoldVertex, Severity::Notes));
         let kinds: Vec<_> = found.iter().map(|f| (f.kind, f.severity, f.count)).collect();
         let want = [
             (FindingKind::Hole, Severity::Blocks, 1),
             (FindingKind::Crack, Severity::Blocks, 1),
         ];
-        prop_assert_eq!(kinds.len(), 2, "{:?} of shape {} at {} without {}", &kinds, shape, t, gone);
-        prop_assert!(want.iter().all(|w| kinds.contains(w)), "{:?}", &kinds);
+        // Without its third neighbour the torn facet is a body of its own, with the same two; and
+        // an open void is one of its own, where only one of the two may lie.
+        let bodies = mesh.bodies().len();
+        for w in want {
+            let n = kinds.iter().filter(|k| **k == w).count();
+            prop_assert!(
+                (1..=bodies).contains(&n),
+                "{:?} of shape {} at {} without {}", &kinds, shape, t, gone
+            );
+        }
+        prop_assert!(kinds.iter().all(|k| want.contains(k)), "{:?}", &kinds);
         let crack = found.iter().find(|f| f.kind == FindingKind::Crack).unwrap();
         let join = crack.join_m.unwrap() * 1e3;
         // Coordinates of 100 mm have steps of 1.4e-14.
@@ -433,7 +444,7 @@ proptest! {
         // Joined, the hole is left, of three edges.
         let after = findings(&mesh.join(join, "part").unwrap());
         let hole: Vec<_> = after.iter().filter(|f| f.severity == Severity::Blocks).collect();
-        prop_assert_eq!(hole.len(), 1);
+        prop_assert_eq!(hole.len(), 1, "{:?}", &hole);
         prop_assert_eq!((hole[0].kind, hole[0].places[0].edges), (FindingKind::Hole, Some(3)));
     }
 
