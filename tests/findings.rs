@@ -405,7 +405,7 @@ proptest! {
     /// slit runs into the hole, or shares an edge with it.
     #[test]
     fn a_slit_and_a_hole_are_a_crack_and_a_hole(
-        shape in 0usize..5, at in 0usize..1_000_000, off in 0usize..1_000_000, seed in any::<u64>()
+        shape in 0usize..4, at in 0usize..1_000_000, off in 0usize..1_000_000, seed in any::<u64>()
     ) {
         let mut m = sound().swap_remove(shape);
         let t = at % m.len();
@@ -426,15 +426,12 @@ proptest! {
             (FindingKind::Hole, Severity::Blocks, 1),
             (FindingKind::Crack, Severity::Blocks, 1),
         ];
-        // Without its third neighbour the torn facet is a body of its own, with the same two; and
-        // an open void is one of its own, where only one of the two may lie.
+        // Without its third neighbour the torn facet is a body of its own, with the same two. (In the
+        // hollow box, which is left out, it would lie in the body of the rest and be counted there.)
         let bodies = mesh.bodies().len();
         for w in want {
             let n = kinds.iter().filter(|k| **k == w).count();
-            prop_assert!(
-                (1..=bodies).contains(&n),
-                "{:?} of shape {} at {} without {}", &kinds, shape, t, gone
-            );
+            prop_assert_eq!(n, bodies, "{:?} of shape {} at {} without {}", &kinds, shape, t, gone);
         }
         prop_assert!(kinds.iter().all(|k| want.contains(k)), "{:?}", &kinds);
         let crack = found.iter().find(|f| f.kind == FindingKind::Crack).unwrap();
