@@ -63,7 +63,7 @@ fn the_estimate_is_within_a_fifth_of_the_truth_and_within_its_doubt() {
             let error = of(&case);
             let origin = error.moments.shifted(Vector3::zeros());
             let mut hold = |what: &str, got: f64, want: f64, allowed: f64| {
-                if !((got - want).abs() <= allowed) {
+                if (got - want).abs().total_cmp(&allowed).is_gt() {
                     faults.push(format!("{}: {what} {got:.4e}, is {want:.4e}", case.name));
                 }
             };

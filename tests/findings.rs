@@ -401,6 +401,50 @@ proptest! {
         prop_assert_eq!(&kinds(&shuffled(&turned, seed)), &want, "{:?} turned", what);
     }
 
+    /// One corner of a facet let go and another facet missing, wherever they lie: also where the
+    /// slit runs into the hole, or shares an edge with it.
+    #[test]
+    fn a_slit_and_a_hole_are_a_crack_and_a_hole(
+        shape in 0usize..4, at in 0usize..1_000_000, off in 0usize..1_000_000, seed in any::<u64>()
+    ) {
+        let mut m = sound().swap_remove(shape);
+        let t = at % m.len();
+        // Half of them close by: facets are written row by row.
+        let near = if off % 2 == 0 { 1 + off / 2 % 4 } else { 1 + off % (m.len() - 1) };
+        let gone = (t + near) % m.len();
+        let shift = [1e-5, -2e-5, 1.5e-5];
+        m[t][0] = [0, 1, 2].map(|k| m[t][0][k] + shift[k]);
+        let width = shift.iter().map(|x: &f64| x * x).sum::<f64>().sqrt();
+        m.remove(gone);
+        let m = shuffled(&m, seed);
+        let mesh = mesh_of(&m);
+        let mut found = findings(&mesh);
+        // Between the slit and the hole what is left may touch at a vertex, which is no fault.
+        found.retain(|f| (f.kind, f.severity) != (FindingKind::NonManifoldVertex, Severity::Notes));
+        let kinds: Vec<_> = found.iter().map(|f| (f.kind, f.severity, f.count)).collect();
+        let want = [
+            (FindingKind::Hole, Severity::Blocks, 1),
+            (FindingKind::Crack, Severity::Blocks, 1),
+        ];
+        // Without its third neighbour the torn facet is a body of its own, with the same two. (In the
+        // hollow box, which is left out, it would lie in the body of the rest and be counted there.)
+        let bodies = mesh.bodies().len();
+        for w in want {
+            let n = kinds.iter().filter(|k| **k == w).count();
+            prop_assert_eq!(n, bodies, "{:?} of shape {} at {} without {}", &kinds, shape, t, gone);
+        }
+        prop_assert!(kinds.iter().all(|k| want.contains(k)), "{:?}", &kinds);
+        let crack = found.iter().find(|f| f.kind == FindingKind::Crack).unwrap();
+        let join = crack.join_m.unwrap() * 1e3;
+        // Coordinates of 100 mm have steps of 1.4e-14.
+        prop_assert!((join - width).abs() <= 1e-12 + 1e-11 * width, "{join} {width}");
+        // Joined, the hole is left, of three edges.
+        let after = findings(&mesh.join(join, "part").unwrap());
+        let hole: Vec<_> = after.iter().filter(|f| f.severity == Severity::Blocks).collect();
+        prop_assert_eq!(hole.len(), 1, "{:?}", &hole);
+        prop_assert_eq!((hole[0].kind, hole[0].places[0].edges), (FindingKind::Hole, Some(3)));
+    }
+
     /// The stated distance closes the crack, and a little less does not.
     #[test]
     fn the_distance_of_a_crack_is_the_least_that_closes_it(

@@ -364,7 +364,7 @@ fn outputs_are_refused_where_they_make_no_sense() {
     for (args, kind) in [
         (vec!["--write", a], "usage"),
         (vec!["--mend", "b.ply"], "usage"),
-        (vec!["--picture", "b.png"], "usage"),
+        (vec!["--picture", "b.jpg"], "usage"),
         (vec![a, "--mend", "b.obj"], "usage"),
         (vec!["--write", s(&nowhere)], "cannot-write"),
     ] {
@@ -404,6 +404,33 @@ fn a_picture_is_xml_and_marks_the_hole() {
     assert_eq!(svg.matches(">1</text>").count(), 3);
     assert!(svg.contains("a&lt;b.obj") && !svg.contains("NaN") && !svg.contains("inf"));
     assert!(svg.starts_with("<svg") && svg.ends_with("</svg>\n"));
+}
+
+#[test]
+fn a_picture_in_pixels_is_the_same_drawing() {
+    let folder = Folder::new();
+    let mut open = cube([0.0; 3], [2.0, 3.0, 4.0]);
+    open.truncate(10);
+    let source = folder.put("lid.obj", &obj(&[("lid", open)]));
+    let drawn = |name: &str| {
+        let out = folder.path(name);
+        let (exit, doc) = json(&[
+            "check",
+            "--json",
+            "--unit",
+            "m",
+            s(&source),
+            "--picture",
+            s(&out),
+        ]);
+        assert_eq!(exit, 1);
+        assert_eq!(doc["files"][0]["picture"].as_str(), Some(s(&out)));
+        std::fs::read(&out).unwrap()
+    };
+    let svg = String::from_utf8(drawn("a.svg")).unwrap();
+    let png = drawn("a.PNG");
+    assert!(png.starts_with(b"\x89PNG\r\n\x1a\n"));
+    assert_eq!(png, bismar::report::picture::png(&svg).unwrap());
 }
 
 #[test]
@@ -523,4 +550,81 @@ fn an_assembly_takes_an_open_part_with_its_bound() {
         text.contains("ESTIMATE") && text.contains("if the missing surface is no larger"),
         "{text}"
     );
+}
+
+#[test]
+fn a_hollow_of_another_name_is_told_which_solid_it_lies_in() {
+    let folder = Folder::new();
+    let inward = |m: Vec<[P; 3]>| m.into_iter().map(|[a, b, c]| [a, c, b]).collect::<Vec<_>>();
+    let advice = |at: f64| {
+        let source = folder.put(
+            "tank.obj",
+            &obj(&[
+                ("hall", cube([-9.0; 3], [30.0; 3])),
+                ("tank", cube([0.0; 3], [10.0; 3])),
+                ("inside", inward(cube([at; 3], [4.0; 3]))),
+            ]),
+        );
+        let (exit, doc) = json(&[
+            "check",
+            "--json",
+            "--unit",
+            "mm",
+            "--no-overlap",
+            s(&source),
+        ]);
+        assert_eq!(exit, 1);
+        let finding = &doc["files"][0]["bodies"][2]["findings"][0];
+        assert_eq!(finding["kind"], "inside-out");
+        finding["advice"].as_str().unwrap().to_owned()
+    };
+    assert!(advice(3.0).contains("inside \"tank\""), "{}", advice(3.0));
+    assert!(advice(15.0).contains("inside \"hall\""), "{}", advice(15.0));
+    assert!(!advice(40.0).contains("inside \""), "{}", advice(40.0));
+}
+
+#[test]
+fn what_was_tested_names_every_kind_that_was_found_and_no_more() {
+    let folder = Folder::new();
+    // Once more with the other diagonal on each side: no facet stands twice.
+    let mut twice = cube([0.0; 3], [2.0; 3]);
+    let other: Vec<[P; 3]> = twice
+        .chunks(2)
+        .flat_map(|side| {
+            let d = side[1].iter().find(|p| !side[0].contains(p)).unwrap();
+            let ring = ring(&side[0], d);
+            [[ring[1], ring[2], ring[3]], [ring[1], ring[3], ring[0]]]
+        })
+        .collect();
+    let tested = |facets: Vec<[P; 3]>| {
+        let source = folder.put("a.obj", &obj(&[("peg", facets)]));
+        let (_, doc) = json(&["check", "--json", "--unit", "m", "--no-overlap", s(&source)]);
+        let file = &doc["files"][0];
+        let has = |list: &Value, of: fn(&Value) -> &Value| {
+            list.as_array()
+                .unwrap()
+                .iter()
+                .any(|x| of(x) == "self-overlap")
+        };
+        (
+            has(&file["tested"], |x| x),
+            has(&file["bodies"][0]["findings"], |f| &f["kind"]),
+        )
+    };
+    assert_eq!(tested(twice.clone()), (false, false));
+    twice.extend(other);
+    assert_eq!(tested(twice), (true, true));
+}
+
+/// The corners of a square in order, from three of them and the fourth.
+fn ring(facet: &[P; 3], d: &P) -> [P; 4] {
+    let length = |p: &P, q: &P| (0..3).map(|k| (p[k] - q[k]).powi(2)).sum::<f64>();
+    let k = (0..3)
+        .max_by(|&i, &j| {
+            let of = |k: usize| length(&facet[k], &facet[(k + 1) % 3]);
+            of(i).total_cmp(&of(j))
+        })
+        .unwrap();
+    // The longest edge is the diagonal; the fourth corner stands between its ends.
+    [facet[k], *d, facet[(k + 1) % 3], facet[(k + 2) % 3]]
 }

@@ -443,7 +443,22 @@ fn a_doubled_facet_on_an_open_shell_is_refused() {
         .iter()
         .map(|b| m.solid(b, None).unwrap_err())
         .collect();
-    assert!(refusals.iter().all(|r| r.kind == "not-closed"));
+    // The facet and its copy part from the rest, which is open by itself.
+    let kinds: Vec<_> = m
+        .bodies()
+        .iter()
+        .zip(&refusals)
+        .map(|(b, r)| (b.triangles, r.kind))
+        .collect();
+    assert!(
+        kinds.iter().all(|k| *k
+            == if k.0 == 1 {
+                (1, "duplicate")
+            } else {
+                (10, "not-closed")
+            }),
+        "{kinds:?}"
+    );
     assert!(refusals.iter().map(|r| r.open_edges).sum::<u64>() >= open);
     let counted: usize = m.bodies().iter().map(|b| b.triangles).sum();
     assert_eq!(counted, 12);

@@ -13,6 +13,7 @@ use super::file::{AssemblyFile, MeshChoice};
 use super::reader::Shared;
 use super::{read, service, smear, tree};
 use crate::error::{Error, Kind, Warning};
+use crate::format::{Family, detect};
 
 /// The deepest nesting of groups and included files.
 pub const DEEPEST: usize = 32;
@@ -160,6 +161,17 @@ impl Loader {
         };
         let file = File::open(path).map_err(cannot)?;
         let mut bytes = Vec::new();
+        // A file named as a mesh may be far larger than any assembly.
+        let a_mesh = || {
+            Error::new(
+                Kind::UnknownFormat,
+                "this is a mesh, not an assembly file",
+                "weigh it with `bismar weigh`, or name it as the `mesh` of a part in an assembly file (TOML)",
+            )
+        };
+        if Family::from_path(path).is_some() {
+            return Err(a_mesh());
+        }
         // One byte more than allowed is enough to know, whatever the file claims its length to be.
         file.take(LARGEST + 1)
             .read_to_end(&mut bytes)
@@ -187,6 +199,9 @@ impl Loader {
             });
         }
         String::from_utf8(bytes).map_err(|e| {
+            if detect(e.as_bytes(), path, None).is_ok() {
+                return a_mesh();
+            }
             let valid = e.utf8_error().valid_up_to();
             let before = &e.as_bytes()[..valid];
             let line = before.iter().filter(|b| **b == b'\n').count() as u64 + 1;

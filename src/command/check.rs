@@ -148,6 +148,16 @@ fn answer(
     } else {
         audit.file
     };
+    let mut kinds = args.tested();
+    let mut found = file_findings
+        .iter()
+        .chain(bodies.iter().flat_map(|b| &b.findings));
+    if found.any(|f| f.kind == FindingKind::SelfOverlap) {
+        // Without the search a surface that is written twice still shows. Only where it does is the
+        // kind among those tested: elsewhere its absence would prove nothing.
+        kinds = TESTED_WITH_OVERLAP;
+    }
+    let tested = soundness::tested(&m.mesh, kinds);
     let sound = !bodies.is_empty()
         && bodies.iter().all(|b| b.sound)
         && !file_findings.iter().any(Finding::is_unsound);
@@ -173,7 +183,7 @@ fn answer(
         unit_assumed: m.unit_assumed,
         bounds_m: m.mesh.bounds().map(|b| b.map(|p| p.map(|x| x * metres))),
         sound: Some(sound),
-        tested: soundness::tested(&m.mesh, args.tested()),
+        tested,
         findings: file_findings,
         error: None,
         bodies,

@@ -12,6 +12,7 @@ use crate::format::{self, Family};
 use crate::mesh::{Mesh, Soup};
 use crate::quantity::LengthUnit;
 use crate::report::copy::{Copied, StepDone};
+use crate::report::picture::PictureFormat;
 use crate::soundness::mend;
 
 /// Options that write files.
@@ -23,8 +24,8 @@ pub(super) struct CopyArgs {
     /// Write a plain copy (.stl, .obj or .3mf)
     #[arg(long, value_name = "OUT")]
     pub(super) write: Option<PathBuf>,
-    /// Draw the mesh from three sides with its findings marked and numbered (.svg)
-    #[arg(long, value_name = "FILE.svg")]
+    /// Draw the mesh from three sides with its findings marked and numbered (.svg or .png)
+    #[arg(long, value_name = "FILE")]
     pub(super) picture: Option<PathBuf>,
 }
 
@@ -64,12 +65,8 @@ impl CopyArgs {
         for out in self.mend.iter().chain(&self.write) {
             family_of(out)?;
         }
-        if self
-            .picture
-            .as_ref()
-            .is_some_and(|p| p.extension().is_none_or(|e| !e.eq_ignore_ascii_case("svg")))
-        {
-            return usage("--picture draws SVG", "name the picture .svg");
+        if let Some(picture) = &self.picture {
+            PictureFormat::of(picture)?;
         }
         let place = |p: &Path| std::fs::canonicalize(p).ok();
         let mut places: Vec<PathBuf> = place(path).into_iter().collect();

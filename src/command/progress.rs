@@ -6,6 +6,8 @@ use std::sync::{Arc, Condvar, Mutex, MutexGuard, PoisonError};
 use std::thread::JoinHandle;
 use std::time::{Duration, Instant};
 
+use unicode_width::UnicodeWidthChar as _;
+
 use super::Common;
 use crate::progress::{Progress, Watch};
 
@@ -52,7 +54,9 @@ impl Terminal {
     /// Quiet with `-q` and where standard error is no terminal.
     pub(super) fn new(common: &Common) -> Self {
         let shared = Arc::new(Shared::default());
-        let seen = !common.quiet && std::io::stderr().is_terminal();
+        // A terminal that cannot go back to the start of its line would get a line every time.
+        let dumb = std::env::var_os("TERM").is_some_and(|t| t == "dumb");
+        let seen = !common.quiet && !dumb && std::io::stderr().is_terminal();
         let painter = seen.then(|| {
             let shared = Arc::clone(&shared);
             std::thread::spawn(move || paint(&shared))
@@ -107,37 +111,43 @@ impl Watch for Shared {
 }
 
 fn paint(shared: &Shared) {
-    let mut drawn = false;
+    let begun = Instant::now();
+    let mut drawn = String::new();
+    let wipe = |text: &str| {
+        let mut err = std::io::stderr().lock();
+        let _ = write!(err, "\r\x1b[2K{text}").and_then(|()| err.flush());
+    };
     let mut state = shared.state();
     while !state.over {
         (state, _) = shared
             .stop
             .wait_timeout(state, EVERY)
             .unwrap_or_else(PoisonError::into_inner);
-        // The innermost stage says most.
-        let line = state
-            .stages
-            .iter()
-            .rev()
-            .find(|s| s.since.elapsed() >= PATIENCE)
-            .filter(|_| !state.over)
-            .map(line);
-        let Some(line) = line else {
+        if state.over || begun.elapsed() < PATIENCE {
             continue;
-        };
-        let width = terminal_size::terminal_size_of(std::io::stderr()).map_or(80, |(w, _)| w.0);
-        let line: String = line
-            .chars()
-            .take(usize::from(width).saturating_sub(1))
-            .collect();
-        let mut err = std::io::stderr().lock();
-        let _ = write!(err, "\r\x1b[2K{line}").and_then(|()| err.flush());
-        drawn = true;
+        }
+        // The innermost stage says most. Many short ones are one long wait, so it is the command's
+        // time that counts and not theirs; what has ended is not shown as if it went on.
+        let line = state.stages.last().map(line).unwrap_or_default();
+        if line != drawn {
+            let width = terminal_size::terminal_size_of(std::io::stderr()).map_or(80, |(w, _)| w.0);
+            wipe(cut(&line, usize::from(width).saturating_sub(1)));
+            drawn = line;
+        }
     }
-    if drawn {
-        let mut err = std::io::stderr().lock();
-        let _ = write!(err, "\r\x1b[2K").and_then(|()| err.flush());
+    if !drawn.is_empty() {
+        wipe("");
     }
+}
+
+/// As much of a line as fits, so that it never wraps: what has wrapped cannot be wiped.
+fn cut(line: &str, columns: usize) -> &str {
+    let mut used = 0;
+    let end = line.char_indices().find(|(_, c)| {
+        used += c.width().unwrap_or(0);
+        used > columns
+    });
+    end.map_or(line, |(at, _)| &line[..at])
 }
 
 fn line(stage: &Running) -> String {
@@ -167,5 +177,14 @@ mod tests {
         assert_eq!(text(1), "pairs … 100 %, 0 s");
         shared.end(a);
         assert_eq!(text(0), "pairs … 100 %, 0 s");
+    }
+
+    #[test]
+    fn a_line_is_cut_by_the_columns_that_it_takes() {
+        assert_eq!(cut("reading", 7), "reading");
+        assert_eq!(cut("reading", 4), "read");
+        assert_eq!(cut("\u{8f66}\u{8f6e}x", 3), "\u{8f66}");
+        assert_eq!(cut("\u{8f66}\u{8f6e}x", 5), "\u{8f66}\u{8f6e}x");
+        assert_eq!(cut("x", 0), "");
     }
 }

@@ -264,9 +264,9 @@ fn answer(
     };
     let cuts = args.filled.then(|| {
         let _stage = progress.stage("seeking surfaces that cut each other", 0);
-        soundness::cuts(&m.mesh, 0)
+        soundness::cut_bodies(&m.mesh)
     });
-    let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.contains_key(&(i, i)));
+    let is_cut = |i: usize| cuts.as_ref().is_some_and(|c| c.themselves[i]);
     let mut audit = soundness::audit(&m.mesh, metres, 3, Depth::Figures);
     let chosen = picked(&m.mesh, input)?;
     let mut results: Vec<Weighing> = chosen
@@ -351,10 +351,12 @@ fn answer(
             if made.is_some() {
                 print_together(&mut sum, &results, &printed, metres, substance);
             }
-            if args.filled {
-                whole_filled(&m.mesh, &chosen, metres, sum, substance, about, progress)
-            } else {
-                sum
+            match &cuts {
+                // The same space can be shared only where surfaces cut or boxes meet.
+                Some(c) if c.any || boxes_meet(&chosen) => {
+                    whole_filled(&m.mesh, &chosen, metres, sum, substance, about, progress)
+                }
+                _ => sum,
             }
         }
     });
@@ -381,7 +383,7 @@ fn answer(
         },
         overlap: match &cuts {
             None => "untested",
-            Some(none) if none.is_empty() && !estimated => "none",
+            Some(c) if !c.any && !estimated => "none",
             Some(_) => "counted-once",
         },
         bodies: Some(bodies),
@@ -546,6 +548,10 @@ fn printed_uncertainty(mass: &Moments, substance: Option<&Substance>) -> Option<
 
 /// Of a body that only cracks keep open, the refusal names the distance that closes it.
 fn advise_joining(refused: &mut Refused, findings: &[Finding], unit: LengthUnit) {
+    // Where facets stand twice, joining alone does not help.
+    if refused.kind != "not-closed" {
+        return;
+    }
     if let Some(distance) = closing_distance(findings, unit) {
         refused.advice = format!(
             "the surface is cracked: stitch it in the model and export again, or weigh it with --join \"{distance}\""
@@ -595,7 +601,16 @@ fn filled(
     }
 }
 
-/// All bodies together with each region counted once; exact where nothing is shared.
+/// Whether any two bodies' boxes share space; of more than a thousand bodies that is taken as so.
+fn boxes_meet(bodies: &[(usize, &Body)]) -> bool {
+    let apart = |a: &Body, b: &Body| {
+        (0..3).any(|k| a.bounds[1][k] <= b.bounds[0][k] || b.bounds[1][k] <= a.bounds[0][k])
+    };
+    let n = bodies.len();
+    n > 1000 || (0..n).any(|i| (i + 1..n).any(|j| !apart(bodies[i].1, bodies[j].1)))
+}
+
+/// All bodies together with each region counted once.
 fn whole_filled(
     mesh: &Mesh,
     bodies: &[(usize, &Body)],
@@ -605,15 +620,7 @@ fn whole_filled(
     about: Option<[f64; 3]>,
     progress: Progress<'_>,
 ) -> Whole {
-    let apart = |a: &Body, b: &Body| {
-        (0..3).any(|k| a.bounds[1][k] <= b.bounds[0][k] || b.bounds[1][k] <= a.bounds[0][k])
-    };
     let all: Vec<&Body> = bodies.iter().map(|(_, b)| *b).collect();
-    let none_meet = || (0..all.len()).all(|i| (i + 1..all.len()).all(|j| apart(all[i], all[j])));
-    // The same space can be shared only where boxes are.
-    if all.len() <= 1000 && none_meet() && soundness::cuts(mesh, 0).is_empty() {
-        return sum;
-    }
     let Ok(found) = soundness::filled_bodies(mesh, &all, FILLED_TOLERANCE, progress) else {
         return sum;
     };

@@ -167,9 +167,9 @@ mod tests {
             assert!((v - want).abs() < 2e-12, "{p:?}: {v}");
         }
         let corner = potential(&cube(), &Vector3::repeat(0.5));
-        assert!((corner - 1.19003868198977676).abs() < 1e-14, "{corner}");
+        assert!((corner - 1.190_038_681_989_776_8).abs() < 1e-14, "{corner}");
         let centre = potential(&cube(), &Vector3::zeros());
-        assert!((centre - 2.38007736397955351).abs() < 1e-14, "{centre}");
+        assert!((centre - 2.380_077_363_979_553_5).abs() < 1e-14, "{centre}");
     }
 
     /// U = ½ Σ n·r (m·r L) − ½ Σ (n·r)² ω, from the same terms: −2U is the sum of r·(its dyads).

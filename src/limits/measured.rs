@@ -329,7 +329,7 @@ impl Measured {
                 let (edge, _) = t.least(&c);
                 let (n, up) = edge.leaning(&t.towards.unwrap_or(edge.outward));
                 let arm = n.dot(&(edge.at - c)).hypot(up.dot(&(c - edge.at)));
-                (place(arm) / arm).min(1.0).max(4.0 * f64::EPSILON)
+                (place(arm) / arm).clamp(4.0 * f64::EPSILON, 1.0)
             }
             Self::Reaction(s) => 1e-13 * m.zeroth * s.gravity * (1.0 + s.a.norm() * diagonal),
             Self::Unbalance(..) => 1e-13 * m.zeroth * diagonal,

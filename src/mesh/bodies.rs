@@ -132,16 +132,22 @@ impl Mesh {
                 advice,
             })
         };
+        // First, since it is said of open bodies too: their edges tell how open they are.
+        if shells().any(|s| !s.doubled.is_empty()) {
+            return refuse(
+                "duplicate",
+                if open_edges > 0 {
+                    "facets stand twice, and the surface is open with or without the second ones: remove them, close the surface, and export again; `bismar check` lists the places"
+                } else {
+                    "facets stand twice where dropping one would open the surface: remove the solid that is drawn over another, and export again"
+                }
+                .into(),
+            );
+        }
         if open_edges > 0 {
             return refuse(
                 "not-closed",
                 "close the surface in the program that made it and export again; `bismar check` lists the places".into(),
-            );
-        }
-        if shells().any(|s| !s.doubled.is_empty()) {
-            return refuse(
-                "duplicate",
-                "facets stand twice where dropping one would open the surface: remove the solid that is drawn over another, and export again".into(),
             );
         }
         if nested.is_none() && body.shells.iter().any(|r| r.part == Part::Nested) {

@@ -24,6 +24,7 @@ pub(crate) use fans::{Pinch, pinches};
 pub use join::Joined;
 pub(crate) use join::{clusters, moved_triangles, swept};
 pub(crate) use loops::Loop;
+pub(crate) use nesting::containers;
 pub(crate) use shells::{Shell, middle};
 pub(crate) use soup::each;
 pub use soup::{ReaderNote, Records, Run, Soup, Triangles, WarpedPolygon};

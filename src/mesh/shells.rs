@@ -47,7 +47,7 @@ pub(crate) struct Shell {
     pub(crate) open: Vec<OpenEdge>,
     /// Those edges strung together.
     pub(crate) loops: Vec<Loop>,
-    /// Same-facing facets in it that could not be dropped.
+    /// Same-facing facets in it of which none could be dropped.
     pub(crate) doubled: Vec<u32>,
     /// Lower and upper corner (file unit).
     pub(crate) bounds: [[f64; 3]; 2],
@@ -110,7 +110,8 @@ impl Shells {
         let mut sets = Sets::new(n);
         let odd = match_edges(&corners, &name_of, &sets, scratch);
         let mut duplicates = Duplicates::among(&odd, &corners, &name_of);
-        let mut restored: Vec<u32> = Vec::new();
+        // Facets that stand twice and stay, with those that they repeat.
+        let mut doubled: Vec<u32> = Vec::new();
         if !odd.is_empty() {
             let plain = (!duplicates.surplus.is_empty()).then(|| sets.copy());
             let join = |sets: &Sets, left_out: &dyn Fn(u32) -> bool| {
@@ -121,17 +122,19 @@ impl Shells {
             join(&sets, &left_out);
             if let Some(plain) = plain {
                 let open = open_edges(&odd, &left_out, &sets);
-                restored = duplicates
+                let restored: Vec<(u32, u32)> = duplicates
                     .surplus
                     .iter()
                     .filter(|(_, kept)| open.contains_key(&sets.find(**kept)))
-                    .map(|(&t, _)| t)
+                    .map(|(&t, &kept)| (t, kept))
                     .collect();
-                restored.sort_unstable();
+                doubled = restored.iter().flat_map(|&(t, kept)| [t, kept]).collect();
+                doubled.sort_unstable();
+                doubled.dedup();
                 if !restored.is_empty() {
                     // Dropping them closes nothing: they stay, and the shell says so.
                     sets = plain;
-                    for t in &restored {
+                    for (t, _) in &restored {
                         duplicates.surplus.remove(t);
                     }
                     let left_out = |t: u32| {
@@ -173,7 +176,7 @@ impl Shells {
                 name: name_of(first),
                 joined: Vec::new(),
                 open: open.remove(&first).unwrap_or_default(),
-                doubled: restored
+                doubled: doubled
                     .iter()
                     .copied()
                     .filter(|&t| sets.find(t) == first)

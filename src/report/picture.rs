@@ -6,6 +6,7 @@
 mod edges;
 mod marks;
 mod view;
+mod write;
 
 use std::fmt::Write as _;
 use std::path::Path;
@@ -14,9 +15,10 @@ use super::check::CheckedFile;
 use super::digits::{length_in, significant};
 use super::words::{box_size, kind_word, unit_of};
 use crate::error::Result;
-use crate::format::write_whole;
 use crate::mesh::Mesh;
 use crate::soundness::{Finding, Severity};
+pub use write::{PictureFormat, png, write_picture};
+
 use edges::{Edge, EdgeKind, edges_of};
 use view::{DIRECTIONS, View};
 
@@ -27,13 +29,13 @@ const MARGIN: [f64; 2] = [70.0, 46.0];
 /// Most lines of one view; the longest are kept.
 const MOST_LINES: usize = 40_000;
 
-/// Draws the mesh and writes the picture.
+/// Draws the mesh and writes the picture, as SVG or PNG by the ending of `path`.
 ///
 /// # Errors
-/// `cannot-write`.
+/// Those of [`write_picture`].
 pub fn draw(path: &Path, mesh: &Mesh, file: &CheckedFile) -> Result<()> {
     let svg = svg(mesh, file);
-    write_whole(path, |w| w.write_all(svg.as_bytes()))
+    write_picture(path, &svg)
 }
 
 /// A finding with its number in the list and the body it is on.
@@ -267,7 +269,11 @@ fn legend(out: &mut String, file: &CheckedFile, list: &[Numbered<'_>], thinned: 
                 )
             });
             let more = if f.count > 1 { " and others" } else { "" };
-            line(out, &format!("    at {at}{rim}{more}"), "fill=\"#444\"");
+            line(
+                out,
+                &format!("    at {at}{rim}{more}"),
+                "fill=\"#444\" xml:space=\"preserve\"",
+            );
         }
     }
     if list.len() > ROWS {

@@ -23,7 +23,8 @@ const MOST_EDGES: usize = 4_000_000;
 /// join it with: that is a heap of surfaces.
 const NEIGHBOURS: usize = 8;
 
-/// One seam: open edges that hang together and close when joined.
+/// One seam: open edges that hang together and close when joined. What hangs together with them
+/// and stays open is no part of it.
 #[derive(Clone, Debug, PartialEq)]
 pub(crate) struct Crack {
     /// The least distance within which vertices must be joined (file unit).
@@ -38,9 +39,40 @@ pub(crate) fn cracks(boundary: &Boundary) -> Vec<Crack> {
     if pairs.is_empty() {
         return Vec::new();
     }
-    let mut found = Seams::new(boundary).grow(&pairs);
+    let mut seams = Seams::new(boundary);
+    let mut found = seams.grow(&pairs);
+    found.extend(of_part(boundary, &seams.sealed(), &pairs));
     found.sort_by_key(|c| c.edges.first().copied());
     hold(boundary, found)
+}
+
+/// Cracks among open edges that cancel although what hangs together with them stays open: a slit
+/// that runs into a hole. Each is grown apart from that hole, so that its distance is its own.
+fn of_part(boundary: &Boundary, sealed: &[u32], pairs: &[(f64, u32, u32)]) -> Vec<Crack> {
+    if sealed.is_empty() {
+        return Vec::new();
+    }
+    let mut at_seam = vec![false; boundary.points.len()];
+    let edges: Vec<_> = sealed.iter().map(|&i| boundary.edges[i as usize]).collect();
+    for e in &edges {
+        at_seam[e.from as usize] = true;
+        at_seam[e.to as usize] = true;
+    }
+    let pairs: Vec<_> = pairs
+        .iter()
+        .filter(|&&(_, i, j)| at_seam[i as usize] && at_seam[j as usize])
+        .copied()
+        .collect();
+    let part = Boundary {
+        vertices: boundary.vertices.clone(),
+        points: boundary.points.clone(),
+        edges,
+    };
+    let mut found = Seams::new(&part).grow(&pairs);
+    for i in found.iter_mut().flat_map(|c| &mut c.edges) {
+        *i = sealed[*i as usize];
+    }
+    found
 }
 
 /// Pairs of vertices that may face each other across a crack, nearest first.
@@ -98,6 +130,8 @@ impl Room {
 struct Seams<'a> {
     boundary: &'a Boundary,
     clusters: Merge,
+    /// How many vertices each cluster has, under the cluster's name.
+    sizes: Vec<u32>,
     /// Edges at each cluster, under the cluster's name.
     edges_at: Vec<Vec<u32>>,
     /// What is left over on each edge between clusters.
@@ -116,6 +150,7 @@ impl<'a> Seams<'a> {
         let mut out = Self {
             boundary,
             clusters: Merge::new(n),
+            sizes: vec![1; n],
             edges_at: vec![Vec::new(); n],
             net: HashMap::new(),
             groups: Merge::new(n),
@@ -173,6 +208,7 @@ impl<'a> Seams<'a> {
         }
         // An edge between the two has shrunk to nothing now.
         self.clusters.hang(renamed, name);
+        self.sizes[name as usize] += self.sizes[renamed as usize];
         for &e in &edges {
             self.count(e, 1);
         }
@@ -181,7 +217,7 @@ impl<'a> Seams<'a> {
     }
 
     /// Joins pair after pair; what closes at one distance stays as it is.
-    fn grow(mut self, pairs: &[(f64, u32, u32)]) -> Vec<Crack> {
+    fn grow(&mut self, pairs: &[(f64, u32, u32)]) -> Vec<Crack> {
         let mut closed: Vec<(u32, f64)> = Vec::new();
         for batch in pairs.chunk_by(|a, b| a.0 == b.0) {
             let mut touched: Vec<u32> = Vec::new();
@@ -207,6 +243,23 @@ impl<'a> Seams<'a> {
         for (i, e) in (0u32..).zip(&self.boundary.edges) {
             if let Some(&at) = place.get(&self.groups.find(e.from)) {
                 out[at].edges.push(i);
+            }
+        }
+        out
+    }
+
+    /// Edges that joining has made cancel, in groups that have not closed.
+    fn sealed(&mut self) -> Vec<u32> {
+        let mut out = Vec::new();
+        for (i, e) in (0u32..).zip(&self.boundary.edges) {
+            let (a, b) = (self.clusters.find(e.from), self.clusters.find(e.to));
+            // What lies between vertices that nothing was joined to was not closed by joining.
+            let alone = [(a, e.from), (b, e.to)]
+                .iter()
+                .all(|&(name, v)| name == v && self.sizes[name as usize] == 1);
+            let cancels = a != b && self.net.get(&(a.min(b), a.max(b))).is_none_or(|&n| n == 0);
+            if cancels && !alone && !self.done[self.groups.find(a) as usize] {
+                out.push(i);
             }
         }
         out

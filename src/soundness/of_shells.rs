@@ -3,7 +3,7 @@
 use super::audit::Look;
 use super::cap::{self, centre_of_polyline};
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
-use crate::mesh::{Body, Loop, NestedRule, Part, Shell};
+use crate::mesh::{Body, Loop, NestedRule, Part, Shell, containers};
 
 impl Look<'_> {
     /// Holes, winding conflicts, and what is said of whole shells.
@@ -125,8 +125,48 @@ impl Look<'_> {
             turned.len() as u64,
             places,
             effect,
-            "the shell faces inward: it was turned; export it with its normals outward",
+            match self.body_around(body, turned[0].shell) {
+                Some(around) => format!(
+                    "the shell faces inward and lies inside \"{}\", which has another name: it was turned and counts as a solid; if it is a hollow of \"{}\", give both one name, else export it with its normals outward",
+                    around.id, around.id
+                ),
+                None => "the shell faces inward: it was turned; export it with its normals outward".to_owned(),
+            },
         ));
+    }
+
+    /// The innermost solid of another name that a shell lies in.
+    fn body_around(&self, body: &Body, shell: usize) -> Option<&Body> {
+        /// More boxes about one shell than this are a heap, in which no one solid is meant.
+        const MOST: usize = 64;
+        let shells = &self.mesh.found().shells;
+        let inner = &shells[shell];
+        let encloses = |s: &Shell| {
+            (0..3).all(|k| {
+                s.bounds[0][k] <= inner.bounds[0][k] && inner.bounds[1][k] <= s.bounds[1][k]
+            })
+        };
+        let around: Vec<(&Body, &Shell)> = self
+            .mesh
+            .bodies()
+            .iter()
+            .filter(|b| b.name != body.name)
+            .filter_map(|b| Some((b, &shells[b.roles().first()?.shell])))
+            .filter(|(b, s)| b.closed && encloses(s))
+            .take(MOST + 1)
+            .collect();
+        if around.is_empty() || around.len() > MOST {
+            return None;
+        }
+        let all: Vec<&Shell> = std::iter::once(inner)
+            .chain(around.iter().map(|(_, s)| *s))
+            .collect();
+        let volume = |i: usize| all[i].solid.moments.zeroth.abs();
+        containers(&self.mesh.soup.triangles, &all)[0]
+            .iter()
+            .copied()
+            .min_by(|&i, &j| volume(i).total_cmp(&volume(j)))
+            .map(|i| around[i - 1].0)
     }
 
     fn nested(&self, body: &Body, put: &mut dyn FnMut(Finding)) {

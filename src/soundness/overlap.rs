@@ -12,12 +12,12 @@
 //! three corners are reported as duplicates, within a name; triangles without area never count.
 //! The signs are exact, and so are the counts.
 
-use std::collections::{BTreeMap, BTreeSet, BinaryHeap, HashMap};
-use std::sync::{Mutex, PoisonError};
+use std::collections::{BTreeMap, BTreeSet, HashMap};
 
 use super::filled::filled_bodies;
 use super::finding::{EffectIs, Finding, FindingKind, Place, Severity};
 use super::shared_space::common_space_of_bodies;
+use super::tally::{CutBodies, Cuts, Marks, Sink, Tallies};
 use crate::geometry::{
     BoxTree, Corners, Meeting, Point, Select, meeting, meeting_point, meeting_sharing, unfolded,
 };
@@ -33,15 +33,6 @@ const MOST_VOLUMES: usize = 20;
 /// The error that an estimated volume is refined to, as a part of the body's volume.
 const TOLERANCE: f64 = 1e-4;
 
-/// What overlaps: how often, and where first.
-#[derive(Clone, Debug, Default, PartialEq, Eq)]
-pub struct Cuts {
-    /// How many pairs of triangles overlap.
-    pub count: u64,
-    /// The first of them in file order, the lower number first.
-    pub pairs: Vec<(u32, u32)>,
-}
-
 /// Findings of overlap.
 #[derive(Clone, Debug, Default)]
 pub struct OverlapFindings {
@@ -55,7 +46,16 @@ pub struct OverlapFindings {
 /// for a body with itself). Each entry lists up to `places` pairs.
 pub fn cuts(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
     let homes = Homes::of(mesh);
-    each!(&mesh.soup.triangles, f => search(mesh, &homes, f, places))
+    each!(&mesh.soup.triangles, f => counted(mesh, &homes, f, places))
+}
+
+/// Which bodies cut themselves, and whether anything overlaps at all: what [`cuts`] would have
+/// entries for, without counting. Once one pair shows, no further pair of the same is judged.
+pub fn cut_bodies(mesh: &Mesh) -> CutBodies {
+    let homes = Homes::of(mesh);
+    let marks = Marks::new(mesh.bodies().len());
+    each!(&mesh.soup.triangles, f => search(mesh, &homes, f, &marks));
+    marks.into_bodies()
 }
 
 /// As [`cuts`]; where there are very many bodies, only the first hundred pairs of them, and bodies
@@ -64,10 +64,10 @@ fn cuts_listed(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
     let mut homes = Homes::of(mesh);
     each!(&mesh.soup.triangles, f => {
         if mesh.bodies().len() <= FEW_BODIES || places == 0 {
-            return search(mesh, &homes, f, places);
+            return counted(mesh, &homes, f, places);
         }
         // Of very many pairs only the first are listed with their places: counts come first.
-        let mut found = search(mesh, &homes, f, 0);
+        let mut found = counted(mesh, &homes, f, 0);
         let listed = |pairs: &BTreeMap<(usize, usize), Cuts>| -> Vec<(usize, usize)> {
             let selves = pairs.keys().filter(|(a, b)| a == b);
             let others = pairs.keys().filter(|(a, b)| a != b).take(MOST_PAIRS);
@@ -76,7 +76,7 @@ fn cuts_listed(mesh: &Mesh, places: usize) -> BTreeMap<(usize, usize), Cuts> {
         let wanted = listed(&found);
         let bodies: BTreeSet<usize> = wanted.iter().flat_map(|&(a, b)| [a, b]).collect();
         homes.members = Some(triangles_of(mesh, bodies.iter().map(|&b| &mesh.bodies()[b])));
-        let mut places = search(mesh, &homes, f, places);
+        let mut places = counted(mesh, &homes, f, places);
         for key in wanted {
             if let (Some(cuts), Some(first)) = (found.get_mut(&key), places.remove(&key)) {
                 cuts.pairs = first.pairs;
@@ -297,24 +297,6 @@ struct Found {
     limit: usize,
 }
 
-#[derive(Default)]
-struct Tally {
-    count: u64,
-    first: BinaryHeap<(u32, u32)>,
-}
-
-impl Tally {
-    fn add(&mut self, pair: (u32, u32), places: usize) {
-        self.count += 1;
-        if self.first.len() < places {
-            self.first.push(pair);
-        } else if self.first.peek().is_some_and(|last| pair < *last) {
-            self.first.pop();
-            self.first.push(pair);
-        }
-    }
-}
-
 impl Found {
     fn note_along(&mut self, t: u32, u: u32) {
         self.along.extend([t, u]);
@@ -326,61 +308,21 @@ impl Found {
     }
 }
 
-/// What was found, by the two bodies. Threads share it, since each of very many pairs of bodies
-/// would else be held once for every part of the work that met it. It does not depend on the order
-/// in which it is filled.
-struct Tallies {
-    shards: Vec<Mutex<HashMap<(u32, u32), Tally>>>,
-    places: usize,
-}
-
-impl Tallies {
-    fn new(places: usize) -> Self {
-        Self {
-            shards: (0..256).map(|_| Mutex::default()).collect(),
-            places,
-        }
-    }
-
-    fn put(&self, a: &Home, b: &Home, pair: (u32, u32)) {
-        let key = (a.body.min(b.body), a.body.max(b.body));
-        let shard = key.0.wrapping_mul(31).wrapping_add(key.1) as usize % self.shards.len();
-        let mut tallies = self.shards[shard]
-            .lock()
-            .unwrap_or_else(PoisonError::into_inner);
-        tallies.entry(key).or_default().add(pair, self.places);
-    }
-
-    fn into_cuts(self) -> BTreeMap<(usize, usize), Cuts> {
-        let cuts = |tally: Tally| Cuts {
-            count: tally.count,
-            pairs: tally.first.into_sorted_vec(),
-        };
-        self.shards
-            .into_iter()
-            .flat_map(|shard| shard.into_inner().unwrap_or_else(PoisonError::into_inner))
-            .map(|((a, b), tally)| ((a as usize, b as usize), cuts(tally)))
-            .collect()
-    }
-}
-
-fn search(
-    mesh: &Mesh,
-    homes: &Homes,
-    facets: &impl Corners,
-    places: usize,
-) -> BTreeMap<(usize, usize), Cuts> {
+/// All pairs of triangles that overlap, handed to `sink` as far as it wants them.
+fn search(mesh: &Mesh, homes: &Homes, facets: &impl Corners, sink: &impl Sink) {
     if homes.of_shell.is_empty() {
-        return BTreeMap::new();
+        return;
     }
     let ids = &mesh.found().corners;
     let tree = BoxTree::new(facets, homes.select());
-    let tallies = Tallies::new(places);
     let parts = tree.pairs_within(facets, |found: &mut Found, t, u, p, q| {
         let (a, b) = (homes.home(t), homes.home(u));
+        if !sink.wants(a.body, b.body) {
+            return;
+        }
         match judged(ids, t, u, p, q, a, b) {
             Judged::Free => {}
-            Judged::Overlap => tallies.put(a, b, (t, u)),
+            Judged::Overlap => sink.put(a.body, b.body, (t, u)),
             Judged::AlongEdges => found.note_along(t, u),
         }
     });
@@ -388,8 +330,18 @@ fn search(
     along.sort_unstable();
     along.dedup();
     if !along.is_empty() {
-        along_edges(homes, facets, ids, &along, &tallies);
+        along_edges(homes, facets, ids, &along, sink);
     }
+}
+
+fn counted(
+    mesh: &Mesh,
+    homes: &Homes,
+    facets: &impl Corners,
+    places: usize,
+) -> BTreeMap<(usize, usize), Cuts> {
+    let tallies = Tallies::new(places);
+    search(mesh, homes, facets, &tallies);
     tallies.into_cuts()
 }
 
@@ -473,7 +425,7 @@ fn along_edges(
     facets: &impl Corners,
     ids: &[[u32; 3]],
     along: &[u32],
-    tallies: &Tallies,
+    sink: &impl Sink,
 ) {
     // By edge: the triangles that pass it, and whether they do so from low to high.
     let mut at_edge: HashMap<(u32, u32), Vec<(u32, bool)>> = HashMap::new();
@@ -527,7 +479,9 @@ fn along_edges(
     let tree = BoxTree::new(facets, Select::List(along));
     tree.pairs_within(facets, |_: &mut (), t, u, p, q| {
         let (a, b) = (homes.home(t), homes.home(u));
-        if !matches!(judged(ids, t, u, p, q, a, b), Judged::AlongEdges) {
+        if !sink.wants(a.body, b.body)
+            || !matches!(judged(ids, t, u, p, q, a, b), Judged::AlongEdges)
+        {
             return;
         }
         let Meeting::EdgeOnEdge { edges: [e, f] } = meeting(p, q) else {
@@ -535,7 +489,7 @@ fn along_edges(
         };
         let hollow = wrong_side(a, b) > 0;
         if enters(&p[(e + 2) % 3], u, f, hollow) || enters(&q[(f + 2) % 3], t, e, hollow) {
-            tallies.put(a, b, (t, u));
+            sink.put(a.body, b.body, (t, u));
         }
     });
 }

@@ -152,6 +152,24 @@ proptest! {
     #![proptest_config(ProptestConfig::with_cases(300))]
 
     #[test]
+    fn marks_say_what_counts_say(
+        a in cubes(3, 2), b in cubes(3, 2), c in cubes(3, 2), by in -1i32..=1, d in any::<u64>()
+    ) {
+        let at = |cubes: &Cubes, by: i32| -> Vec<Facet> {
+            let facets = cubes.facets(|i| d >> (i % 64) & 1 == 1);
+            facets.iter().map(|t| t.map(|p| p.map(|x| x + f64::from(by)))).collect()
+        };
+        // The first two share a name, so that a body may cut itself.
+        let m = mesh(&[("a", [at(&a, 0), at(&b, by)].concat()), ("c", at(&c, 2 * by))]);
+        let counted = cuts(&m, 0);
+        let marked = cut_bodies(&m);
+        prop_assert_eq!(marked.any, !counted.is_empty());
+        for i in 0..m.bodies().len() {
+            prop_assert_eq!(marked.themselves[i], counted.contains_key(&(i, i)));
+        }
+    }
+
+    #[test]
     fn a_sound_solid_never_overlaps_itself(a in cubes(3, 1), cut in any::<u64>()) {
         let m = mesh(&[("a", a.facets(|i| cut >> (i % 64) & 1 == 1))]);
         prop_assert_eq!(cuts(&m, 5), BTreeMap::new());

@@ -321,6 +321,11 @@ def defects():
     fixture("crack-and-hole.obj", obj([("box", tears)]), 18, None,
             "counted by hand: a ring of four edges 1/512 mm apart, and the left face missing", 1, 1,
             [finding("crack", "blocks", 1), finding("hole", "blocks", 1)])
+    slit = [list(t) for t in CUBE[1:]]
+    slit[0][0] = (slit[0][0][0] + 2.0**-9, *slit[0][0][1:])
+    fixture("slit-into-a-hole.obj", obj([("box", slit)]), 11, None,
+            "counted by hand: a facet missing, and its neighbour torn by 1/512 mm at a corner of both",
+            1, 1, [finding("crack", "blocks", 1), finding("hole", "blocks", 1)])
     two = [t for t in filled[:-1] if t not in front]
     third, fifth = (3, 0, 0), (8, 0, 0)
     front = [[a, third, (0, 0, 10)], [third, fifth, (0, 0, 10)], [fifth, (10, 0, 10), (0, 0, 10)],

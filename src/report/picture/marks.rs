@@ -7,7 +7,7 @@ use super::edges::{Edge, EdgeKind};
 use super::view::View;
 use super::{Numbered, pieces};
 use crate::geometry::Corners;
-use crate::mesh::{Body, Mesh, Shell, each};
+use crate::mesh::{Body, Loop, Mesh, Shell, each};
 use crate::soundness::FindingKind;
 
 /// Most numbers that one finding gets in a view.
@@ -27,7 +27,7 @@ pub(super) fn draw(
     for n in list {
         let body = mesh.bodies().iter().find(|b| Some(b.id.as_str()) == n.body);
         let targets = match (n.finding.kind, body) {
-            (FindingKind::Hole, Some(body)) => holes(out, view, mesh, body),
+            (FindingKind::Hole, Some(body)) => holes(out, view, mesh, body, n),
             (FindingKind::InsideOut | FindingKind::NestedSolid, _) => {
                 shells(out, view, mesh, edges, n)
             }
@@ -57,11 +57,27 @@ pub(super) fn draw(
     numbers(out, view, labels);
 }
 
-fn holes(out: &mut String, view: &View, mesh: &Mesh, body: &Body) -> Vec<[f64; 3]> {
+/// The loops that the finding lists: others are cracks or T-junctions.
+fn holes(
+    out: &mut String,
+    view: &View,
+    mesh: &Mesh,
+    body: &Body,
+    n: &Numbered<'_>,
+) -> Vec<[f64; 3]> {
     let mut targets = Vec::new();
+    let listed: HashSet<&[u32]> = n
+        .finding
+        .places
+        .iter()
+        .map(|p| p.triangles.as_slice())
+        .collect();
+    // A place names its loop by the loop's first triangles.
+    let is_listed = |l: &&Loop| listed.contains(&l.triangles[..l.triangles.len().min(64)]);
     for l in shells_of(mesh, body)
         .flat_map(|s| &s.loops)
         .filter(|l| !l.conflict)
+        .filter(is_listed)
     {
         let points: Vec<[f64; 3]> = l
             .vertices

@@ -157,3 +157,21 @@ fn open_bodies_and_broken_meshes() {
     let errors = bench.faults(&format!("[assembly]\nunit = \"mm\"\n{PART}{lid}"));
     assert_eq!((errors[0].kind, errors.len()), (Kind::Truncated, 1));
 }
+
+#[test]
+fn a_mesh_in_place_of_an_assembly_is_told_as_such() {
+    let bench = bench();
+    let mut stl = vec![0u8; 84];
+    stl[80] = 1;
+    stl.extend([0xff; 50]);
+    bench.put("part.obj", "v 0 0 0\n");
+    std::fs::write(bench.dir.path().join("part.STL"), &stl).unwrap();
+    std::fs::write(bench.dir.path().join("part.bin"), &stl).unwrap();
+    for name in ["part.obj", "part.STL", "part.bin"] {
+        let errors = bench.load(name).unwrap_err();
+        assert_eq!(errors.len(), 1, "{errors:#?}");
+        assert_eq!(errors[0].kind, Kind::UnknownFormat);
+        assert!(errors[0].message.contains("a mesh"), "{errors:#?}");
+        assert!(errors[0].advice.contains("bismar weigh"), "{errors:#?}");
+    }
+}

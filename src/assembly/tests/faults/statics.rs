@@ -84,7 +84,7 @@ fn statics_and_their_limits() {
         ),
         Kind::Usage,
         19,
-        &["four", "4"][1..].as_ref(),
+        &["4"],
     );
     fault(&format!("{ITEM}[hang]\n"), Kind::Usage, 6, &["hook"]);
     fault(
