@@ -52,6 +52,7 @@ mod sum;
 mod sure;
 mod tree;
 mod trim;
+mod trim_states;
 
 #[cfg(test)]
 mod tests;
@@ -75,6 +76,7 @@ pub use smear::Smeared;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
 pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
 pub use trim::{ballast_items, ballast_problem};
+pub use trim_states::Situations;
 
 /// Names as a list for a message, the first of them where there are very many.
 fn listed(names: &[&str]) -> String {

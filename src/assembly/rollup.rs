@@ -52,10 +52,6 @@ pub struct Balance {
     /// Tolerances were stated, and yet nothing bounds the figures.
     #[serde(skip)]
     pub unbounded: bool,
-    /// What each source of error moves the moments of the whole by, one standard deviation each;
-    /// in the order of the file, the same for every state of it.
-    #[serde(skip)]
-    pub drivers: Vec<Moments>,
     /// Basic and predicted mass; absent where no part carries a maturity.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub growth: Option<Growth>,
@@ -312,7 +308,6 @@ pub fn balance_with(
         warnings,
         uncertainty: sure.and_then(|s| s.uncertainty.clone()),
         unbounded: sure.is_some_and(|s| s.unbounded),
-        drivers: sure.map_or_else(Vec::new, Sure::drivers),
         growth: sure.and_then(|s| s.growth.clone()),
         expectations: resolved.expectations.clone(),
         error,

@@ -174,12 +174,13 @@ impl Sure {
         }
     }
 
-    /// What each variable moves the moments of the whole by, one standard deviation each.
-    pub(super) fn drivers(&self) -> Vec<Moments> {
+    /// What each variable moves the moments of the whole by, one standard deviation each, with its
+    /// name.
+    pub(super) fn drivers(&self) -> Vec<(String, Moments)> {
         let variables = self.sources.model.variables().iter();
         let moved = self.tangents.iter().zip(variables);
         moved
-            .map(|(t, v)| t.weighted(v.distribution.standard()))
+            .map(|(t, v)| (v.name.clone(), t.weighted(v.distribution.standard())))
             .collect()
     }
 

@@ -9,18 +9,20 @@ use super::rollup::Total;
 use super::source::MeshFiles;
 use crate::ballast::{Place, Placed, Problem, State, Sure};
 use crate::error::Error;
+use crate::limits::Limit;
 use crate::moments::Moments;
 
 /// Puts the question.
 ///
-/// `states` are the situations in which limits must hold, one without a name for the assembly as
-/// it stands. The files of meshes that ballast is shaped by come second.
+/// `limits` must hold in all of `states`, one of which has no name where there is only the assembly
+/// as it stands. The files of meshes that ballast is shaped by come second.
 ///
 /// # Errors
 /// Faults of the meshes of places.
 pub fn ballast_problem(
     loaded: &Loaded,
     total: &Total,
+    limits: Vec<Limit>,
     states: Vec<State>,
     sure: Option<Sure>,
     meshes: &mut dyn MeshFiles,
@@ -40,7 +42,7 @@ pub fn ballast_problem(
     let [lo, hi] = total.bounds_m.map(Vector3::from);
     let problem = Problem {
         places,
-        limits: loaded.file.limits.clone(),
+        limits,
         states,
         diagonal: (hi - lo).norm(),
         sure,

@@ -119,7 +119,9 @@ pub(super) fn sampled(
             }
             limits
                 .iter()
-                .all(|l| l.judge_whole(&m, diagonal).verdict == Verdict::Holds)
+                .enumerate()
+                .filter(|(n, _)| states[s].asks(*n))
+                .all(|(_, l)| l.judge_whole(&m, diagonal).verdict == Verdict::Holds)
         });
         good += u32::from(holds);
     }

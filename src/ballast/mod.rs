@@ -71,6 +71,16 @@ pub struct State {
     /// What each independent source of error moves these moments by, one standard deviation each;
     /// in the same order in all states.
     pub drivers: Vec<Moments>,
+    /// Which limits are asked of it, by their place; all where `None`. A slope of the whole with
+    /// its liquid level there is a state of its own, for the limit on that slope alone.
+    pub only: Option<Vec<usize>>,
+}
+
+impl State {
+    /// Whether a limit is asked of it.
+    pub(crate) fn asks(&self, limit: usize) -> bool {
+        self.only.as_ref().is_none_or(|o| o.contains(&limit))
+    }
 }
 
 /// How sure all limits must be to hold together.

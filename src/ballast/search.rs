@@ -65,7 +65,7 @@ impl Task<'_> {
                 .limits
                 .iter()
                 .enumerate()
-                .filter(|(l, _)| self.keep[*l])
+                .filter(|(l, _)| self.keep[*l] && state.asks(*l))
             {
                 let equality = limit.from.is_some() && limit.from == limit.to;
                 for end in [End::From, End::To] {
@@ -108,8 +108,9 @@ impl Task<'_> {
     pub(super) fn holds(&self, x: &[f64]) -> bool {
         self.states.iter().all(|s| {
             let m = laden(s, self.places, x);
-            let limits = self.limits.iter().zip(self.keep).filter(|(_, keep)| **keep);
-            limits.clone().all(|(l, _)| {
+            let limits = self.limits.iter().enumerate();
+            let mut limits = limits.filter(|(n, _)| self.keep[*n] && s.asks(*n));
+            limits.all(|(_, l)| {
                 if l.judge_whole(&m, self.diagonal).verdict != Verdict::Holds {
                     return false;
                 }

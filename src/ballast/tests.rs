@@ -20,6 +20,7 @@ fn state(moments: Moments) -> State {
         phase: String::new(),
         moments,
         drivers: Vec::new(),
+        only: None,
     }
 }
 

@@ -237,8 +237,8 @@ fn conflict(task: &Task<'_>) -> Vec<String> {
 
 /// Each limit in the state in which its margin is least.
 fn judged(task: &Task<'_>, states: &[State], x: &[f64]) -> Vec<InPhase> {
-    let of = |limit: &Limit| {
-        let all = states.iter().map(|s| {
+    let of = |(n, limit): (usize, &Limit)| {
+        let all = states.iter().filter(|s| s.asks(n)).map(|s| {
             let m = laden(s, task.places, x);
             let phase = (!s.phase.is_empty()).then(|| s.phase.clone());
             InPhase {
@@ -256,7 +256,7 @@ fn judged(task: &Task<'_>, states: &[State], x: &[f64]) -> Vec<InPhase> {
         };
         all.min_by(|a, b| key(a).total_cmp(&key(b)))
     };
-    task.limits.iter().filter_map(of).collect()
+    task.limits.iter().enumerate().filter_map(of).collect()
 }
 
 fn placed(places: &[Place], x: &[f64]) -> Vec<Placed> {

@@ -7,7 +7,7 @@ use clap::Args;
 use super::meshes::Files;
 use super::{Answer, Common, failure};
 use crate::assembly;
-use crate::ballast::{self, Outcome, State, Sure};
+use crate::ballast::{self, Outcome, Sure};
 use crate::error::{Error, Kind, Result};
 use crate::format::write_whole;
 use crate::report::trim::TrimBody;
@@ -68,22 +68,33 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         )
         .in_file(&args.file));
     }
-    let as_it_stands = State {
-        phase: String::new(),
-        moments: total.moments,
-        drivers: balance.drivers.clone(),
+    // There is a total, so everything was weighed.
+    let Some(service) = &resolved.service else {
+        return Ok(failure(Vec::new(), common));
+    };
+    let situations = assembly::Situations::of(&loaded, &resolved, service, args.sure.is_some());
+    let mut situations = match situations {
+        Ok(situations) => situations,
+        Err(e) => return Ok(failure(vec![e], common)),
     };
     let sure = args.sure.map(|percent| Sure {
         probability: percent / 100.0,
         seed: SEED,
     });
-    let asked = assembly::ballast_problem(&loaded, total, vec![as_it_stands], sure, &mut files);
+    let asked = assembly::ballast_problem(
+        &loaded,
+        total,
+        situations.limits().to_vec(),
+        situations.states(),
+        sure,
+        &mut files,
+    );
     let (problem, shapes) = match asked {
         Ok(asked) => asked,
         Err(errors) => return Ok(failure(errors, common)),
     };
-    let trimmed =
-        ballast::trim(&problem, &mut |_| Ok(Vec::new())).map_err(|e| e.in_file(&args.file))?;
+    let mut broken = |x: &[f64]| situations.broken(&problem.places, x, problem.diagonal);
+    let trimmed = ballast::trim(&problem, &mut broken).map_err(|e| e.in_file(&args.file))?;
     if let Some(path) = &args.write
         && trimmed.outcome == Outcome::Found
     {
@@ -108,6 +119,7 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         body: TrimBody {
             name: balance.name.clone(),
             trimmed,
+            levels: !service.tanks().is_empty(),
         },
     };
     let text = if common.json {

@@ -23,6 +23,9 @@ pub struct TrimBody {
     /// The answer.
     #[serde(flatten)]
     pub trimmed: Trimmed,
+    /// Liquid finds its level at every slope.
+    #[serde(skip)]
+    pub levels: bool,
 }
 
 /// As text; lengths in `unit`, the assembly's own.
@@ -75,6 +78,9 @@ pub fn render(document: &Document<TrimBody>, unit: LengthUnit, look: Look) -> St
     if t.outcome == Outcome::Found {
         out.push_str("\nafter");
         out.push_str(&limits(&plain(&t.after), unit, look));
+    }
+    if document.body.levels && t.before.iter().any(|b| b.judged.quantity == "tip") {
+        out.push_str("slopes here are with the liquid level at the slope that the limit asks for, which tells whether it holds; `balance` gives the slope at which it tips\n");
     }
     for b in &t.binding {
         let phase = b

@@ -20,7 +20,7 @@ pub use stand::{Reaction, Reactions, Stand, Support};
 pub use tip::{Edge, EdgeTip, tip_edges, tip_towards};
 
 /// Said once beside every result about lifting or tipping.
-pub const CAUTION: &str = "Rigid things at rest: no sloshing, jerk, wind, ground that gives, nor strength of parts and slings is in these figures; whoever lifts or parks it decides.";
+pub const CAUTION: &str = "All at rest: no sloshing, jerk, wind, ground that gives, nor strength of parts and slings is in these figures; whoever lifts or parks it decides.";
 
 use nalgebra::Vector3;
 

@@ -51,6 +51,7 @@ use super::source::MeshBody;
 use crate::error::Error;
 use crate::moments::Placement;
 use plan::{Plan, PlannedPhase};
+pub(super) use travel::Leg;
 
 /// An assembly that can be evaluated in any state.
 #[derive(Clone, Debug)]

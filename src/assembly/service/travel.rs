@@ -15,15 +15,15 @@ use crate::quantity::Quantity;
 
 /// A phase as a function of `s` from 0 to 1.
 #[derive(Clone, Debug)]
-pub(super) struct Leg {
-    pub(super) name: String,
+pub(in crate::assembly) struct Leg {
+    pub(in crate::assembly) name: String,
     start: State,
     /// Tanks that drain together, with the share of the phase in which they do.
     drains: Vec<Drained>,
     /// Motion, from, to.
     moves: Vec<(usize, f64, f64)>,
     /// 0, 1 and every place between at which the way has a corner, ascending.
-    pub(super) corners: Vec<f64>,
+    pub(in crate::assembly) corners: Vec<f64>,
 }
 
 #[derive(Clone, Debug)]
@@ -36,7 +36,7 @@ struct Drained {
 
 impl Leg {
     /// The state after the share `s` of the phase.
-    pub(super) fn at(&self, s: f64) -> State {
+    pub(in crate::assembly) fn at(&self, s: f64) -> State {
         let mut out = self.start.clone();
         for d in &self.drains {
             let part = if s >= d.to {
@@ -64,7 +64,7 @@ impl Service {
     ///
     /// # Errors
     /// `usage` where there is neither a phase nor a tank; a `to` that a tank cannot hold.
-    pub(super) fn legs(&self, start: &State) -> Result<Vec<Leg>, Error> {
+    pub(in crate::assembly) fn legs(&self, start: &State) -> Result<Vec<Leg>, Error> {
         let all = PlannedPhase {
             name: "all tanks together".to_owned(),
             drain: vec![(0..self.tanks().len()).collect()],
