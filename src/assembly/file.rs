@@ -235,6 +235,8 @@ pub struct Part {
     pub join: Option<f64>,
     /// How it is printed; a solid where nothing is stated. Lengths in m, the mesh file's axes.
     pub made: Option<Made>,
+    /// What of that has a tolerance.
+    pub made_off: Vec<super::made::Off>,
     /// Whether its facets are what is meant or stand for curves; none where it does not say.
     pub facets: Option<crate::curvature::Reading>,
     /// What the CAD model says of it.

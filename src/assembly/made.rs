@@ -6,7 +6,7 @@ use super::reader::{Reader, lengths, quantity};
 use super::tree::Value;
 use crate::error::Kind;
 use crate::printed::{LayerPlan, Made, ShellPlan};
-use crate::quantity::Dimension;
+use crate::quantity::{Dimension, Quantity};
 
 /// Diameter of common filament, m.
 const FILAMENT: f64 = 1.75e-3;
@@ -14,12 +14,45 @@ const FILAMENT: f64 = 1.75e-3;
 const ADVICE: &str = "write layers, wall, skin and infill for a part laid in layers, or shell for \
                       a hollowed one";
 
-/// Reads `made` of a part, lengths in m.
-pub(super) fn read(part: &Reader<'_, '_>) -> Option<Made> {
+/// A thickness or a fraction of a plan that has a tolerance.
+#[derive(Clone, Debug)]
+pub struct Off {
+    /// Its key.
+    pub(super) what: &'static str,
+    /// Its SI unit.
+    pub(super) unit: &'static str,
+    /// As stated.
+    pub(super) quantity: Quantity,
+    /// The plan with this much more of it.
+    pub(super) varied: fn(&Made, f64) -> Made,
+}
+
+fn thicker_wall(made: &Made, by: f64) -> Made {
+    let mut made = made.clone();
+    match &mut made {
+        Made::Layers(plan) => plan.wall += by,
+        Made::Shell(plan) => plan.thickness += by,
+    }
+    made
+}
+
+/// More infill, or less where there is no room for more.
+fn more_infill(made: &Made, by: f64) -> Made {
+    let mut made = made.clone();
+    match &mut made {
+        Made::Layers(plan) => plan.infill += by,
+        Made::Shell(plan) => plan.infill = plan.infill.map(|f| f + by),
+    }
+    made
+}
+
+/// Reads `made` of a part, lengths in m, and what of it has a tolerance.
+pub(super) fn read(part: &Reader<'_, '_>) -> Option<(Made, Vec<Off>)> {
     let r = part.table("made", "made")?;
     let length = |key: &'static str| r.quantity(key, Dimension::Length);
     let layer = length("layers");
-    let wall = length("wall").map(|(q, _)| q.value);
+    let wall_stated = length("wall").map(|(q, _)| q);
+    let wall = wall_stated.map(|q| q.value);
     let skin = skin(&r);
     let infill = r.quantity("infill", Dimension::Fraction);
     let up = r.direction("up");
@@ -96,8 +129,48 @@ pub(super) fn read(part: &Reader<'_, '_>) -> Option<Made> {
             "write a share from 0 % to 100 %",
         );
     }
+    for (key, q) in [("layers", &layer), ("filament", &filament)] {
+        if let Some((q, line)) = q {
+            exact(&r, key, q, *line);
+        }
+    }
     r.finish();
-    made
+    let mut off = Vec::new();
+    let stated = [
+        ("wall", "m", wall_stated),
+        ("shell", "m", shell.map(|(q, _)| q)),
+        ("infill", "1", infill.map(|(q, _)| q)),
+    ];
+    for (what, unit, quantity) in stated {
+        let Some(quantity) = quantity.filter(|q| q.tolerance.is_some()) else {
+            continue;
+        };
+        let varied = if what == "infill" {
+            more_infill
+        } else {
+            thicker_wall
+        };
+        off.push(Off {
+            what,
+            unit,
+            quantity,
+            varied,
+        });
+    }
+    Some((made?, off))
+}
+
+/// Layers and skins are whole layers of a stated height: a tolerance of them says nothing of the
+/// mass that could be worked out.
+fn exact(r: &Reader<'_, '_>, key: &str, q: &Quantity, line: u64) {
+    if q.tolerance.is_some() {
+        r.shared.fault(
+            line,
+            Kind::Usage,
+            format!("`{key}` cannot have a tolerance: it is laid in whole layers"),
+            "take the tolerance out; wall, shell and infill may have one",
+        );
+    }
 }
 
 fn foreign(r: &Reader<'_, '_>, keys: &[&'static str], method: &str) {
@@ -122,12 +195,16 @@ fn skin(r: &Reader<'_, '_>) -> Option<[f64; 2]> {
             if t.entry(key).is_none() {
                 t.missing(key, Kind::Usage, "state it, zero included");
             }
-            t.quantity(key, Dimension::Length).map(|(q, _)| q.value)
+            t.quantity(key, Dimension::Length).map(|(q, line)| {
+                exact(r, "skin", &q, line);
+                q.value
+            })
         });
         t.finish();
         return Some([bottom?, top?]);
     }
     let both = quantity(r.shared, &entry.node, "skin", Dimension::Length)?;
+    exact(r, "skin", &both, entry.line);
     Some([both.value; 2])
 }
 

@@ -6,12 +6,14 @@ use std::sync::Arc;
 use super::choose::Bodies;
 use super::expand::Instance;
 use super::file::{Part, Substance};
+use super::made::Off;
 use super::notes;
 use crate::error::{Error, Kind, Warning};
 use crate::geometry::LooseFacets;
 use crate::masses::{PrintFigures, PrintedBody};
 use crate::moments::Moments;
 use crate::printed::{self, Made, Printed};
+use crate::quantity::Tolerance;
 
 /// Printed bodies by the part's entry, known by its address as in `resolve`.
 #[derive(Default)]
@@ -67,6 +69,52 @@ impl Printing {
     }
 }
 
+/// How the moments of a printed part's bodies change with one of its thicknesses or its infill.
+#[derive(Clone, Debug)]
+pub(super) struct PrintRate {
+    /// Such as `wall`.
+    pub(super) what: &'static str,
+    /// SI unit of what is off.
+    pub(super) unit: &'static str,
+    /// Of the file.
+    pub(super) tolerance: Tolerance,
+    /// Moments of the material of each body for each unit of it.
+    pub(super) per_unit: Vec<Moments>,
+}
+
+/// How the print answers to the tolerances of its plan: by printing it once more with each a
+/// standard uncertainty further on, since layers and distances have no derivative in closed form.
+pub(super) fn rates(
+    made: &Made,
+    bodies: &Bodies,
+    printed: &[Printed],
+    off: &[Off],
+) -> Vec<PrintRate> {
+    off.iter()
+        .filter_map(|off| {
+            let step = off.quantity.standard();
+            let varied = (off.varied)(made, step);
+            let per_unit: Option<Vec<Moments>> = bodies
+                .iter()
+                .zip(printed)
+                .map(|(body, now)| {
+                    let facets = body.facets();
+                    let solid = &body.figures().moments;
+                    let then = printed::print(&LooseFacets(&facets), solid, &varied, None).ok()?;
+                    let moved = then.moments.plus(&now.moments.weighted(-1.0));
+                    Some(moved.weighted(1.0 / step))
+                })
+                .collect();
+            Some(PrintRate {
+                what: off.what,
+                unit: off.unit,
+                tolerance: off.quantity.tolerance.filter(|_| step > 0.0)?,
+                per_unit: per_unit?,
+            })
+        })
+        .collect()
+}
+
 /// Moments of mass of a body, or of its volume where no density is known.
 pub(super) fn mass_of(printed: &Printed, material: Option<&Substance>) -> Moments {
     match material {
@@ -108,12 +156,17 @@ pub(super) fn remarks(instance: &Instance<'_>, f: &PrintFigures) -> Vec<Warning>
             "trapped",
             format!(
                 "part `{}`: {hollows} closed hollow{} of {:.3} cm³ keep{} the powder or resin{} \
-                 it was built in, and its mass holds that",
+                 it was built in, and its mass {}",
                 instance.path,
                 if hollows == 1 { "" } else { "s" },
                 t.volume_m3 * 1e6,
                 if hollows == 1 { "s" } else { "" },
-                fill.unwrap_or_default(),
+                fill.filter(|_| !t.density_assumed).unwrap_or_default(),
+                if t.density_assumed {
+                    "leaves that out"
+                } else {
+                    "holds that"
+                },
             ),
             "state the holes in `drain`, the density of what stays in `fill`, or `infill` where \
              the inside is printed in air",

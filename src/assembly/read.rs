@@ -84,7 +84,7 @@ pub(super) fn file(
     let ballast = read_ballast::read(&root, &mut context);
     let service = service::read(&root);
     let standing = read_statics::supports(&root, &service.gravity);
-    let hang = read_statics::hang(&root);
+    let hang = read_statics::hang(&root, &service.gravity);
     let limits = read_limits::read(&root, &standing);
     let smears = smear::read(&root);
     root.finish();
@@ -224,12 +224,22 @@ impl Context<'_, '_> {
         let measured = measured(&r);
         let accept_open = r.exactly("accept-open", Dimension::Fraction);
         let join = join(&r);
-        let made = made::read(&r);
+        let (made, made_off) = made::read(&r).unzip();
         let facets = facets(&r);
         let expect = expect(&r);
         let each = each(&r);
         let maturity = self.allowances.maturity(&r);
         let (sheet, coating, graded) = spread::read(&r, self.own);
+        if let (Some(_), Some(crate::curvature::Reading::Curved), Some(entry)) =
+            (&made, facets, r.entry("facets"))
+        {
+            r.shared.fault(
+                entry.line,
+                Kind::Usage,
+                "`facets = \"curved\"` and `made` cannot stand together: what facets do to the inside of a print is not known".into(),
+                "take one of them out; without `facets` the bias is in the uncertainty",
+            );
+        }
         let mesh = r
             .text("mesh")
             .and_then(|(typed, line)| self.loader.mesh(self.shared, &typed, line));
@@ -254,6 +264,7 @@ impl Context<'_, '_> {
             accept_open,
             join,
             made,
+            made_off: made_off.unwrap_or_default(),
             facets,
             expect,
             each,

@@ -122,6 +122,7 @@ fn place(r: Reader<'_, '_>, context: &mut Context<'_, '_>) -> Option<BallastPlac
             accept_open: None,
             join: None,
             made: None,
+            made_off: Vec::new(),
             facets: None,
             sheet: None,
             coating: None,

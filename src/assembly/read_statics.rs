@@ -79,6 +79,16 @@ pub(super) fn supports(root: &Reader<'_, '_>, gravity: &Gravity) -> Standing {
         out.faulty = root.entry("support").is_some();
         return out;
     };
+    if effective.is_none() {
+        root.shared.fault(
+            line,
+            Kind::Usage,
+            "without effective gravity nothing stands on a support".into(),
+            "state the field in [gravity], or take the supports out",
+        );
+        out.faulty = true;
+        return out;
+    }
     let mut taken = Vec::new();
     let read: Vec<_> = tables.into_iter().map(|t| placed(t, &mut taken)).collect();
     let supports: Option<Vec<Support>> = read
@@ -97,8 +107,16 @@ pub(super) fn supports(root: &Reader<'_, '_>, gravity: &Gravity) -> Standing {
 }
 
 /// Reads `[hang]`.
-pub(super) fn hang(root: &Reader<'_, '_>) -> Option<Hang> {
+pub(super) fn hang(root: &Reader<'_, '_>, gravity: &Gravity) -> Option<Hang> {
     let r = root.table("hang", "hang")?;
+    if gravity.effective().is_none() {
+        r.shared.fault(
+            r.line,
+            Kind::Usage,
+            "without effective gravity nothing hangs from a hook".into(),
+            "state the field in [gravity], or take [hang] out",
+        );
+    }
     let hook = r
         .lengths("hook")
         .map(|(q, _)| Vector3::from(q.map(|x| x.value)));

@@ -26,6 +26,7 @@ use crate::error::{Error, Kind, Warning};
 use crate::masses::PrintFigures;
 use crate::moments::Moments;
 use crate::moments::liquid::Vessel;
+use crate::quantity::{Quantity, Tolerance};
 
 /// Where a mass comes from.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize)]
@@ -83,6 +84,19 @@ pub struct FacetBias {
     pub doubt_kg: f64,
 }
 
+/// How the mass of a part answers to something of its own that has a tolerance.
+#[derive(Clone, Debug)]
+pub struct Rate {
+    /// Such as `wall`.
+    pub what: &'static str,
+    /// SI unit of what is off.
+    pub unit: &'static str,
+    /// Of the file.
+    pub tolerance: Tolerance,
+    /// Mass moments for each unit of it, where the part stands.
+    pub per_unit: Moments,
+}
+
 /// One thing that stands in the assembly, weighed.
 #[derive(Clone, Debug)]
 pub struct Weighed {
@@ -113,6 +127,8 @@ pub struct Weighed {
     pub implied_density: Option<f64>,
     /// How it is printed, where it is.
     pub made: Option<PrintFigures>,
+    /// How its mass answers to thicknesses and shares of its own that have a tolerance.
+    pub rates: Vec<Rate>,
     /// Box along the assembly's axes, m.
     pub bounds: [[f64; 3]; 2],
 }
@@ -195,6 +211,7 @@ pub fn resolve(loaded: &Loaded, meshes: &mut dyn MeshFiles) -> Result<Resolved, 
                     volume: None,
                     implied_density: None,
                     made: None,
+                    rates: Vec::new(),
                     bounds: [(at - half).into(), (at + half).into()],
                 })
             }
@@ -267,7 +284,13 @@ impl Work {
             let volume = moments_of(body, part).zeroth;
             let why = match &figures.refused {
                 // A sheet is its surface: it need not hold anything.
-                _ if part.sheet.is_some() && figures.area > 0.0 => None,
+                _ if part.sheet.is_some() && figures.area > 0.0 => spread::too_thick(body, part)
+                    .map(|why| {
+                        (
+                            why,
+                            "check the sheet's thickness and the mesh's unit".to_string(),
+                        )
+                    }),
                 Some(_) if accepted(body, part).is_some() => None,
                 Some(r) => Some((r.message.clone(), open_advice(body, part, &r.advice))),
                 None if !(volume > 0.0 && volume.is_finite()) => Some((
@@ -388,6 +411,48 @@ impl Work {
             material: Some(coating.material.clone()),
             moments: moments.weighted(factor).placed(&instance.placement),
         }));
+        let place = |m: Moments| m.weighted(factor).placed(&instance.placement);
+        let mut rates = Vec::new();
+        if let (Some(made), Some(printed), false) = (&part.made, &printed, part.made_off.is_empty())
+        {
+            for rate in printing::rates(made, &bodies, printed, &part.made_off) {
+                let density = |n: usize| {
+                    let of = pieces.get(n).and_then(|p: &Piece| p.material.as_ref());
+                    of.map_or(1.0, |m| m.density.value)
+                };
+                let all = rate.per_unit.iter().enumerate();
+                let all: Vec<Moments> = all.map(|(n, m)| m.weighted(density(n))).collect();
+                rates.push(Rate {
+                    what: rate.what,
+                    unit: rate.unit,
+                    tolerance: rate.tolerance,
+                    per_unit: place(sum::total(all.iter())),
+                });
+            }
+        }
+        // Sheet and coats are in proportion to their thickness.
+        let thick = |q: &Quantity, all: &[Moments]| {
+            let total = sum::total(all.iter());
+            Some((q.tolerance?, place(total).weighted(1.0 / q.value)))
+        };
+        if let Some((tolerance, per_unit)) = part.sheet.as_ref().and_then(|q| thick(q, &computed)) {
+            rates.push(Rate {
+                what: "sheet",
+                unit: "m",
+                tolerance,
+                per_unit,
+            });
+        }
+        let coated: Vec<Moments> = coats.iter().map(|(_, m)| *m).collect();
+        let coating = part.coating.as_ref().map(|c| &c.thickness);
+        if let Some((tolerance, per_unit)) = coating.and_then(|q| thick(q, &coated)) {
+            rates.push(Rate {
+                what: "coating",
+                unit: "m",
+                tolerance,
+                per_unit,
+            });
+        }
         let moments = match pieces.as_slice() {
             [one] => one.moments,
             _ => sum::total(pieces.iter().map(|p| &p.moments)),
@@ -444,6 +509,7 @@ impl Work {
             ));
         }
         Some(Weighed {
+            rates,
             stands,
             facets,
             estimate,
@@ -681,7 +747,11 @@ fn bias(
     let mut doubt = 0.0;
     for (body, piece) in bodies.iter().zip(pieces) {
         let error = body.facet_error(asked)?;
-        let density = piece.moments.zeroth / moments_of(body, part).zeroth;
+        // Of a print the outside gains all of it and the inside loses some: anything in between.
+        let full = piece.material.as_ref().filter(|_| part.made.is_some());
+        let density = full.map_or(piece.moments.zeroth / moments_of(body, part).zeroth, |m| {
+            m.density.value
+        });
         moments = moments.plus(&error.moments.weighted(density).placed(placement));
         doubt += error.doubt * density;
     }

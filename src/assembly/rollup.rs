@@ -353,8 +353,10 @@ pub(super) fn judged(
     };
     let judged = open::unsure(judged, &limit.quantity, total.estimate.as_ref());
     match sure {
-        Some(sure) => sure.judge(limit, value, judged),
-        None => judged,
+        // How the slope answers with its liquid level at every attitude is not worked out; of the
+        // surface as it stands it would be too sure.
+        Some(sure) if seen.slope.is_none() => sure.judge(limit, value, judged),
+        _ => judged,
     }
 }
 

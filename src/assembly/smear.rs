@@ -232,6 +232,7 @@ impl Planned {
             volume: None,
             implied_density: None,
             made: None,
+            rates: Vec::new(),
             bounds,
         };
         (weighed, smeared)

@@ -166,6 +166,11 @@ impl Sources {
         if let Some(bounds) = &weighed.estimate {
             term = self.open(instance, weighed, bounds, term);
         }
+        for rate in &weighed.rates {
+            if let Some(by) = self.own(&sharing, rate.what, rate.unit, Some(rate.tolerance)) {
+                term = term.adding(by, rate.per_unit);
+            }
+        }
         if let Some(facets) = &weighed.facets {
             term = self.facets(&sharing, facets, weighed, term);
         }
@@ -189,9 +194,7 @@ impl Sources {
         let mut term = Contribution::new(weighed.moments);
         let density = tank.liquid.density;
         let by_density = self.density(&tank.liquid.name, density);
-        let of_mass = tank.fill.of == FillOf::Mass;
-        // A stated mass of liquid is that mass whatever its density, but for where its level is.
-        if let (Some(by), false) = (by_density, of_mass) {
+        if let Some(by) = by_density {
             term = term.scaled(by, 1.0 / density.value);
         }
         let known = resolved.service.as_ref().zip(resolved.state.as_ref());
@@ -199,6 +202,11 @@ impl Sources {
         let Some(filled) = filled else {
             return self.placed(instance, tank.each, term);
         };
+        // A stated mass keeps: what is denser leaves its free surface.
+        if let (Some(by), FillOf::Mass) = (by_density, tank.fill.of) {
+            let volume = weighed.moments.zeroth / density.value;
+            term = term.adding(by, filled.per_unit.weighted(-volume));
+        }
         if let Some(by) = self.own(&sharing, "fill", filled.unit, filled.tolerance) {
             term = term.adding(by, filled.per_unit);
         }
@@ -215,7 +223,10 @@ impl Sources {
         mut term: Contribution,
     ) -> Contribution {
         let bias = facets.moments.weighted(-1.0);
-        if !facets.corrected && bias != Moments::zero(bias.about) {
+        // Less than that is rounding and no source.
+        let rounding = 1e-11 * weighed.moments.zeroth;
+        let any = bias.zeroth.abs() > rounding || facets.doubt_kg > rounding;
+        if !facets.corrected && any {
             let part = Distribution::Interval {
                 low: 0.0,
                 high: 1.0,
@@ -224,7 +235,7 @@ impl Sources {
                 term = term.adding(by, bias);
             }
         }
-        if facets.doubt_kg > 0.0 {
+        if facets.doubt_kg > 1e-11 * weighed.moments.zeroth {
             let half = Distribution::Rectangular {
                 half_width: facets.doubt_kg,
             };

@@ -85,6 +85,19 @@ pub(super) fn hollow(body: &Arc<dyn MeshBody>, part: &Part) -> Option<String> {
     })
 }
 
+/// Why a sheet cannot be: it would hold more than the closed mesh that it lies in.
+pub(super) fn too_thick(body: &Arc<dyn MeshBody>, part: &Part) -> Option<String> {
+    let figures = body.figures();
+    let (sheet, held) = (volume(body, part), figures.moments.zeroth);
+    (figures.refused.is_none() && sheet > held).then(|| {
+        format!(
+            "its surface times the thickness of the sheet is {:.3} cm³, more than the {:.3} cm³ that the mesh holds",
+            sheet * 1e6,
+            held * 1e6
+        )
+    })
+}
+
 /// How far a skin's thickness is from thin: over the least side of the body's box that it does not
 /// lie in. Above a hundredth the first order may be off by more than a per cent or so.
 pub(super) fn thick(body: &Arc<dyn MeshBody>, thickness: f64) -> Option<f64> {

@@ -82,7 +82,8 @@ pub fn trim(
                 sampled: None,
             });
         };
-        let more = worst(&best.x)?;
+        let x = without_traces(&task, best.x.clone());
+        let more = worst(&x)?;
         if !more.is_empty() {
             rounds += 1;
             if rounds >= ROUNDS {
@@ -104,7 +105,7 @@ pub fn trim(
                 &problem.limits,
                 &states,
                 &problem.places,
-                &best.x,
+                &x,
                 problem.diagonal,
                 (SAMPLES, s.seed),
             ),
@@ -124,16 +125,16 @@ pub fn trim(
         } else {
             Outcome::Found
         };
-        let total: f64 = best.x.iter().sum();
+        let total: f64 = x.iter().sum();
         let known = found.bound.is_finite() && !found.local;
         return Ok(Trimmed {
             outcome,
             proof: proof(&found),
             gap_kg: (known || already).then(|| (total - found.bound.min(total)).max(0.0)),
-            ballast: placed(&problem.places, &best.x),
+            ballast: placed(&problem.places, &x),
             total_kg: Some(total),
             before: judged(&task, &states, &nothing),
-            after: judged(&task, &states, &best.x),
+            after: judged(&task, &states, &x),
             binding: binding(&task, best),
             conflict: Vec::new(),
             sampled,
@@ -148,6 +149,20 @@ fn proof(found: &Found) -> Proof {
         Proof::Gap
     } else {
         Proof::Dual
+    }
+}
+
+/// An answer without what the solver leaves of places that need nothing, where it holds so.
+fn without_traces(task: &Task<'_>, x: Vec<f64>) -> Vec<f64> {
+    let least = 1e-8 * x.iter().sum::<f64>();
+    let plain: Vec<f64> = x
+        .iter()
+        .map(|m| if *m < least { 0.0 } else { *m })
+        .collect();
+    if plain != x && task.holds(&plain) {
+        plain
+    } else {
+        x
     }
 }
 

@@ -15,7 +15,7 @@ const UNASKED: usize = 50_000;
 #[derive(Args, Clone, Copy, Debug)]
 pub(super) struct CurveArgs {
     /// Give the figures of the curved bodies that the facets stand for, as estimated from the facets
-    #[arg(long, conflicts_with_all = ["whole", "filled"])]
+    #[arg(long, conflicts_with_all = ["whole", "filled", "layers", "shell"])]
     pub(super) true_curves: bool,
     /// Edges that turn by less than so many degrees stand for a curve
     #[arg(long, value_name = "DEG", default_value_t = CREASE_DEG, value_parser = degrees)]

@@ -26,7 +26,7 @@ pub(super) struct DrainArgs {
           value_parser = clap::value_parser!(u32).range(1..=assembly::service::MOST_STEPS as i64))]
     steps: u32,
     /// Draw the travel of the balance point with the limits around it
-    #[arg(long, value_name = "FILE.svg")]
+    #[arg(long, value_name = "FILE.svg|png")]
     picture: Option<PathBuf>,
 }
 

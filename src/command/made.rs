@@ -69,7 +69,7 @@ pub(super) struct MadeArgs {
         allow_hyphen_values = true
     )]
     drain: Vec<String>,
-    /// Density of what a closed hollow keeps; the material's own if not given
+    /// Density of what a closed hollow keeps, to be in the mass; left out and said if not given
     #[arg(
         long,
         value_name = "Q",
@@ -86,9 +86,16 @@ impl MadeArgs {
     /// Of the options.
     pub(super) fn plan(&self, unit: LengthUnit) -> Result<Option<Made>> {
         let length = |name: &str, text: &str| {
-            Quantity::parse(text.trim(), Dimension::Length, Some(unit))
-                .map(|q| q.value)
-                .map_err(|e| of(name, e))
+            let q = Quantity::parse(text.trim(), Dimension::Length, Some(unit))
+                .map_err(|e| of(name, e))?;
+            match q.tolerance {
+                None => Ok(q.value),
+                Some(_) => Err(Error::new(
+                    Kind::Usage,
+                    format!("{name}: a tolerance is not taken here"),
+                    "state the part in an assembly file, where `made` takes tolerances",
+                )),
+            }
         };
         let infill = self.infill.as_deref().map(percent).transpose()?;
         if let Some(layers) = &self.layers {
@@ -261,13 +268,13 @@ pub(super) fn trapped(path: &std::path::Path, id: &str, f: &PrintFigures) -> Opt
     Some(Warning {
         kind: "trapped".to_owned(),
         message: format!(
-            "`{id}`: closed hollows of {:.3} cm³ keep the powder or resin they were built in, and the mass holds that{}",
+            "`{id}`: closed hollows of {:.3} cm³ keep the powder or resin they were built in, and the mass {}",
             t.volume_m3 * 1e6,
-            if t.density_assumed { " at the material's own density" } else { "" },
+            if t.density_assumed { "leaves that out" } else { "holds that" },
         ),
         path: Some(path.to_string_lossy().into_owned()),
         line: None,
-        advice: "state the holes with --drain, the density of what stays with --fill, or --infill where the inside is printed in air"
+        advice: "state the density of what stays with --fill, or the holes with --drain, or --infill where the inside is printed in air"
             .to_owned(),
     })
 }

@@ -403,3 +403,26 @@ fn point(text: &str, unit: LengthUnit) -> Result<[f64; 3]> {
     };
     Ok([length(x)?, length(y)?, length(z)?])
 }
+/// Refuses an output that would take the place of an input.
+///
+/// # Errors
+/// `usage`.
+fn spare<'p>(
+    out: &std::path::Path,
+    inputs: impl Iterator<Item = &'p std::path::Path>,
+) -> Result<()> {
+    let here = std::fs::canonicalize(out).ok();
+    let taken = here.is_some_and(|here| {
+        inputs
+            .filter_map(|p| std::fs::canonicalize(p).ok())
+            .any(|p| p == here)
+    });
+    if taken {
+        return Err(Error::new(
+            Kind::Usage,
+            format!("{} is an input, and would be replaced", out.display()),
+            "name the output otherwise",
+        ));
+    }
+    Ok(())
+}

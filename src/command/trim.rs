@@ -1,14 +1,14 @@
 //! `bismar trim`: the least ballast that brings everything inside its limits.
 
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 
 use clap::Args;
 
 use super::meshes::Files;
-use super::{Answer, Common, failure};
+use super::{Answer, Common, failure, spare};
 use crate::assembly;
 use crate::ballast::{self, Outcome, Sure};
-use crate::error::{Error, Kind, Result};
+use crate::error::{Error, Kind, Result, Warning};
 use crate::format::write_whole;
 use crate::report::trim::TrimBody;
 use crate::report::{self, Document, PROGRAM, to_json};
@@ -47,6 +47,9 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         Ok(loaded) => loaded,
         Err(errors) => return Ok(failure(errors, common)),
     };
+    if let Some(out) = &args.write {
+        spare(out, loaded.inputs.iter().map(|i| Path::new(&i.path)))?;
+    }
     let mut files = Files::default();
     let resolved = match assembly::resolve(&loaded, &mut files) {
         Ok(resolved) => resolved,
@@ -95,6 +98,19 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
     };
     let mut broken = |x: &[f64]| situations.broken(&problem.places, x, problem.diagonal);
     let trimmed = ballast::trim(&problem, &mut broken).map_err(|e| e.in_file(&args.file))?;
+    let mut warnings = resolved.warnings.clone();
+    if let Some(path) = &args.write
+        && trimmed.outcome != Outcome::Found
+    {
+        warnings.push(Warning {
+            kind: "nothing-written".to_owned(),
+            message: "no ballast was found or needed, and nothing was written".to_owned(),
+            path: Some(path.to_string_lossy().into_owned()),
+            line: None,
+            advice: "a file of that name from an earlier run still holds that run's ballast"
+                .to_owned(),
+        });
+    }
     if let Some(path) = &args.write
         && trimmed.outcome == Outcome::Found
     {
@@ -102,7 +118,6 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         write_whole(path, |w| w.write_all(text.as_bytes()))?;
     }
     let exit = u8::from(trimmed.outcome == Outcome::Impossible);
-    let mut warnings = resolved.warnings.clone();
     warnings.extend(files.warnings);
     let inputs = resolved
         .inputs

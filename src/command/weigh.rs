@@ -305,8 +305,11 @@ fn answer(
             } else {
                 weighed(&m.mesh, body, weighing, metres, substance, about)
             };
-            if let Some((said, error)) = facets {
+            let error = facets.map(|(said, error)| {
                 out.facets = Some(said);
+                error
+            });
+            if let (Some(error), None) = (error, printed) {
                 facet_uncertainty(
                     &mut out,
                     weighing,
@@ -324,7 +327,12 @@ fn answer(
                 if let Some(s) = substance {
                     let mass = printed.mass(s.density.value);
                     out.figures = out.figures.with_mass(&mass);
-                    out.uncertainty = printed_uncertainty(&mass, substance);
+                    out.uncertainty = printed_uncertainty(
+                        &mass,
+                        substance,
+                        core_error(printed),
+                        error.map(|e| e.scaled(metres)).as_ref(),
+                    );
                 }
             }
             out.findings = std::mem::take(&mut audit.bodies[i]);
@@ -539,11 +547,34 @@ fn facet_uncertainty(
     out.uncertainty = sources.spread(&solid.moments.scaled(metres));
 }
 
-/// How far the mass figures of a print may be off for its density. What a hollow keeps is taken to
-/// be off by the same share as the material: no density of its own has a tolerance.
-fn printed_uncertainty(mass: &Moments, substance: Option<&Substance>) -> Option<Uncertainty> {
-    let density = substance?.density.value;
-    uncertainty(&mass.weighted(1.0 / density), substance, None)
+/// How far the mass figures of a print may be off: for its density, for the core's error figure,
+/// and for facets that may stand for curves, of which the outside has all and the inside takes
+/// some back. What a hollow keeps is taken to be off by the same share as the material.
+fn printed_uncertainty(
+    mass: &Moments,
+    substance: Option<&Substance>,
+    core_error: f64,
+    facets: Option<&FacetError>,
+) -> Option<Uncertainty> {
+    let s = substance?;
+    let (bias, doubt) = match facets {
+        Some(e) => (e.moments.weighted(-1.0), e.doubt),
+        None => (Moments::zero(mass.about), 0.0),
+    };
+    let sources = BodySources {
+        density: Some((s.name.clone(), s.density)),
+        bounds: None,
+        facets: Some(FacetSource {
+            bias,
+            doubt: doubt + core_error,
+        }),
+    };
+    sources.spread(&mass.weighted(1.0 / s.density.value))
+}
+
+/// How far the printed volume may be off for that of its core.
+fn core_error(printed: &Printed) -> f64 {
+    printed.core_error.unwrap_or(0.0) * (1.0 - printed.infill)
 }
 
 /// Of a body that only cracks keep open, the refusal names the distance that closes it.
@@ -659,7 +690,8 @@ fn print_together(
             .reduce(|a, b| a.plus(&b));
         if let Some(mass) = mass {
             sum.figures = sum.figures.clone().with_mass(&mass);
-            sum.uncertainty = printed_uncertainty(&mass, substance);
+            let error = each.iter().map(|(p, _)| core_error(p)).sum();
+            sum.uncertainty = printed_uncertainty(&mass, substance, error, None);
         }
     }
 }

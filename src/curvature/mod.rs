@@ -49,6 +49,7 @@ pub fn estimate(facets: &[[[f64; 3]; 3]], crease_deg: f64) -> Result<FacetError>
             o != NONE && s.turn[h].abs() < crease && !faces.part(h, o as usize)
         })
         .collect();
+    let smooth = curved_only(&s, &faces, smooth);
     let (nodes, count) = nodes::nodes(&s, &smooth);
     let mut normals = normals::start(&s, &nodes, count);
     let mut trust = on_planes(&s, &faces, &nodes, &mut normals);
@@ -62,6 +63,36 @@ pub fn estimate(facets: &[[[f64; 3]; 3]], crease_deg: f64) -> Result<FacetError>
     let rises = normals::rises(&edges, &normals, &trust);
     let added = patch::integrate(&s, &nodes, &trust, &rises, &of);
     Ok(FacetError::of(&added, &s, crease_deg))
+}
+
+/// Leaves out ridges that stand alone: between two faces of which neither turns on into a further
+/// one, an edge is a bend and no curve, however little it turns.
+fn curved_only(s: &Surface, faces: &Faces, smooth: Vec<bool>) -> Vec<bool> {
+    // The face that each turns into, and whether there is a second.
+    let mut next: Vec<(u32, bool)> = vec![(NONE, false); faces.plane.len()];
+    let sides = |h: usize| {
+        let o = s.opposite[h] as usize;
+        (faces.of[h / 3], faces.of[o / 3])
+    };
+    for h in (0..smooth.len()).filter(|&h| smooth[h]) {
+        let (a, b) = sides(h);
+        if a != b {
+            let n = &mut next[a as usize];
+            match n.0 {
+                NONE => n.0 = b,
+                known if known != b => n.1 = true,
+                _ => {}
+            }
+        }
+    }
+    (0..smooth.len())
+        .map(|h| {
+            smooth[h] && {
+                let (a, b) = sides(h);
+                a == b || next[a as usize].1 || next[b as usize].1
+            }
+        })
+        .collect()
 }
 
 /// Gives the corners of planes the planes' normals.

@@ -174,10 +174,7 @@ fn implied_density(bodies: &[PrintedBody<'_>], mass: f64) -> Option<f64> {
     for b in bodies {
         volume += b.printed.moments.zeroth;
         if let Some(t) = &b.printed.trapped {
-            match t.fill_density {
-                Some(density) => fixed += density * t.hollow.zeroth,
-                None => volume += t.hollow.zeroth,
-            }
+            fixed += t.fill_density.unwrap_or(0.0) * t.hollow.zeroth;
         }
     }
     let density = (mass - fixed) / volume;

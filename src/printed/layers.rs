@@ -11,7 +11,7 @@ use super::region::{Flat, Grid, Overlayer, Region, extent};
 use super::section::{Crossings, Stack};
 use super::windows::Windows;
 use super::{LayerPlan, Printed, Progress, Shares};
-use crate::error::Result;
+use crate::error::{Error, Kind, Result};
 use crate::geometry::Corners;
 use crate::geometry::eft::Sum;
 use crate::moments::{Moments, Placement};
@@ -57,9 +57,11 @@ pub fn layered(
         core_error: None,
     };
     if n == 0 {
-        // Thinner than half a layer: one skin, as solid as it can be.
-        finish(&mut out, solid, plan, [1.0, 0.0]);
-        return Ok(out);
+        return Err(Error::new(
+            Kind::BadNumber,
+            "the part is not even half a layer high, and no layer of it is printed",
+            "check the layer's height and the unit of the mesh",
+        ));
     }
     let grid = stack.grid();
     let crossings = Crossings::of(facets, &stack)?;

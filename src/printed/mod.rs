@@ -80,7 +80,7 @@ pub struct Trapped {
     pub hollow: Moments,
     /// How many there are.
     pub count: usize,
-    /// Density of what is in them; `None`: that of the part's own material.
+    /// Density of what is in them, where it was stated.
     pub fill_density: Option<f64>,
 }
 
@@ -101,22 +101,20 @@ pub fn print(
 }
 
 impl Printed {
-    /// Moments of mass for a density of the material, with what closed hollows keep.
+    /// Moments of mass for a density of the material, with what closed hollows keep where the
+    /// density of that was stated.
     pub fn mass(&self, density: f64) -> Moments {
         let part = self.moments.weighted(density);
-        match &self.trapped {
+        let kept = self.trapped.as_ref();
+        match kept.and_then(|t| Some((&t.hollow, t.fill_density?))) {
             None => part,
-            Some(t) => part.plus(&t.hollow.weighted(t.fill_density.unwrap_or(density))),
+            Some((hollow, fill)) => part.plus(&hollow.weighted(fill)),
         }
     }
 
-    /// Moments of all that is in the part, closed hollows as if of its own material: how a mass is
-    /// spread where no density is known.
+    /// Moments of the material: how a mass is spread where no density is known.
     pub fn evenly(&self) -> Moments {
-        match &self.trapped {
-            None => self.moments,
-            Some(t) => self.moments.plus(&t.hollow),
-        }
+        self.moments
     }
 }
 

@@ -660,9 +660,9 @@ fn each_hollow_needs_a_drain_of_its_own() {
     let kept = sealed.trapped.clone().unwrap();
     assert_eq!(kept.count, 2);
     near(kept.hollow.zeroth, sealed.core.zeroth, 1e-9);
-    // Full of the part's own material it weighs as the solid does.
+    // With what it keeps of the part's own material it weighs as the solid does.
     near(
-        sealed.mass(DENSITY).zeroth,
+        sealed.mass(DENSITY).zeroth + kept.hollow.zeroth * DENSITY,
         solid(&part).zeroth * DENSITY,
         1e-12,
     );

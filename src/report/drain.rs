@@ -45,7 +45,7 @@ pub fn render(document: &Document<DrainBody>, unit: LengthUnit, look: Look) -> S
     columns.extend(
         motions
             .iter()
-            .map(|m| Column::figures(m, &crate::text::shown(m), "SI")),
+            .map(|m| Column::figures(m, &crate::text::shown(m), "m or rad")),
     );
     columns.extend([
         Column::figures("mass_kg", "mass", "kg"),

@@ -59,14 +59,16 @@ pub(super) fn render(of: &str, f: &PrintFigures, solid_m3: Option<f64>, look: Lo
             )
         };
         out.push_str(&format!(
-            "   {} {} closed hollow{} of {} keep{} powder or resin: with it {}, without {}\n",
+            "   {} {} closed hollow{} of {} keep{} the powder or resin it is built in: with {} {}, without {}; the mass is that {}\n",
             look.marked("TRAPPED", Mark::Fail),
             t.hollows,
             if t.hollows == 1 { "" } else { "s" },
             volume(t.volume_m3),
             if t.hollows == 1 { "s" } else { "" },
+            if t.density_assumed { "it at the material's own density" } else { "it" },
             mass(t.mass_with_kg),
             mass(t.mass_without_kg),
+            if t.density_assumed { "without" } else { "with it" },
         ));
     }
     if let Some(density) = f.implied_density_kg_m3 {

@@ -30,7 +30,7 @@ pub(super) fn render(s: &Statics, unit: LengthUnit, look: Look) -> String {
             ]);
         }
         out.push_str(&format!("\n{}", table.render(look)));
-        if rows.len() > 3 {
+        if rows.len() > 3 && rows.iter().all(|r| r.least_n.is_some()) {
             out.push_str("shared as by equal springs; a rigid thing on rigid ground may stand on three of them, or two\n");
         }
         if rows.iter().any(|r| r.least_n.is_none()) {

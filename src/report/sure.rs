@@ -234,7 +234,7 @@ fn sampled(s: &Sampled, unit: LengthUnit, look: Look) -> String {
     }
     let verdict = if s.linear_not_good_enough.is_empty() {
         look.marked(
-            "the linear intervals agree with the draws to the second digit of the uncertainty",
+            "no linear interval is shown to be off by the draws, to the second digit of the uncertainty",
             Mark::Pass,
         )
     } else {

@@ -9,9 +9,9 @@ use std::path::Path;
 
 use super::balance::fixed;
 use super::digits::{length_in, significant};
+use super::picture::write_picture;
 use crate::assembly::service::Drain;
 use crate::error::Result;
-use crate::format::write_whole;
 use crate::quantity::LengthUnit;
 
 const SIDE: f64 = 380.0;
@@ -22,10 +22,9 @@ const GAP: f64 = 92.0;
 /// Draws the travel and writes the picture.
 ///
 /// # Errors
-/// `cannot-write`.
+/// `usage` for an ending that is neither .svg nor .png, `cannot-write`.
 pub fn draw(path: &Path, drain: &Drain, unit: LengthUnit) -> Result<()> {
-    let svg = svg(drain, unit);
-    write_whole(path, |w| w.write_all(svg.as_bytes()))
+    write_picture(path, &svg(drain, unit))
 }
 
 /// What an axis of a panel shows.

@@ -44,6 +44,9 @@ pub struct BodyBounds {
     pub inertia: Option<f64>,
 }
 
+/// Less than this part of a volume is rounding and no source.
+const ROUNDING: f64 = 1e-11;
+
 impl BodySources {
     /// How far the mass figures may be off. `volume` are the moments of the volume in SI units.
     /// `None` without a density, without any source, where the centre is not bounded or where there
@@ -67,7 +70,9 @@ impl BodySources {
             piece.scales.push((by, 1.0 / density.value));
         }
         if let Some(facets) = &self.facets {
-            if facets.bias != Moments::zero(facets.bias.about) {
+            if facets.bias.zeroth.abs() > ROUNDING * volume.zeroth
+                || facets.bias.first.norm() > 0.0 && facets.doubt > ROUNDING * volume.zeroth
+            {
                 let part = Distribution::Interval {
                     low: 0.0,
                     high: 1.0,
@@ -76,7 +81,7 @@ impl BodySources {
                 let bias = facets.bias.weighted(density.value);
                 piece.additions.push((by, bias));
             }
-            if facets.doubt > 0.0 {
+            if facets.doubt > ROUNDING * volume.zeroth {
                 let half = Distribution::Rectangular {
                     half_width: facets.doubt,
                 };

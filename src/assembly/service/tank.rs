@@ -92,6 +92,7 @@ pub(in crate::assembly) fn weighed_tank(
         estimate: None,
         facets: None,
         made: None,
+        rates: Vec::new(),
         volume: Some(0.0),
         implied_density: None,
         bounds: [at.into(), at.into()],

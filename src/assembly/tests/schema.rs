@@ -30,7 +30,7 @@ turn = { axis = [0, 0, 1], angle = "90 deg" }
 mirror = "x"
 measured = "6.31 kg ± 5 g"
 accept-open = "2 %"
-facets = "curved"
+facets = "flat"
 each = "independent"
 maturity = "layout"
 expect = { volume = "1 cm3", mass = "1 kg ± 50 %", size = [1, 2, 3], centre = [0, 0, 0] }
