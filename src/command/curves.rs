@@ -32,10 +32,10 @@ fn degrees(text: &str) -> std::result::Result<f64, String> {
 }
 
 impl CurveArgs {
-    /// Whether a body is looked at: not one of many triangles unasked, nor one with a solid in its
-    /// solid, whose parts count in ways of their own.
-    pub(super) fn looks(&self, body: &Body) -> bool {
-        !body.has_nested() && (body.triangles <= UNASKED || self.true_curves)
+    /// Whether a body is looked at: not one of a file of many triangles unasked, nor one with a
+    /// solid in its solid, whose parts count in ways of their own.
+    pub(super) fn looks(&self, mesh: &Mesh, body: &Body) -> bool {
+        !body.has_nested() && (mesh.soup.triangles.count() <= UNASKED || self.true_curves)
     }
 
     /// What the facets do to a body that is weighed as it stands; `None` where it is not looked at.
@@ -43,7 +43,7 @@ impl CurveArgs {
     /// # Errors
     /// As [`estimate`].
     pub(super) fn look(&self, mesh: &Mesh, body: &Body) -> Result<Option<FacetError>> {
-        if !self.looks(body) {
+        if !self.looks(mesh, body) {
             return Ok(None);
         }
         estimate(&mesh.outward_facets(body), self.crease).map(Some)

@@ -73,7 +73,7 @@ impl MeshBody for Placed {
             true_curves: asked,
             crease: CREASE_DEG,
         };
-        if self.figures.refused.is_some() || !look.looks(&self.body) {
+        if self.figures.refused.is_some() || !look.looks(&self.mesh, &self.body) {
             return None;
         }
         // Welding failed before if it fails here.
