@@ -35,6 +35,8 @@ pub struct AssemblyFile {
     pub stand: Option<Stand>,
     /// What it hangs from, if that is stated.
     pub hang: Option<Hang>,
+    /// What scales under its supports showed.
+    pub weighings: Vec<crate::statics::Attitude>,
     /// Where ballast may go.
     pub ballast: Vec<BallastPlace>,
 }

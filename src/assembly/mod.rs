@@ -36,6 +36,7 @@ mod read;
 mod read_ballast;
 mod read_limits;
 mod read_statics;
+mod read_weighing;
 mod reader;
 mod resolve;
 mod rollup;
@@ -74,7 +75,9 @@ pub use schema::schema;
 pub use shape::impossible as impossible_inertia;
 pub use smear::Smeared;
 pub use source::{BodyFigures, MeshBody, MeshFiles, Refusal};
-pub use standing::{AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, statics};
+pub use standing::{
+    AttitudeRow, HangRow, LeanRow, LineRow, ReactionRow, Statics, TipRow, WeighingRow, statics,
+};
 pub use trim::{ballast_items, ballast_problem};
 pub use trim_states::Situations;
 

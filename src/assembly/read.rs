@@ -15,6 +15,7 @@ use super::position;
 use super::read_ballast;
 use super::read_limits;
 use super::read_statics;
+use super::read_weighing;
 use super::reader::{Reader, Shared};
 use super::service::{self, Tank};
 use super::shape;
@@ -86,6 +87,7 @@ pub(super) fn file(
     let standing = read_statics::supports(&root, &service.gravity);
     let hang = read_statics::hang(&root, &service.gravity);
     let limits = read_limits::read(&root, &standing);
+    let weighings = read_weighing::read(&root, &standing);
     let smears = smear::read(&root);
     root.finish();
     AssemblyFile {
@@ -98,6 +100,7 @@ pub(super) fn file(
         service,
         stand: standing.stand,
         hang,
+        weighings,
         ballast,
         smears,
     }

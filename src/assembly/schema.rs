@@ -101,6 +101,8 @@ struct AssemblyFile {
     smear: Option<Vec<Smear>>,
     /// Mass growth allowance of each maturity, in per cent; the names are the file's own.
     allowance: Option<BTreeMap<String, Quantity>>,
+    /// What scales under the supports showed, one an attitude.
+    weighing: Option<Vec<Weighing>>,
     /// Places that ballast may go to.
     ballast: Option<Vec<Ballast>>,
 }
@@ -137,6 +139,18 @@ struct Placed {
     name: String,
     /// Where it is.
     at: [Length; 3],
+}
+
+/// What scales under the supports showed in one attitude.
+#[derive(JsonSchema)]
+#[serde(deny_unknown_fields)]
+struct Weighing {
+    /// A name for people.
+    name: Option<String>,
+    /// Against gravity in the assembly's axes; as it stands where left out.
+    up: Option<Direction>,
+    /// A mass or a force by name of support, three or more.
+    loads: BTreeMap<String, Quantity>,
 }
 
 /// A hook, and the lines that meet at it.

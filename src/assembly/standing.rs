@@ -81,6 +81,29 @@ pub struct LineRow {
     pub slack: bool,
 }
 
+/// What scales say of mass and centre, and how far the model is from it.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct WeighingRow {
+    /// As weighed.
+    pub mass_kg: f64,
+    /// Its standard uncertainty.
+    pub mass_standard_kg: f64,
+    /// As weighed; along `free` nothing is known, and this is the height of the supports.
+    pub centre_m: [f64; 3],
+    /// Standard uncertainty of each coordinate; nothing along `free`.
+    pub centre_standard_m: [f64; 3],
+    /// The direction along which one attitude leaves the centre open; null where it is known.
+    pub free: Option<[f64; 3]>,
+    /// Of what the weighings disagree by among themselves; null without uncertainties.
+    pub chi_squared: Option<f64>,
+    /// Its degrees of freedom.
+    pub freedom: usize,
+    /// The model's mass less that weighed.
+    pub model_mass_off_kg: f64,
+    /// The model's centre less that weighed; nothing along `free`.
+    pub model_centre_off_m: [f64; 3],
+}
+
 /// All of it; what the file does not ask for is absent.
 #[derive(Clone, Debug, Default, PartialEq, Serialize)]
 pub struct Statics {
@@ -96,6 +119,9 @@ pub struct Statics {
     /// From its hook; null where no attitude at rest was found, which a warning says.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub hang: Option<Option<HangRow>>,
+    /// From scales under the supports.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub weighing: Option<WeighingRow>,
 }
 
 /// Works out what the file asks for.
@@ -148,6 +174,21 @@ pub fn statics(
                 warnings.push(warning("hang", e.message, Some(hang.line), &e.advice));
                 None
             }
+        });
+    }
+    if !file.weighings.is_empty() {
+        let w = statics::weigh(&file.weighings).map_err(|e| e.in_file(&file.path))?;
+        let (mass_off, centre_off) = w.disagreement(mass_kg, &centre_at(&down)?);
+        out.weighing = Some(WeighingRow {
+            mass_kg: w.mass,
+            mass_standard_kg: w.mass_standard,
+            centre_m: w.centre.into(),
+            centre_standard_m: [0, 1, 2].map(|k| w.centre_covariance[(k, k)].max(0.0).sqrt()),
+            free: w.free.map(Into::into),
+            chi_squared: w.chi_squared,
+            freedom: w.freedom,
+            model_mass_off_kg: mass_off,
+            model_centre_off_m: centre_off.into(),
         });
     }
     Ok((out, warnings))

@@ -1,8 +1,9 @@
 //! What supports and lines carry, for people.
 
-use super::digits::{length_in, significant};
+use super::balance::fixed;
+use super::digits::{length_in, significant, with_uncertainty};
 use super::table::{Cell, Column, Look, Mark, Table};
-use crate::assembly::{HangRow, Statics};
+use crate::assembly::{HangRow, Statics, WeighingRow};
 use crate::limits::{Judged, Measured};
 use crate::quantity::LengthUnit;
 
@@ -70,6 +71,53 @@ pub(super) fn render(s: &Statics, unit: LengthUnit, look: Look) -> String {
     }
     if let Some(Some(h)) = &s.hang {
         out.push_str(&hang(h, look));
+    }
+    if let Some(w) = &s.weighing {
+        out.push_str(&weighing(w, unit));
+    }
+    out
+}
+
+fn weighing(w: &WeighingRow, unit: LengthUnit) -> String {
+    let known = |k: usize| w.free.is_none_or(|f| f[k].abs() < 1.0 - 1e-9);
+    let point = |p: [f64; 3], s: Option<[f64; 3]>| {
+        let shown = [0, 1, 2].map(|k| {
+            if !known(k) {
+                return "open".to_owned();
+            }
+            let x = length_in(p[k], unit);
+            match s.map(|s| length_in(s[k], unit)).filter(|s| *s > 0.0) {
+                Some(s) => {
+                    let (x, s) = with_uncertainty(x, s);
+                    format!("{x} ± {s}")
+                }
+                None => fixed(x),
+            }
+        });
+        format!("({}) {}", shown.join(", "), unit.symbol())
+    };
+    let mass = match w.mass_standard_kg > 0.0 {
+        true => {
+            let (m, s) = with_uncertainty(w.mass_kg, w.mass_standard_kg);
+            format!("{m} ± {s}")
+        }
+        false => significant(w.mass_kg, 6),
+    };
+    let mut out = format!(
+        "\non the scales\nmass           {mass} kg\nbalance point  {}\nthe model is off by {} kg and {}\n",
+        point(w.centre_m, Some(w.centre_standard_m)),
+        significant(w.model_mass_off_kg, 3),
+        point(w.model_centre_off_m, None),
+    );
+    if w.free.is_some() {
+        out.push_str("one attitude leaves the height open; weigh it tilted too\n");
+    }
+    if let (Some(chi), true) = (w.chi_squared, w.freedom > 0) {
+        out.push_str(&format!(
+            "the weighings disagree among themselves by chi-squared {} on {} degrees of freedom\n",
+            significant(chi, 3),
+            w.freedom
+        ));
     }
     out
 }

@@ -184,6 +184,10 @@ mesh = "frame.obj"
 material = "own"
 step = "1 kg"
 tolerance = "1 %"
+[[weighing]]
+name = "level"
+up = "z"
+loads = { a = "3 kg", b = "30 N ± 1 N", c = "4 kg" }
 [hang]
 hook = [0, 0, 900]
 [[hang.line]]
@@ -276,6 +280,7 @@ fn keys_of_reader_and_schema_agree() {
         ("unbalance", vec!["Unbalance"]),
         ("support", vec!["Placed"]),
         ("line", vec!["Placed"]),
+        ("weighing", vec!["Weighing"]),
         ("hang", vec!["Hang"]),
         ("ballast", vec!["Ballast"]),
     ];

@@ -110,3 +110,81 @@ fn every_limit_has_its_value() {
     assert!((b.limits[6].to.unwrap() * 1e6 - 0.4 * 2005.352).abs() < 5e-4);
     assert!((b.limits[7].to.unwrap() * 1e6 - 0.6 * 2005.352).abs() < 5e-4);
 }
+
+/// Three wheels on scales: 475 lb at station 55, 1046 and 1040 lb at 121 in: 2561 lb at 108.75869 in
+/// (inputs of a published weighing example, answer by hand).
+#[test]
+fn scales_under_three_wheels() {
+    let wheels = r#"
+[assembly]
+unit = "in"
+[[item]]
+name = "model"
+mass = "2570 lb"
+at = [108, 0, 30]
+[[support]]
+name = "nose"
+at = [55, 0, 0]
+[[support]]
+name = "left"
+at = [121, 40, 0]
+[[support]]
+name = "right"
+at = [121, -40, 0]
+[[weighing]]
+loads = { nose = "475 lb ± 1 lb (k=1)", left = "1046 lb ± 1 lb (k=1)", right = "1040 lb ± 1 lb (k=1)" }
+"#;
+    let (b, _) = Bench::new().of(wheels);
+    let w = b.statics.weighing.unwrap();
+    let (lb, inch) = (0.45359237, 0.0254);
+    near(w.mass_kg, 2561.0 * lb);
+    near(w.mass_standard_kg, 3.0_f64.sqrt() * lb);
+    assert!((w.centre_m[0] / inch - 108.75869).abs() < 5e-6);
+    near(w.centre_m[1], 40.0 * 6.0 / 2561.0 * inch);
+    near(w.model_mass_off_kg, 9.0 * lb);
+    assert!((w.model_centre_off_m[0] / inch - (108.0 - 108.75869)).abs() < 5e-6);
+    // The scales say nothing of the height.
+    assert_eq!(w.free.map(|f| f[2].abs()), Some(1.0));
+    assert_eq!(w.model_centre_off_m[2], 0.0);
+    let faults = Bench::new().faults(&wheels.replace("nose = \"475", "nosse = \"475"));
+    assert_eq!(faults[0].kind, crate::error::Kind::UnknownName);
+}
+
+/// The same thing weighed level and nose up: the height too. Loads by the balance of moments about
+/// the line of two supports, worked out for a mass of 100 kg at (1.5, 0.8, 1.2) m.
+#[test]
+fn two_attitudes_give_the_height() {
+    let tilt = Vector3::new(0.3, 0.0, 1.0).normalize();
+    let stand = crate::statics::Stand::new(
+        [[0.0, 0.0, 0.0], [4.0, 0.0, 0.0], [1.0, 3.0, 0.0]]
+            .iter()
+            .zip(["a", "b", "c"])
+            .map(|(at, name)| crate::statics::Support {
+                name: name.into(),
+                at: Vector3::from(*at),
+            })
+            .collect(),
+        tilt,
+    )
+    .unwrap();
+    let loads = stand.reactions(&Vector3::new(1.5, 0.8, 1.2), 100.0);
+    let loads: Vec<String> = loads
+        .reactions
+        .iter()
+        .map(|r| format!("{} = \"{} kg\"", r.support, r.force.unwrap()))
+        .collect();
+    let text = format!(
+        "{FEET}\n[[weighing]]\nloads = {{ a = \"42.5 kg\", b = \"{} kg\", c = \"{} kg\" }}\n\
+         [[weighing]]\nup = [0.3, 0, 1]\nloads = {{ {} }}\n",
+        92.5 / 3.0,
+        80.0 / 3.0,
+        loads.join(", ")
+    );
+    let (b, _) = Bench::new().of(&text);
+    let w = b.statics.weighing.unwrap();
+    assert_eq!(w.free, None);
+    for (k, want) in [1.5, 0.8, 1.2].into_iter().enumerate() {
+        assert!((w.centre_m[k] - want).abs() < 1e-9, "{w:?}");
+        assert!(w.model_centre_off_m[k].abs() < 1e-9, "{w:?}");
+    }
+}
