@@ -2,9 +2,9 @@
 //!
 //! Facets are chords of curved surfaces: where the vertices lie on the true surface, the faces lie
 //! beside it. Convex surfaces lose volume, hollow ones gain it. The estimate goes in four steps:
-//! [`surface`] finds the edges that turn by less than the crease angle, [`flats`] tells plane faces
-//! from curved ones, [`normals`] estimates the surface's normals at the vertices and from them how
-//! far it rises over each edge, [`patch`] integrates the space between each facet and a quadratic
+//! `surface` finds the edges that turn by less than the crease angle, `flats` tells plane faces
+//! from curved ones, `normals` estimates the surface's normals at the vertices and from them how
+//! far it rises over each edge, `patch` integrates the space between each facet and a quadratic
 //! patch over it.
 //!
 //! It rests on two assumptions that no mesh can prove: that the vertices lie on the surface, and

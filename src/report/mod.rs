@@ -29,4 +29,5 @@ mod words;
 
 pub use document::{Document, Failure, InputFact, PROGRAM, Program, path_hex, to_json};
 pub use footer::{CAUTION, footer};
+#[cfg(feature = "cli")]
 pub(crate) use words::kind_word;
