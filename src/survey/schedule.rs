@@ -7,7 +7,8 @@ use std::sync::{Condvar, Mutex, MutexGuard, PoisonError};
 use crate::error::{Error, Kind, Result};
 
 /// Memory that a file of `bytes` is reckoned to need while it is weighed: its bytes, its triangles,
-/// what welds them. Measured at most 3.2 times the bytes, for OBJ; the megabyte is for small ones.
+/// what welds them. A reckoning with room to spare, not a measurement; the megabyte is for small
+/// files.
 pub(super) fn needs(bytes: u64) -> u64 {
     bytes.saturating_mul(4).saturating_add(1 << 20)
 }
