@@ -11,7 +11,7 @@
 //! corner between them, which the same count covers.
 //!
 //! The overlay crate draws insets too, with square ends at every corner: the same areas to 1e-12,
-//! measured, in forty times the time, as each of its spikes crosses its neighbours.
+//! measured, and slower by far, as each of its spikes crosses its neighbours.
 
 use super::region::{Corner, Region};
 

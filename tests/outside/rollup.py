@@ -3,7 +3,7 @@
     python3 tests/outside/rollup.py demo-data/rover/rover.toml
 
 Reads what the demo and the fixtures use: assign, own materials, parts, items, nested groups,
-placements, `measured`. Built-in densities are listed below by the name used in the files.
+placements, `measured`, tanks filled to a level with gravity along -z. Built-in densities are listed below by the name used in the files.
 """
 import fnmatch
 import json
@@ -97,6 +97,29 @@ def item_inertia(entry, mass, unit):
     return [[d[i] if i == j else 0.0 for j in range(3)] for i in range(3)]
 
 
+def below(triangles, height):
+    """The closed surface of what lies below z = height: facets cut there, and a fan over the cut."""
+    out, middle = [], None
+    for triangle in triangles:
+        polygon, ends = [], {}
+        for i in range(3):
+            p, q = triangle[i], triangle[(i + 1) % 3]
+            a, b = p[2] - height, q[2] - height
+            assert a != 0, "a vertex on the plane of the liquid"
+            if a < 0:
+                polygon.append(p)
+            if (a < 0) != (b < 0):
+                s = a / (a - b)
+                x = [p[0] + s * (q[0] - p[0]), p[1] + s * (q[1] - p[1]), height]
+                polygon.append(x)
+                ends["leaves" if a < 0 else "enters"] = x
+        out += [[polygon[0], polygon[k], polygon[k + 1]] for k in range(1, len(polygon) - 1)]
+        if ends:
+            middle = middle or ends["leaves"]
+            out.append([middle, ends["enters"], ends["leaves"]])
+    return out
+
+
 def roll_up(path):
     """{"mass_kg", "centre_of_mass_m", "inertia_kg_m2", "parts": {path: mass}} of a TOML assembly."""
     path = pathlib.Path(path)
@@ -132,7 +155,22 @@ def roll_up(path):
         inertia = [[rho * float(x) * unit ** 5 for x in row] for row in m.inertia]
         return mass, [float(x) * unit for x in m.centroid], inertia
 
+    def liquid(entry):
+        (_, triangles), = read(path.parent / entry["mesh"])
+        level = quantity(entry["fill"], LENGTH, unit) / unit
+        height = min(p[2] for t in triangles for p in t) + level
+        m = Moments(below(triangles, height))
+        rho = own.get(entry["liquid"].lower()) or DENSITY[entry["liquid"].lower()]
+        inertia = [[rho * float(x) * unit ** 5 for x in row] for row in m.inertia]
+        return rho * float(m.volume) * unit ** 3, [float(x) * unit for x in m.centroid], inertia
+
     def walk(table, outer, prefix):
+        for entry in table.get("tank", []):
+            inner, = placements(entry, unit)
+            mass, centre, inertia = liquid(entry)
+            where = outer.after(inner)
+            assert where.turn == Placement().turn, "a tank that is turned"
+            leaves.append((prefix + entry["name"], mass, where.point(centre), inertia))
         for entry in table.get("part", []) + table.get("item", []):
             name = prefix + entry["name"]
             for n, inner in enumerate(placements(entry, unit)):
