@@ -95,12 +95,16 @@ impl Look<'_> {
         }
         let mut by_body: BTreeMap<Option<usize>, (u64, Vec<Place>)> = BTreeMap::new();
         for (t, u) in pairs {
-            let of = by_body.entry(home.of(t)).or_default();
-            of.0 += 1;
-            if of.1.len() < self.places {
-                let (p, q) = self.corners_of(t, u);
-                let at = meeting_point(&p, &q).map(|x| x * self.metres);
-                of.1.push(self.place(at, vec![t, u]));
+            // Two bodies that share a surface are both in doubt, whichever comes first in the file.
+            let bodies = BTreeSet::from([home.of(t), home.of(u)]);
+            for body in bodies {
+                let of = by_body.entry(body).or_default();
+                of.0 += 1;
+                if of.1.len() < self.places {
+                    let (p, q) = self.corners_of(t, u);
+                    let at = meeting_point(&p, &q).map(|x| x * self.metres);
+                    of.1.push(self.place(at, vec![t, u]));
+                }
             }
         }
         for (body, (count, places)) in by_body {
