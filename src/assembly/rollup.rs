@@ -14,7 +14,7 @@ use super::standing::{self, Statics};
 use super::sum;
 use super::sure::Sure;
 use crate::error::{Error, Kind, Warning};
-use crate::limits::{Judged, Measured, Verdict};
+use crate::limits::{Judged, Verdict};
 use crate::masses::PrintFigures;
 use crate::moments::{Moments, principal};
 use crate::progress::Progress;
@@ -335,22 +335,8 @@ pub(super) fn judged(
 ) -> Judged {
     let [lo, hi] = total.bounds_m.map(Vector3::from);
     let diagonal = (hi - lo).norm();
-    let stated = limit.judge_whole(&total.moments, diagonal);
-    let value = seen.slope.unwrap_or(stated.value);
-    // The margin of a mass limit is that of the predicted mass.
-    let predicted = seen
-        .predicted_kg
-        .filter(|_| limit.quantity == Measured::Mass);
-    let judged = match predicted.or(seen.slope) {
-        Some(figure) => {
-            let rounding = limit.quantity.rounding(&total.moments, diagonal);
-            Judged {
-                basic: predicted.map(|_| stated.value),
-                ..limit.judge(figure, rounding)
-            }
-        }
-        None => stated,
-    };
+    let judged = seen.judge(limit, &total.moments, diagonal);
+    let value = judged.basic.unwrap_or(judged.value);
     let judged = open::unsure(judged, &limit.quantity, total.estimate.as_ref());
     match sure {
         // How the slope answers with its liquid level at every attitude is not worked out; of the

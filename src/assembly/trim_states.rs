@@ -7,9 +7,9 @@ use super::load::Loaded;
 use super::resolve::Resolved;
 use super::service::{self, Leg, Service};
 use super::sure::Sure;
-use crate::ballast::{Place, State};
+use crate::ballast::{InPhase, Place, State};
 use crate::error::Result;
-use crate::limits::{Limit, Measured};
+use crate::limits::{End, Limit, Measured};
 use crate::moments::Moments;
 
 /// Steps of a phase that are asked of at once.
@@ -27,6 +27,8 @@ pub struct Situations<'a> {
     legs: Vec<Leg>,
     /// Limits with what growth takes of them.
     limits: Vec<Limit>,
+    /// What growth adds at most, kg.
+    growth: f64,
     /// Names of the sources of error in the order of every state's drivers; none where certainty
     /// is not asked for.
     sources: Option<Vec<String>>,
@@ -56,6 +58,7 @@ impl<'a> Situations<'a> {
             service,
             legs,
             limits: loaded.file.limits.clone(),
+            growth: 0.0,
             sources: sure.then(Vec::new),
             states: Vec::new(),
         };
@@ -83,6 +86,7 @@ impl<'a> Situations<'a> {
                 limit.to = limit.to.map(|to| to - growth);
             }
         }
+        all.growth = growth;
         for (name, state) in asked {
             let states = all.with_slopes(&name, &state)?;
             all.states.extend(states);
@@ -94,6 +98,19 @@ impl<'a> Situations<'a> {
     /// The limits to hold.
     pub fn limits(&self) -> &[Limit] {
         &self.limits
+    }
+
+    /// What a limit on mass was held against, as the file states it: the predicted mass.
+    pub fn restore(&self, rows: &mut [InPhase]) {
+        for row in rows.iter_mut().map(|r| &mut r.judged) {
+            if self.growth > 0.0 && row.quantity == Measured::Mass.name() {
+                row.to = row.to.map(|to| to + self.growth);
+                if row.nearest == End::To {
+                    row.basic = Some(row.value);
+                    row.value += self.growth;
+                }
+            }
+        }
     }
 
     /// The states to begin with.

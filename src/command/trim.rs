@@ -97,7 +97,9 @@ pub(super) fn run(args: &TrimArgs, common: &Common) -> Result<Answer> {
         Err(errors) => return Ok(failure(errors, common)),
     };
     let mut broken = |x: &[f64]| situations.broken(&problem.places, x, problem.diagonal);
-    let trimmed = ballast::trim(&problem, &mut broken).map_err(|e| e.in_file(&args.file))?;
+    let mut trimmed = ballast::trim(&problem, &mut broken).map_err(|e| e.in_file(&args.file))?;
+    situations.restore(&mut trimmed.before);
+    situations.restore(&mut trimmed.after);
     let mut warnings = resolved.warnings.clone();
     if let Some(path) = &args.write
         && trimmed.outcome != Outcome::Found

@@ -176,6 +176,13 @@ fn limits(d: &Drain, unit: LengthUnit, look: Look) -> String {
             ),
             Mark::Unsure,
         ),
+        0 if d.limits.iter().any(|l| !l.worst.within.is_finite()) => look.marked(
+            &format!(
+                "all {} limits hold at every step and where the least was sought; those not proved could break in between",
+                d.limits.len()
+            ),
+            Mark::Pass,
+        ),
         0 => look.marked(
             &format!("all {} limits hold on the whole way", d.limits.len()),
             Mark::Pass,

@@ -256,13 +256,7 @@ impl Service {
         Ok(match f {
             Followed::Margin(limit) => {
                 let seen = self.seen(limit, state, snapshot, stand)?;
-                let predicted = seen
-                    .predicted_kg
-                    .filter(|_| limit.quantity == Measured::Mass);
-                match predicted.or(seen.slope) {
-                    Some(figure) => limit.judge(figure, 0.0).margin,
-                    None => limit.judge_whole(total, 0.0).margin,
-                }
+                seen.judge(limit, total, 0.0).margin
             }
             Followed::Least(k) => centre[*k],
             Followed::Greatest(k) => -centre[*k],

@@ -7,7 +7,8 @@ use nalgebra::Vector3;
 use super::{Service, Snapshot, State};
 use crate::error::Result;
 use crate::gravity::STANDARD_GRAVITY;
-use crate::limits::{Limit, Measured, Tipping};
+use crate::limits::{Judged, Limit, Measured, Tipping};
+use crate::moments::Moments;
 use crate::statics::{self, Stand};
 
 /// What a state makes of limits beyond its moments.
@@ -18,6 +19,39 @@ pub struct Seen {
     /// The slope at which it tips, rad, for a limit on that; none where it follows from the centre
     /// of mass as it stands.
     pub slope: Option<f64>,
+}
+
+impl Seen {
+    /// The verdict on a whole of these moments, with a box of this diagonal, m.
+    ///
+    /// The greatest mass is held against the predicted mass, the least against the basic one: growth
+    /// is not there yet.
+    pub(in crate::assembly) fn judge(
+        &self,
+        limit: &Limit,
+        moments: &Moments,
+        diagonal: f64,
+    ) -> Judged {
+        let stated = limit.judge_whole(moments, diagonal);
+        let rounding = limit.quantity.rounding(moments, diagonal);
+        match (self.predicted_kg, self.slope) {
+            (Some(predicted), _) if limit.quantity == Measured::Mass && limit.to.is_some() => {
+                let grown = Judged {
+                    basic: Some(stated.value),
+                    ..limit.judge(predicted, rounding)
+                };
+                let below = limit.from.map(|from| stated.value - from);
+                let above = limit.to.map(|to| to - predicted);
+                if below < above && below.is_some() {
+                    stated
+                } else {
+                    grown
+                }
+            }
+            (_, Some(slope)) => limit.judge(slope, rounding),
+            _ => stated,
+        }
+    }
 }
 
 impl Service {

@@ -296,3 +296,22 @@ fn draws_of_an_assembly() {
         close(drawn.probability, p, 0.02);
     }
 }
+
+/// The greatest mass is held against the predicted mass, the least against the basic one.
+#[test]
+fn growth_fills_no_lower_limit() {
+    let file = |limit: &str| {
+        format!(
+            "{HEAD}[allowance]\nnew = \"15 %\"\n[[item]]\nname = \"a\"\nmass = \"10 kg\"\n\
+             maturity = \"new\"\n[[limit]]\n{limit}\n"
+        )
+    };
+    let judged = |limit: &str| Bench::new().of(&file(limit)).0.limits[0].clone();
+    let least = judged("mass = { from = \"11 kg\" }");
+    assert_eq!((least.verdict, least.value), (Verdict::Broken, 10.0));
+    let most = judged("mass = { to = \"11 kg\" }");
+    assert_eq!((most.verdict, most.basic), (Verdict::Broken, Some(10.0)));
+    close(most.value, 11.5, 1e-12);
+    let both = judged("mass = { from = \"10.5 kg\", to = \"12 kg\" }");
+    assert_eq!((both.verdict, both.value), (Verdict::Broken, 10.0));
+}
